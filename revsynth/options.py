@@ -1,0 +1,72 @@
+"""The options of `build`, in the same words on the command line and in Python."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal, get_args
+
+from revsynth.errors import UsageError
+
+Oracle = Literal["phase", "bit", "fresh", "compute", "inplace", "embedded"]
+GateSet = Literal["clifford+t", "toffoli", "cascade"]
+Uncompute = Literal["unitary", "measured"]
+Aim = Literal["t", "qubits", "depth", "gates"]
+MethodName = Literal["auto", "transform", "products"]
+Effort = Literal["normal", "low", "high"]
+Format = Literal["openqasm3", "openqasm2", "plain"]
+Controls = Literal["mixed", "positive"]
+
+CHOICES: dict[str, tuple[str, ...]] = {
+    "oracle": get_args(Oracle),
+    "gates": get_args(GateSet),
+    "uncompute": get_args(Uncompute),
+    "aim": get_args(Aim),
+    "method": get_args(MethodName),
+    "effort": get_args(Effort),
+    "format": get_args(Format),
+    "controls": get_args(Controls),
+}
+"""Every option with a fixed set of values, the default first where there is one."""
+
+
+@dataclass(frozen=True)
+class BuildOptions:
+    """How to build. `oracle` None takes the spec's natural form: phase, bit or inplace."""
+
+    oracle: Oracle | None = None
+    gates: GateSet = "clifford+t"
+    uncompute: Uncompute = "unitary"
+    qubits: int | None = None
+    t: int | None = None
+    depth: int | None = None
+    aim: Aim = "t"
+    method: MethodName = "auto"
+    effort: Effort = "normal"
+    format: Format = "openqasm3"
+    controls: Controls = "mixed"
+    seed: int = 0
+    time_limit: float | None = None
+    unverified: bool = False
+
+    def __post_init__(self) -> None:
+        for name, allowed in CHOICES.items():
+            value = getattr(self, name)
+            if value not in allowed and not (name == "oracle" and value is None):
+                raise UsageError(f"{name} {value!r} is not one of {', '.join(allowed)}")
+        for name in ("qubits", "t", "depth"):
+            value = getattr(self, name)
+            if value is not None and value < 0:
+                raise UsageError(f"{name} {value} is negative: a budget is a number from 0 up")
+        if self.time_limit is not None and self.time_limit <= 0:
+            raise UsageError(f"time_limit {self.time_limit} must be a positive number of seconds")
+        if self.format != "openqasm3":
+            if self.gates == "cascade":
+                raise UsageError(
+                    "gates 'cascade' needs format 'openqasm3': OpenQASM 2 has no control modifiers"
+                )
+            if self.uncompute == "measured":
+                raise UsageError("uncompute 'measured' needs format 'openqasm3'")
+        if self.format == "plain" and self.gates != "clifford+t":
+            raise UsageError("format 'plain' holds Clifford+T gates only: use gates 'clifford+t'")
+        if self.gates == "cascade" and self.uncompute == "measured":
+            raise UsageError("gates 'cascade' has no scratch to erase: leave uncompute at 'unitary'")

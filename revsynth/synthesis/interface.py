@@ -1,0 +1,89 @@
+"""What every synthesis method is given and gives back.
+
+A method is a module in this package with a class that has `name`, `unfit` and `synthesise`, and one line in
+`revsynth.synthesis.METHODS`. Methods know nothing of each other, of files, or of lowering.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from typing import Protocol
+
+from revsynth.cascade.model import Cascade, Line
+from revsynth.cascade.price import Uncompute
+from revsynth.logic.function import Function
+from revsynth.options import Aim, Controls, Effort, Oracle
+
+Progress = Callable[[str], None]
+"""Called now and then with a short line on how far the work is."""
+
+
+def silent(_: str) -> None:
+    """A progress that says nothing."""
+
+
+@dataclass(frozen=True)
+class Task:
+    """What is to be synthesised.
+
+    `lines` is the most lines the cascade may use (None: as many as it likes); lowering may need more.
+    """
+
+    function: Function
+    oracle: Oracle
+    controls: Controls = "mixed"
+    uncompute: Uncompute = "unitary"
+    aim: Aim = "t"
+    effort: Effort = "normal"
+    seed: int = 0
+    lines: int | None = None
+
+
+@dataclass(frozen=True)
+class Placement:
+    """Which line of an `embedded` block holds what.
+
+    before: input bit i of the function sits on line before[i]; preset: lines that must start in 0 or 1;
+    after: output bit j of the function is on line after[j] at the end; the other lines hold garbage.
+    """
+
+    before: tuple[Line, ...]
+    preset: tuple[tuple[Line, int], ...]
+    after: tuple[Line, ...]
+
+
+@dataclass(frozen=True)
+class Block:
+    """A cascade and what its lines are for, in this order: inputs, outputs, keep, work.
+
+    `phase`: inputs, then work. `bit`, `fresh`, `compute`: inputs 0 ... n-1, outputs n ... n+m-1, then the
+    `keep` lines, then work. `inplace`: the n lines, then work. `embedded`: all lines count as inputs, and
+    `placement` says which is which. Work lines start and end in 0 (so do outputs in `fresh` and `compute`
+    start in 0, and keep lines). `method` names the method and its variant, such as `transform, both ways`.
+    """
+
+    cascade: Cascade
+    method: str
+    inputs: int
+    outputs: int = 0
+    keep: int = 0
+    work: int = 0
+    placement: Placement | None = None
+    notes: tuple[str, ...] = field(default=())
+
+    def __post_init__(self) -> None:
+        if self.inputs + self.outputs + self.keep + self.work != self.cascade.lines:
+            raise ValueError(f"{self.method}: the roles do not add up to {self.cascade.lines} lines")
+
+
+class Method(Protocol):
+    """One way of synthesis."""
+
+    name: str
+
+    def unfit(self, task: Task) -> str | None:
+        """Why the method cannot serve this task, in words for the user; None where it can."""
+
+    def synthesise(self, task: Task, progress: Progress = silent) -> list[Block]:
+        """One block or several alternatives, best guess first; deterministic for a task."""

@@ -1,0 +1,68 @@
+"""What verification found: a verdict, how far it reaches, and a counterexample where there is one."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any, Literal
+
+Level = Literal["exhaustive", "proved", "sampled", "none"]
+FaultKind = Literal["output", "input", "scratch", "phase", "undefined"]
+
+
+@dataclass(frozen=True)
+class Evidence:
+    """How a verdict was reached. The level is that of the weakest link; `sampled` is not a proof."""
+
+    level: Level
+    inputs_checked: int
+    links: tuple[str, ...] = ()
+    detail: str = ""
+
+    def to_json(self) -> dict[str, Any]:
+        """The JSON object of the contract."""
+        return {
+            "level": self.level,
+            "inputs_checked": self.inputs_checked,
+            "links": list(self.links),
+            "detail": self.detail,
+        }
+
+
+@dataclass(frozen=True)
+class Counterexample:
+    """One input at which the circuit does not do what the spec says; words as (lists of) integers."""
+
+    inputs: dict[str, Any]
+    kind: FaultKind
+    expected: dict[str, Any]
+    got: dict[str, Any]
+    why: str
+
+    def to_json(self) -> dict[str, Any]:
+        """The JSON object of the contract."""
+        return {
+            "inputs": self.inputs,
+            "kind": self.kind,
+            "expected": self.expected,
+            "got": self.got,
+            "why": self.why,
+        }
+
+
+@dataclass(frozen=True)
+class Verdict:
+    """`holds` is None where verification could not finish; `global_phase` in radians."""
+
+    holds: bool | None
+    evidence: Evidence
+    global_phase: float = 0.0
+    counterexample: Counterexample | None = None
+
+    def to_json(self) -> dict[str, Any]:
+        """The JSON object of the contract."""
+        return {
+            "holds": self.holds,
+            "evidence": self.evidence.to_json(),
+            "global_phase": self.global_phase,
+            "counterexample": None if self.counterexample is None else self.counterexample.to_json(),
+        }
