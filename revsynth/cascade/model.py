@@ -95,7 +95,7 @@ class Cascade:
         care: NDArray[np.uint64],
         value: NDArray[np.uint64],
     ) -> Cascade:
-        """From bit masks over at most 64 lines: bit l of `care` says that line l is a control, of `value` which."""
+        """From bit masks bit l of `care`: l is a control; of `value`: it waits for 1."""
         if lines > 64:
             raise ValueError(f"masks hold 64 lines, not {lines}")
         count = np.bitwise_count(care).astype(np.int64)

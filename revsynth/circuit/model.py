@@ -49,9 +49,9 @@ class Kind(IntEnum):
     RESET = 18
 
 
-TARGETS: dict[Kind, int] = {kind: 1 for kind in Kind} | {Kind.SWAP: 2, Kind.GPHASE: 0}
+TARGETS: dict[Kind, int] = dict.fromkeys(Kind, 1) | {Kind.SWAP: 2, Kind.GPHASE: 0}
 """How many target qubits a kind has."""
-ANGLES: dict[Kind, int] = {kind: 0 for kind in Kind} | {
+ANGLES: dict[Kind, int] = dict.fromkeys(Kind, 0) | {
     Kind.P: 1,
     Kind.RX: 1,
     Kind.RY: 1,
@@ -63,7 +63,7 @@ ANGLES: dict[Kind, int] = {kind: 0 for kind in Kind} | {
 
 
 class Guard(NamedTuple):
-    """One clause of an `if`: whether all of `bits` hold is `expected`. Bits are literals (2 * bit, + 1 for 0)."""
+    """One clause of an `if`: whether all `bits` hold is `expected`. Literals: 2 * bit, + 1 waits for 0."""
 
     bits: tuple[int, ...]
     expected: bool = True
@@ -74,7 +74,7 @@ Condition: TypeAlias = tuple[Guard, ...]
 
 
 class Op(NamedTuple):
-    """One operation. `condition` indexes `Circuit.conditions` (-1: always); `bit` is a measurement's result."""
+    """One operation. `condition` indexes `Circuit.conditions` (-1: always); `bit` holds a measured result."""
 
     kind: Kind
     controls: tuple[int, ...]

@@ -43,7 +43,6 @@ class Predicate:
     """One output bit. Exactly one of the alternatives is not None.
 
     `table` holds one entry an input, input 0 first: 0, 1 or None where free.
-    `columns` (netlist files) is a truth table already packed: see `OutputBits`.
     """
 
     where: str | None = None
@@ -55,7 +54,7 @@ class Predicate:
 
 @dataclass(frozen=True)
 class Clauses:
-    """A CNF: clauses of signed variable numbers (variable i is bit i-1 of the word `v`); XOR clauses apart."""
+    """A CNF: clauses of signed variable numbers; variable i is bit i-1 of the word `v`. XOR clauses apart."""
 
     variables: int
     clauses: tuple[tuple[int, ...], ...]
