@@ -1,0 +1,1 @@
+"""Synthesis: one method a file, all listed in `methods`."""

@@ -1,0 +1,5 @@
+"""`python -m revsynth`."""
+
+from revsynth.cli.main import run
+
+run()

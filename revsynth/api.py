@@ -1,0 +1,319 @@
+"""The Python side: read or make a spec, build, verify. The command line is a thin skin over the same."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
+from pathlib import Path
+from typing import Any
+
+from revsynth.cascade.model import Cascade
+from revsynth.circuit.model import Circuit
+from revsynth.errors import BudgetError, RevsynthError, UndecidedError, UsageError
+from revsynth.files import write_whole
+from revsynth.logic.truth_table import count_ones
+from revsynth.options import BuildOptions, Format, Oracle
+from revsynth.pipeline import Built, Progress
+from revsynth.pipeline import build as run_pipeline
+from revsynth.placement import describe_placement
+from revsynth.qasm import read, read_file
+from revsynth.spec.model import Constant, Spec, Word
+from revsynth.spec.read import read_spec as _read_spec
+from revsynth.verification import verify_program
+from revsynth.verification.evidence import Counterexample, Evidence, Verdict
+
+__all__ = [
+    "BudgetError",
+    "Build",
+    "Counterexample",
+    "Evidence",
+    "RevsynthError",
+    "UndecidedError",
+    "Verdict",
+    "build",
+    "outputs",
+    "permutation",
+    "predicate",
+    "read_spec",
+    "truth_table",
+    "verify",
+]
+
+InputWidths = Mapping[str, "int | Mapping[str, Any] | Word"]
+"""Words by name: a width in bits, or the table of a spec file such as `{"bits": 3, "signed": True}`."""
+
+
+def read_spec(path: str | Path, *, from_format: str | None = None) -> Spec:
+    """Read any spec file the contract lists; `from_format` names the format where the ending does not.
+
+    Raises RevsynthError (SpecError) with one line that names the file and the place.
+    """
+    return _read_spec(str(path), from_format=from_format)
+
+
+def predicate(
+    where: str | None = None,
+    *,
+    inputs: InputWidths,
+    constants: Mapping[str, Constant] | None = None,
+    domain: str | None = None,
+    formula: str | None = None,
+    title: str = "",
+) -> Spec:
+    """A predicate by an expression over integer words, or by `formula` over single bits.
+
+    `inputs` in order: the first word has the lowest bits of the combined index.
+    """
+    if (where is None) == (formula is None):
+        raise UsageError("predicate: give either an expression or formula=, not both")
+    body = {"where": where} if formula is None else {"formula": formula}
+    return _from_sections("predicate", body, inputs, constants, domain, title)
+
+
+def outputs(
+    values: Mapping[str, str | Mapping[str, Any]],
+    *,
+    inputs: InputWidths,
+    constants: Mapping[str, Constant] | None = None,
+    domain: str | None = None,
+    title: str = "",
+) -> Spec:
+    """A classical subroutine: output words by expression, or by the table of a spec file.
+
+    `{"total": "a + b"}` is short for `{"total": {"value": "a + b"}}`.
+    """
+    body = {
+        name: {"value": value} if isinstance(value, str) else dict(value) for name, value in values.items()
+    }
+    return _from_sections("outputs", body, inputs, constants, domain, title)
+
+
+def truth_table(table: str, *, inputs: InputWidths, domain: str | None = None, title: str = "") -> Spec:
+    """A predicate by its table, input 0 first; '-' is free, spaces and '_' are ignored."""
+    return _from_sections("predicate", {"table": table}, inputs, None, domain, title)
+
+
+def permutation(
+    values: Sequence[int | str] | None = None,
+    *,
+    inputs: InputWidths | None = None,
+    map: Mapping[str, str] | None = None,
+    constants: Mapping[str, Constant] | None = None,
+    domain: str | None = None,
+    title: str = "",
+) -> Spec:
+    """A reversible block by the images of 0, 1, 2, ... ("-" is free) on the word `v`, or by new values of words."""
+    if (values is None) == (map is None):
+        raise UsageError("permutation: give either values or map=, not both")
+    body: dict[str, Any] = {"values": list(values)} if values is not None else {"map": dict(map or {})}
+    return _from_sections("permutation", body, inputs, constants, domain, title)
+
+
+def _from_sections(
+    section: str,
+    body: Mapping[str, Any],
+    inputs: InputWidths | None,
+    constants: Mapping[str, Constant] | None,
+    domain: str | None,
+    title: str,
+) -> Spec:
+    """The same way as a TOML file, so that the same checks and errors hold."""
+    document: dict[str, Any] = {section: dict(body)}
+    if title:
+        document["title"] = title
+    if inputs is not None:
+        document["inputs"] = {name: _width(width) for name, width in inputs.items()}
+    if constants:
+        document["constants"] = dict(constants)
+    if domain is not None:
+        document["domain"] = {"where": domain}
+    return spec_from_document(document, source="spec")
+
+
+def _width(width: int | Mapping[str, Any] | Word) -> Any:
+    if isinstance(width, Word):
+        count = {} if width.count is None else {"count": width.count}
+        return {"bits": width.bits, "signed": width.signed, **count}
+    return dict(width) if isinstance(width, Mapping) else width
+
+
+class Build:
+    """A built and verified circuit. `cost` holds the counts of the contract; `evidence` how far they reach."""
+
+    def __init__(self, built: Built) -> None:
+        self._built = built
+
+    @property
+    def spec(self) -> Spec:
+        """The spec it was built from."""
+        return self._built.spec
+
+    @property
+    def cost(self) -> dict[str, int | None]:
+        """Counts by name, taken from the circuit as written."""
+        return dict(self._built.cost)
+
+    @property
+    def method(self) -> str:
+        """The method (and variant) that gave the circuit."""
+        return self._built.block.method
+
+    @property
+    def evidence(self) -> Evidence:
+        """What verification did."""
+        return self._built.evidence
+
+    @property
+    def cascade(self) -> Cascade:
+        """The reduced cascade before lowering: inputs, outputs, keep, work lines in this order."""
+        return self._built.block.cascade
+
+    @property
+    def circuit(self) -> Circuit:
+        """The circuit as written."""
+        return self._built.circuit
+
+    @property
+    def oracle(self) -> Oracle:
+        """The form of the block."""
+        return self._built.oracle
+
+    @property
+    def warnings(self) -> tuple[str, ...]:
+        """What the spec may not mean as written."""
+        return self._built.understanding.warnings
+
+    @property
+    def counts(self) -> dict[str, int | None]:
+        """Inputs inside the domain, certainly marked (None but for predicates), and free."""
+        function = self._built.understanding.function
+        return {
+            "domain": count_ones(function.domain),
+            "marked": function.marked if self.spec.kind == "predicate" else None,
+            "free": function.free,
+        }
+
+    @property
+    def options(self) -> BuildOptions:
+        """The options it was built with."""
+        return self._built.options
+
+    def text(self, format: Format | None = None) -> str:
+        """The OpenQASM text, in the format built or another; another is built from the same options again.
+
+        Raises UsageError where the gate set does not go with the format.
+        """
+        if format is None or format == self._built.options.format:
+            return self._built.text
+        return build(self.spec, options=replace(self._built.options, format=format)).text()
+
+    def write(self, path: str | Path) -> None:
+        """Write the file whole or not at all; the bytes on disk are compared with what was verified.
+
+        The format `plain` also writes PATH.json with the map from registers to qubits.
+        """
+        data = self._built.text.encode()
+        if self._built.options.format == "plain":
+            side = json.dumps({"qubits": self.qubit_map()}, indent=2) + "\n"
+            write_whole(f"{path}.json", side.encode())
+        write_whole(path, data, self._compare)
+
+    def _compare(self, data: bytes) -> None:
+        from revsynth.pipeline import same_gates
+
+        found = read(data.decode(), source=self.spec.source).circuit
+        if not same_gates(found, self._built.circuit):
+            raise AssertionError("the bytes on disk are not the circuit that was verified")
+
+    def qubit_map(self) -> dict[str, list[int]]:
+        """Qubit numbers of every register, index 0 (least significant) first."""
+        return {register.name: list(register.members) for register in self._built.circuit.registers}
+
+    def to_json(self) -> dict[str, Any]:
+        """The JSON object of the contract, without the key `circuit`, which names a file."""
+        built = self._built
+        found: dict[str, Any] = {
+            "title": self.spec.title,
+            "oracle": built.oracle,
+            "gates": built.options.gates,
+            "method": self.method,
+            "inputs": {word.name: _word_json(word) for word in self.spec.inputs},
+            "registers": built.registers,
+            **self.counts,
+            "cost": self.cost,
+            "evidence": self.evidence.to_json(),
+            "lower_bound": None,
+            "tried": [trial.to_json() for trial in built.tried],
+            "seconds": built.seconds,
+        }
+        placement = describe_placement(built.block, built.understanding)
+        if placement is not None:
+            found["placement"] = placement
+        if built.options.format == "plain":
+            found["qubits"] = self.qubit_map()
+        if built.stopped_early:
+            found["stopped_early"] = True
+        if built.understanding.warnings:
+            found["warnings"] = list(built.understanding.warnings)
+        return found
+
+    def _repr_svg_(self) -> str:
+        from revsynth.report.circuit_svg import draw_svg
+
+        return draw_svg(self._built.circuit, title=self.spec.title)
+
+    def __repr__(self) -> str:
+        cost = self._built.cost
+        return (
+            f"<Build of {self.spec.source} by {self.method}: {cost['qubits']} qubits, {cost['t']} T, "
+            f"evidence {self.evidence.level}>"
+        )
+
+
+def build(
+    spec: Spec, *, options: BuildOptions | None = None, progress: Progress | None = None, **words: Any
+) -> Build:
+    """Build, lower and verify a circuit for `spec`; keywords are the words of `revsynth build`.
+
+    Raises UsageError, BudgetError, UndecidedError, SpecError: all RevsynthError.
+    """
+    if options is None:
+        try:
+            options = BuildOptions(**words)
+        except TypeError as error:
+            raise UsageError(f"build: {str(error).rpartition('() ')[2]}") from None
+    elif words:
+        raise UsageError("build: give either options= or single options, not both")
+    return Build(run_pipeline(spec, options, progress or (lambda _: None)))
+
+
+def verify(
+    spec: Spec,
+    path: str | Path | None = None,
+    *,
+    text: str | None = None,
+    oracle: Oracle | None = None,
+    exact_phase: bool = False,
+    negctrl: Any = None,
+) -> Verdict:
+    """Check an OpenQASM file (or text) from anywhere against a spec; see `Verdict`.
+
+    Raises CircuitFileError for what the reader does not understand, UsageError for missing registers.
+    """
+    if (path is None) == (text is None):
+        raise UsageError("verify: give either a file or text=, not both")
+    if path is not None:
+        program = read_file(str(path), negctrl=negctrl)
+    else:
+        program = read(text or "", source="text", negctrl=negctrl)
+    return verify_program(spec, program, oracle=oracle, exact_phase=exact_phase)
+
+
+def _word_json(word: Word) -> dict[str, Any]:
+    found: dict[str, Any] = {"bits": word.bits}
+    if word.signed:
+        found["signed"] = True
+    if word.count is not None:
+        found["count"] = word.count
+    return found

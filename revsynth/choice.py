@@ -1,0 +1,118 @@
+"""Comparing what the methods gave: one cost, one order for each aim, settled here for all methods.
+
+Circuits are compared by the cost of what would be written; cascades too large to lower one and all are
+ranked by the estimate of `cascade.price` first.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from revsynth.cascade.model import Cascade
+from revsynth.cascade.price import cascade_t
+from revsynth.circuit.cost import Cost, measure
+from revsynth.circuit.model import Circuit
+from revsynth.options import Aim, BuildOptions, GateSet
+from revsynth.synthesis.interface import Block
+
+
+@dataclass(frozen=True)
+class Trial:
+    """What one method (or variant) gave, for the JSON key `tried`."""
+
+    method: str
+    t: int | None = None
+    qubits: int | None = None
+    gates: int | None = None
+    depth: int | None = None
+    estimated: bool = False
+    failed: str | None = None
+
+    @classmethod
+    def of(cls, candidate: Candidate, failed: str | None) -> Trial:
+        """The record of a lowered candidate."""
+        cost = candidate.cost
+        return cls(candidate.block.method, cost.t, cost.qubits, cost.gates, cost.depth, failed=failed)
+
+    def to_json(self) -> dict[str, Any]:
+        """Only what is known."""
+        known = {
+            "method": self.method,
+            "t": self.t,
+            "qubits": self.qubits,
+            "gates": self.gates,
+            "depth": self.depth,
+            "failed": self.failed,
+        }
+        found: dict[str, Any] = {key: value for key, value in known.items() if value is not None}
+        return found | ({"estimated": True} if self.estimated else {})
+
+
+@dataclass(frozen=True)
+class Candidate:
+    """A block, the circuit it became, and what that circuit costs."""
+
+    block: Block
+    circuit: Circuit
+    cost: Cost
+
+    @classmethod
+    def of(cls, block: Block, circuit: Circuit) -> Candidate:
+        """Measure the circuit."""
+        return cls(block, circuit, measure(circuit))
+
+
+def and_count(cascade: Cascade) -> int:
+    """ANDs of the plan: k - 1 for a NOT with k >= 2 controls or a phase on k >= 2 literals."""
+    controls = np.diff(cascade.offset)
+    return int(np.maximum(controls - 1, 0).sum())
+
+
+def estimate(block: Block, options: BuildOptions) -> tuple[int, ...]:
+    """The sort key of a block before lowering, cheapest first."""
+    cascade = block.cascade
+    t = cascade_t(cascade, options.uncompute)
+    keys: dict[Aim, tuple[int, ...]] = {
+        "t": (t, len(cascade), cascade.lines),
+        "qubits": (cascade.lines, t, len(cascade)),
+        "depth": (t, len(cascade), cascade.lines),
+        "gates": (len(cascade), t, cascade.lines),
+    }
+    return keys[options.aim]
+
+
+def cheapest(candidates: list[Candidate], options: BuildOptions) -> Candidate:
+    """The first of the cheapest for the aim."""
+    return min(candidates, key=lambda candidate: _key(candidate, options.aim, options.gates, options))
+
+
+def _key(candidate: Candidate, aim: Aim, gates: GateSet, options: BuildOptions) -> tuple[int, ...]:
+    cost = candidate.cost
+    if gates == "cascade":
+        t = cascade_t(candidate.block.cascade, options.uncompute)
+    else:
+        t = cost.t + 4 * cost.toffoli
+    two_qubit = cost.cx + cost.cz
+    keys: dict[Aim, tuple[int, ...]] = {
+        "t": (t, cost.qubits, two_qubit, cost.gates, cost.depth),
+        "qubits": (cost.qubits, t, two_qubit, cost.gates, cost.depth),
+        "depth": (cost.depth, t, cost.qubits, two_qubit, cost.gates),
+        "gates": (cost.gates, t, cost.qubits, two_qubit, cost.depth),
+    }
+    return keys[aim]
+
+
+def within(candidate: Candidate, options: BuildOptions) -> str | None:
+    """Why the candidate misses a budget, or None where it keeps them all."""
+    cost = candidate.cost
+    for name, used, allowed in (
+        ("qubits", cost.qubits, options.qubits),
+        ("T gates", cost.t, options.t),
+        ("layers of depth", cost.depth, options.depth),
+    ):
+        if allowed is not None and used > allowed:
+            return f"needs {used} {name}, {allowed} allowed"
+    return None

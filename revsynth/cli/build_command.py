@@ -1,0 +1,95 @@
+"""`revsynth build`."""
+
+from __future__ import annotations
+
+import sys
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from revsynth.cli.common import clear_progress, echo_json, load_spec, progress_line, spec_options, warn
+from revsynth.options import CHOICES, BuildOptions
+
+if TYPE_CHECKING:
+    from revsynth.api import Build
+
+
+def _choice(name: str, text: str, show_default: bool = True) -> Any:
+    values = CHOICES[name]
+    default = f" Default: {values[0]}." if show_default else ""
+    return click.option(f"--{name}", type=click.Choice(values), default=None, help=text + default)
+
+
+@click.command("build")
+@click.argument("spec", required=False)
+@click.option("-o", "output", metavar="FILE", help="Where to write; standard output without it.")
+@_choice("oracle", "Form of the block. Default: phase, bit or inplace by the spec.", show_default=False)
+@_choice("gates", "Gate set of the file.")
+@_choice("uncompute", "How scratch is erased; 'measured' needs OpenQASM 3.")
+@click.option("--qubits", type=int, metavar="N", help="The most qubits the file may use.")
+@click.option("--t", type=int, metavar="N", help="The most T gates.")
+@click.option("--depth", type=int, metavar="N", help="The most layers.")
+@_choice("aim", "What to make small first within the budget.")
+@_choice("method", "Method of synthesis; 'auto' keeps the cheapest for the aim.")
+@_choice("effort", "A fixed amount of work.")
+@click.option("--time-limit", type=float, metavar="SECONDS", help="Stop earlier with the best so far.")
+@_choice("format", "Format of the file.")
+@_choice("controls", "Whether cascades may use negative controls.")
+@click.option("--seed", type=int, metavar="N", help="Seed of random choices. Default: 0.")
+@click.option("--unverified", is_flag=True, help="Write even where verification could not finish.")
+@spec_options
+@click.option("--json", "as_json", is_flag=True, help="One JSON object on standard output.")
+def COMMAND(  # noqa: N802
+    spec: str | None,
+    output: str | None,
+    as_json: bool,
+    where: str | None,
+    inputs: tuple[str, ...],
+    constants: tuple[str, ...],
+    domain: str | None,
+    from_format: str | None,
+    **words: Any,
+) -> None:
+    """Build a circuit for SPEC, read it back, verify it for every input, and write it.
+
+    Nothing is written unless the circuit was verified. Without -o the circuit goes to standard output and
+    the summary to standard error.
+
+    \b
+    Example:
+      revsynth build specs/beacons.toml -o beacons.qasm
+      revsynth build specs/beacons.toml --uncompute measured --qubits 16 -o beacons.qasm
+      revsynth build --where "a * b == 35" --input a=4 --input b=4
+    """
+    options = BuildOptions(**{name: value for name, value in words.items() if value is not None})
+    wanted = load_spec(spec, where, inputs, constants, domain, from_format)
+    from revsynth.api import build
+
+    built = build(wanted, options=options, progress=progress_line())
+    clear_progress()
+    warn(built.warnings)
+    to_stdout = output in (None, "-")
+    if output is not None and not to_stdout:
+        built.write(output)
+    if as_json:
+        echo_json({"title": built.spec.title, "circuit": None if to_stdout else output, **built.to_json()})
+        return
+    if to_stdout:
+        sys.stdout.write(built.text())
+    click.echo(_summary(built, None if to_stdout else output), err=to_stdout)
+
+
+def _summary(built: Build, output: str | None) -> str:
+    from revsynth.cli.tables import cost_lines
+
+    lines = [built.spec.title or built.spec.source]
+    function = built.counts
+    if function["marked"] is not None:
+        lines.append(f"  marked     {function['marked']} of {function['domain']} inputs")
+    lines.append(f"  oracle     {built.oracle}, {built.options.gates}, by {built.method}")
+    lines.extend(cost_lines(built.cost))
+    evidence = built.evidence
+    lines.append(f"  evidence   {evidence.level}: {evidence.detail or f'{evidence.inputs_checked} inputs'}")
+    if output is not None:
+        lines.append(f"  written    {output}")
+    return "\n".join(lines)

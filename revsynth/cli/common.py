@@ -1,0 +1,102 @@
+"""What the commands share: the spec arguments, progress on a terminal, JSON output."""
+
+from __future__ import annotations
+
+import json
+import sys
+from collections.abc import Callable
+from typing import Any, TypeVar
+
+import click
+
+from revsynth.errors import UsageError
+from revsynth.spec.model import Spec
+
+F = TypeVar("F", bound=Callable[..., Any])
+
+SAFE_INTEGER = (1 << 53) - 1
+"""Integers beyond are written as decimal strings: many JSON readers keep 53 bits."""
+
+
+def spec_options(command: F) -> F:
+    """The options that stand in for a spec file, and `--from`."""
+    for option in (
+        click.option("--from", "from_format", metavar="FORMAT", help="Format of SPEC: toml, cnf, pla."),
+        click.option("--domain", metavar="EXPR", help="With --where: the inputs that matter."),
+        click.option("--constant", "constants", multiple=True, metavar="NAME=JSON", help="With --where."),
+        click.option(
+            "--input",
+            "inputs",
+            multiple=True,
+            metavar="NAME=BITS",
+            help="With --where: a word; k=3s is signed, cell=2x5 five words of 2 bits.",
+        ),
+        click.option("--where", metavar="EXPR", help="A predicate in place of SPEC."),
+    ):
+        command = option(command)
+    return command
+
+
+def load_spec(
+    path: str | None,
+    where: str | None,
+    inputs: tuple[str, ...],
+    constants: tuple[str, ...],
+    domain: str | None,
+    from_format: str | None,
+) -> Spec:
+    """The spec from a file, standard input ('-'), or the command line."""
+    if where is not None:
+        if path is not None or from_format is not None:
+            raise UsageError("--where stands in place of SPEC: give one of them")
+        from revsynth.spec.inline import inline_spec
+
+        return inline_spec(where, inputs, constants, domain)
+    for name, given in (("--input", inputs), ("--constant", constants), ("--domain", domain)):
+        if given:
+            raise UsageError(f"{name} goes with --where, not with a spec file")
+    if path is None:
+        raise UsageError("name a spec file ('-' for standard input), or give --where and --input")
+    from revsynth.spec.read import read_spec
+
+    return read_spec(path, from_format=from_format)
+
+
+def progress_line() -> Callable[[str], None]:
+    """Progress on one line of a terminal's standard error; silent where it is piped."""
+    if not sys.stderr.isatty():
+        return lambda _: None
+
+    def show(text: str) -> None:
+        sys.stderr.write(f"\r\x1b[K{text[:100]}")
+        sys.stderr.flush()
+
+    return show
+
+
+def clear_progress() -> None:
+    """Take the progress line away before results are shown."""
+    if sys.stderr.isatty():
+        sys.stderr.write("\r\x1b[K")
+        sys.stderr.flush()
+
+
+def warn(texts: tuple[str, ...]) -> None:
+    """Warnings go to standard error, one line each."""
+    for text in texts:
+        click.echo(f"warning: {text}", err=True)
+
+
+def echo_json(value: Any) -> None:
+    """One JSON object on standard output; integers of more than 53 bits as decimal strings."""
+    click.echo(json.dumps(_safe(value), indent=2, ensure_ascii=False))
+
+
+def _safe(value: Any) -> Any:
+    if isinstance(value, dict):
+        return {key: _safe(entry) for key, entry in value.items()}
+    if isinstance(value, (list, tuple)):
+        return [_safe(entry) for entry in value]
+    if isinstance(value, int) and not isinstance(value, bool) and abs(value) > SAFE_INTEGER:
+        return str(value)
+    return value

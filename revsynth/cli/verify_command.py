@@ -1,0 +1,95 @@
+"""`revsynth verify`."""
+
+from __future__ import annotations
+
+import json
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from revsynth.cli.common import echo_json, load_spec, spec_options, warn
+from revsynth.errors import UsageError
+from revsynth.options import CHOICES
+
+if TYPE_CHECKING:
+    from revsynth.verification.evidence import Verdict
+
+
+@click.command("verify")
+@click.argument("paths", nargs=-1, metavar="[SPEC] FILE")
+@click.option(
+    "--oracle", type=click.Choice(CHOICES["oracle"]), help="The form; found by the registers without it."
+)
+@click.option("--exact-phase", is_flag=True, help="Let no constant phase pass.")
+@click.option(
+    "--negctrl",
+    type=click.Choice(["all-zero", "as-published"]),
+    help="How to read negctrl(n) with n > 1 in a file from elsewhere.",
+)
+@spec_options
+@click.option("--json", "as_json", is_flag=True, help="One JSON object on standard output.")
+def COMMAND(  # noqa: N802
+    paths: tuple[str, ...],
+    oracle: Any,
+    exact_phase: bool,
+    negctrl: Any,
+    as_json: bool,
+    where: str | None,
+    **inline: Any,
+) -> int:
+    """Check that the OpenQASM FILE does what SPEC says, for every input.
+
+    The file may come from anywhere; its header is not believed. Registers are matched by name. Shows an
+    input at which the circuit fails, where there is one. Exit status 0 holds, 1 fails, 3 undecided.
+
+    \b
+    Example:
+      revsynth verify specs/beacons.toml beacons.qasm
+      revsynth verify --where "a * b == 35" --input a=4 --input b=4 oracle.qasm
+    """
+    wanted = 1 if where is not None else 2
+    if len(paths) != wanted:
+        raise UsageError("give FILE alone with --where" if where is not None else "give SPEC and FILE")
+    spec = load_spec(paths[0] if where is None else None, where, **inline)
+    from revsynth.api import verify
+    from revsynth.spec.understand import understand
+
+    warn(understand(spec).warnings)
+    verdict = verify(spec, paths[-1], oracle=oracle, exact_phase=exact_phase, negctrl=negctrl)
+    if as_json:
+        echo_json(verdict.to_json())
+    else:
+        click.echo(_in_words(verdict, paths[-1]))
+    return {True: 0, False: 1, None: 3}[verdict.holds]
+
+
+def _in_words(verdict: Verdict, file: str) -> str:
+    evidence = verdict.evidence
+    if verdict.holds:
+        lines = [f"{file}: does what the spec says"]
+    elif verdict.holds is None:
+        lines = [f"{file}: undecided: {evidence.detail}"]
+    else:
+        lines = [f"{file}: does not do what the spec says"]
+    found = verdict.counterexample
+    if found is not None:
+        lines.append(f"  at         {_words(found.inputs)}")
+        lines.append(f"  fault      {found.kind}: {found.why}")
+        if found.expected:
+            lines.append(f"  expected   {_words(found.expected)}")
+        if found.got:
+            lines.append(f"  got        {_words(found.got)}")
+    level = "sampled, not a proof" if evidence.level == "sampled" else evidence.level
+    lines.append(f"  evidence   {level}: {evidence.inputs_checked} inputs checked")
+    lines.extend(f"             {link}" for link in evidence.links)
+    if verdict.holds and verdict.global_phase:
+        lines.append(
+            f"  phase      one constant phase of {verdict.global_phase:.6g} radians, which nobody can observe"
+        )
+    return "\n".join(lines)
+
+
+def _words(values: Any) -> str:
+    if isinstance(values, dict):
+        return ", ".join(f"{name} = {json.dumps(value)}" for name, value in values.items())
+    return json.dumps(values)

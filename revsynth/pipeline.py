@@ -1,0 +1,300 @@
+"""The whole way from a spec to a verified circuit, as one story.
+
+spec -> function -> blocks (embedded and synthesised) -> reduced cascades -> circuits -> the cheapest
+-> OpenQASM text -> read back -> verified. Nothing here computes; each step lives in its own room.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+from revsynth.cascade.price import cascade_t
+from revsynth.choice import Candidate, Trial, and_count, cheapest, estimate, within
+from revsynth.circuit.model import Circuit
+from revsynth.errors import BudgetError, UndecidedError, UsageError
+from revsynth.header import header_lines
+from revsynth.lowering import lower
+from revsynth.options import BuildOptions, Oracle
+from revsynth.placement import describe_placement, placement_comments
+from revsynth.qasm import Program, prepare, read, write
+from revsynth.qasm.names import register_names
+from revsynth.reduction import reduce
+from revsynth.spec.model import Spec
+from revsynth.spec.understand import Understanding, understand
+from revsynth.synthesis.interface import Block, Method, Task
+from revsynth.synthesis.methods import METHODS
+from revsynth.verification import verify_program
+from revsynth.verification.evidence import Evidence, Verdict
+
+Progress = Callable[[str], None]
+
+LARGE = 20_000
+"""Cascades of more gates are compared by their estimated price, and only the cheapest is lowered."""
+
+
+@dataclass(frozen=True)
+class Built:
+    """What a build gave, before any file is written. `text` is in `options.format`."""
+
+    spec: Spec
+    understanding: Understanding
+    options: BuildOptions
+    oracle: Oracle
+    block: Block
+    circuit: Circuit
+    text: str
+    registers: dict[str, str]
+    cost: dict[str, int | None]
+    evidence: Evidence
+    tried: tuple[Trial, ...]
+    stopped_early: bool
+    seconds: dict[str, float]
+
+
+def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
+    """Build the circuit that `options` ask for and verify its text.
+
+    Raises UsageError for options that do not go with the spec, BudgetError where nothing fits, and
+    UndecidedError where verification could not finish (unless `options.unverified`).
+    """
+    clock = _Clock()
+    progress("reading the spec")
+    understanding = understand(spec)
+    oracle = options.oracle or natural_oracle(spec)
+    check_oracle(spec, oracle)
+    clock.lap("read")
+
+    task = Task(
+        understanding.function,
+        oracle,
+        controls=options.controls,
+        uncompute=options.uncompute,
+        aim=options.aim,
+        effort=options.effort,
+        seed=options.seed,
+        lines=options.qubits,
+    )
+    layout = register_layout(understanding, oracle, options)
+    blocks, tried, early = _synthesise(task, options, progress, clock.started)
+    clock.lap("synthesise")
+    best, tried = _lower_the_cheapest(blocks, tried, layout, oracle, options, progress)
+    clock.lap("lower")
+
+    progress("verifying")
+    circuit = prepare(best.circuit, options.format)
+    verdict = _verify_text(understanding, oracle, best.block, circuit, options)
+    evidence = _accept(verdict, options)
+    clock.lap("verify")
+    cost = best.cost.to_json(ands=and_count(best.block.cascade), cascade=len(best.block.cascade))
+    header = header_lines(
+        spec.title,
+        spec.source,
+        oracle,
+        options,
+        method=best.block.method,
+        renamed=layout.names,
+        placement=placement_comments(best.block, understanding),
+        cost=cost,
+        evidence=evidence,
+        stopped_early=early,
+    )
+    text = write(circuit, format=options.format, header=header)
+    if not same_gates(read(text, source=spec.source).circuit, circuit):
+        raise AssertionError("the text written is not the circuit that was verified")
+    clock.lap("write")
+    return Built(
+        spec, understanding, options, oracle, best.block, circuit, text, dict(layout.names), cost, evidence,
+        tried, early, clock.seconds(),
+    )  # fmt: skip
+
+
+def natural_oracle(spec: Spec) -> Oracle:
+    """The oracle form a spec gets when none is asked for."""
+    forms: dict[str, Oracle] = {"predicate": "phase", "outputs": "bit", "permutation": "inplace"}
+    return forms[spec.kind]
+
+
+def check_oracle(spec: Spec, oracle: Oracle) -> None:
+    """Raise UsageError where the form does not go with the kind of spec, saying which forms do."""
+    allowed: dict[str, tuple[Oracle, ...]] = {
+        "predicate": ("phase", "bit", "fresh", "compute", "embedded"),
+        "outputs": ("bit", "fresh", "compute", "inplace", "embedded"),
+        "permutation": ("inplace",),
+    }
+    if oracle not in allowed[spec.kind]:
+        article = "" if spec.kind == "outputs" else "a "
+        raise UsageError(
+            f"{spec.source}: oracle '{oracle}' does not go with {article}{spec.kind}: "
+            f"use {', '.join(allowed[spec.kind])}"
+        )
+
+
+@dataclass(frozen=True)
+class Layout:
+    """The registers of a file in order, without `work`, and which spec word each is for."""
+
+    registers: tuple[tuple[str, int], ...]
+    names: tuple[tuple[str, str], ...]
+
+
+def register_layout(understanding: Understanding, oracle: Oracle, options: BuildOptions) -> Layout:
+    """Registers for the input words, then the output words or `mark`; `embedded` has `line` alone.
+
+    The width of `line` and of `keep` depends on the block and is filled in when it is known (size -1).
+    """
+    version = 3 if options.format == "openqasm3" else 2
+    inputs = [element for word in understanding.spec.inputs for element in word.elements()]
+    outputs: list[tuple[str, int]] = []
+    if oracle in ("bit", "fresh", "compute") and understanding.spec.kind == "outputs":
+        outputs = [element for word in understanding.outputs for element in word.elements()]
+    names = register_names([name for name, _ in (*inputs, *outputs)], version=version)
+    if oracle == "embedded":
+        return Layout((("line", -1),), ())
+    registers = [(names[name], bits) for name, bits in (*inputs, *outputs)]
+    if oracle in ("bit", "fresh", "compute") and understanding.spec.kind == "predicate":
+        registers.append(("mark", 1))
+    return Layout(tuple(registers), tuple(names.items()))
+
+
+def _registers_for(block: Block, layout: Layout) -> list[tuple[str, int]]:
+    if block.placement is not None:
+        return [("line", block.inputs)]
+    registers = list(layout.registers)
+    if block.keep:
+        registers.append(("keep", block.keep))
+    return registers
+
+
+def _synthesise(
+    task: Task, options: BuildOptions, progress: Progress, started: float
+) -> tuple[list[Block], list[Trial], bool]:
+    """Run every method that is asked for and fits; reduce what they give."""
+    blocks: list[Block] = []
+    tried: list[Trial] = []
+    for method in METHODS:
+        if not _asked_for(method, options):
+            continue
+        reason = method.unfit(task)
+        if reason is not None:
+            tried.append(Trial(method.name, failed=reason))
+            continue
+        if blocks and options.time_limit is not None and time.monotonic() - started > options.time_limit:
+            return blocks, tried, True
+        progress(f"{method.name}: synthesising")
+        for block in method.synthesise(task, progress):
+            progress(f"{block.method}: reducing {len(block.cascade)} gates")
+            shorter = reduce(block.cascade, controls=options.controls, uncompute=options.uncompute)
+            blocks.append(replace(block, cascade=shorter))
+        if method.name == "linear" and blocks:
+            break
+    if not blocks:
+        reasons = "; ".join(f"{trial.method}: {trial.failed}" for trial in tried)
+        raise UsageError(f"no method serves this spec with oracle '{task.oracle}': {reasons}")
+    return blocks, tried, False
+
+
+def _asked_for(method: Method, options: BuildOptions) -> bool:
+    """`linear` is part of every choice: it recognises what needs no Toffoli at all."""
+    return options.method in ("auto", method.name) or (
+        method.name == "linear" and options.method == "transform"
+    )
+
+
+def _lower_the_cheapest(
+    blocks: list[Block],
+    tried: list[Trial],
+    layout: Layout,
+    oracle: Oracle,
+    options: BuildOptions,
+    progress: Progress,
+) -> tuple[Candidate, tuple[Trial, ...]]:
+    """Lower the blocks, small ones all, of large ones the cheapest by estimate; keep the best for the aim."""
+    ranked = sorted(blocks, key=lambda block: estimate(block, options))
+    candidates: list[Candidate] = []
+    misses: list[str] = []
+    for block in ranked:
+        if candidates and len(block.cascade) > LARGE:
+            tried.append(Trial(block.method, t=cascade_t(block.cascade, options.uncompute), estimated=True))
+            continue
+        progress(f"{block.method}: lowering {len(block.cascade)} gates")
+        try:
+            circuit = lower(
+                block,
+                _registers_for(block, layout),
+                oracle=oracle,
+                gates=options.gates,
+                uncompute=options.uncompute,
+                max_qubits=options.qubits,
+                aim=options.aim,
+            )
+        except BudgetError as error:
+            misses.append(f"{block.method}: {error}")
+            tried.append(Trial(block.method, failed=str(error)))
+            continue
+        candidate = Candidate.of(block, circuit)
+        miss = within(candidate, options)
+        tried.append(Trial.of(candidate, failed=miss))
+        if miss is None:
+            candidates.append(candidate)
+        else:
+            misses.append(f"{block.method}: {miss}")
+    if not candidates:
+        raise BudgetError("nothing fits the budget: " + "; ".join(dict.fromkeys(misses)))
+    return cheapest(candidates, options), tuple(tried)
+
+
+def _verify_text(
+    understanding: Understanding, oracle: Oracle, block: Block, circuit: Circuit, options: BuildOptions
+) -> Verdict:
+    """Verify what a reader of the file would see. `plain` loses the registers: they are put back first."""
+    bare = write(circuit, format=options.format, header=())
+    spec = understanding.spec
+    program = read(bare, source=spec.source)
+    if not same_gates(program.circuit, circuit):
+        raise AssertionError("the text written does not read back as the circuit")
+    named = Program(circuit=circuit, version=program.version, comments=program.comments)
+    return verify_program(
+        spec, named, oracle=oracle, exact_phase=True, placement=describe_placement(block, understanding)
+    )
+
+
+def _accept(verdict: Verdict, options: BuildOptions) -> Evidence:
+    if verdict.holds is False:
+        found = verdict.counterexample
+        raise AssertionError(
+            f"a defect of revsynth: the circuit built is wrong, nothing was written ({found.why if found else ''})"
+        )
+    if verdict.holds is None and not options.unverified:
+        raise UndecidedError(
+            f"verification could not finish: {verdict.evidence.detail}; nothing was written "
+            "(--unverified writes all the same)"
+        )
+    return verdict.evidence
+
+
+def same_gates(one: Circuit, other: Circuit) -> bool:
+    """Whether two circuits hold the same operations on the same qubit numbers, whatever the registers."""
+    renamed = Circuit(
+        other.registers, other.bit_registers, one.kind, one.offset, one.operand, one.condition, one.bit,
+        one.angles, one.conditions,
+    )  # fmt: skip
+    return one.qubits == other.qubits and one.bits == other.bits and renamed == other
+
+
+class _Clock:
+    """Wall-clock seconds by stage."""
+
+    def __init__(self) -> None:
+        self.started = time.monotonic()
+        self._last = self.started
+        self._laps: dict[str, float] = {}
+
+    def lap(self, name: str) -> None:
+        now = time.monotonic()
+        self._laps[name] = round(now - self._last, 4)
+        self._last = now
+
+    def seconds(self) -> dict[str, float]:
+        return {**self._laps, "total": round(self._last - self.started, 4)}

@@ -1,0 +1,11 @@
+"""The synthesis methods. A new one is one new module and one line in `METHODS`."""
+
+from __future__ import annotations
+
+from revsynth.synthesis.interface import Method
+from revsynth.synthesis.linear import LINEAR
+from revsynth.synthesis.products import PRODUCTS
+from revsynth.synthesis.transform import TRANSFORM
+
+METHODS: tuple[Method, ...] = (LINEAR, PRODUCTS, TRANSFORM)
+"""Tried in this order; `auto` keeps the cheapest result for the aim."""
