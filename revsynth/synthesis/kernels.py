@@ -171,9 +171,7 @@ def transform_one(
     valid = np.uint64((1 << min(size, 64)) - 1)
     forward = wide.astype(np.uint32) if both else inverse
     count = int(
-        transform(
-            after, before, forward, inverse, valid, both, controls == "minimal", target, care, on_input
-        )
+        transform(after, before, forward, inverse, valid, both, controls == "minimal", target, care, on_input)
     )
     first = on_input[:count].astype(bool)
     order = np.concatenate([np.flatnonzero(first), np.flatnonzero(~first)[::-1]])

@@ -1,0 +1,135 @@
+"""The largest output multiplicity: how often one output value must occur, free bits chosen best.
+
+An embedding adds enough garbage to tell those inputs apart.
+"""
+
+from __future__ import annotations
+
+from collections import deque
+
+import numpy as np
+
+from revsynth.logic.function import Function
+from revsynth.logic.truth_table import unpack_values
+
+MAX_CHOICES = 1 << 12
+"""Half-free values are spread over their completions exactly up to this many (value, completion) pairs."""
+
+
+def output_multiplicity(function: Function) -> int:
+    """The smallest possible largest multiplicity, at least 1, over the inputs with a fixed output bit.
+
+    Exact where outputs are wholly fixed or wholly free, and with half-free outputs up to `MAX_CHOICES`
+    completions; beyond, an upper bound (each value completed with zeros).
+    """
+    values = unpack_values(function.values, function.inputs)
+    care = unpack_values(function.care, function.inputs)
+    cared = care != 0
+    if not cared.any():
+        return 1
+    pairs, counts = np.unique(np.stack([care[cared], values[cared]]), axis=1, return_counts=True)
+    full = (1 << function.outputs) - 1
+    if np.all(pairs[0] == full):
+        return int(counts.max())
+    choices = int(sum(1 << (full & ~int(mask)).bit_count() for mask in pairs[0]))
+    if choices > MAX_CHOICES:
+        return int(np.unique(values[cared], return_counts=True)[1].max())
+    groups = [
+        (int(count), _completions(full & ~int(mask), int(value)))
+        for mask, value, count in zip(pairs[0], pairs[1], counts, strict=True)
+    ]
+    low, high = -(-int(counts.sum()) // (full + 1)), int(counts.sum())
+    while low < high:
+        middle = (low + high) // 2
+        if _fits(groups, middle):
+            high = middle
+        else:
+            low = middle + 1
+    return low
+
+
+def _completions(free: int, value: int) -> list[int]:
+    """`value` with every choice of the bits in `free`, ascending."""
+    found = [value]
+    for bit in range(free.bit_length()):
+        if (free >> bit) & 1:
+            found += [one | (1 << bit) for one in found]
+    return sorted(found)
+
+
+def _fits(groups: list[tuple[int, list[int]]], capacity: int) -> bool:
+    """Whether every group can spread its inputs over its completions, at most `capacity` on each.
+
+    A maximum flow by shortest augmenting paths (Edmonds, Karp, J. ACM 19, 1972).
+    """
+    load: dict[int, int] = {}
+    flow: list[dict[int, int]] = [{} for _ in groups]
+    users: dict[int, set[int]] = {}
+    for index, (_, choices) in enumerate(groups):
+        for choice in choices:
+            users.setdefault(choice, set()).add(index)
+    for index, (count, _) in enumerate(groups):
+        rest = count
+        while rest:
+            pushed = _push(groups, flow, load, users, index, rest, capacity)
+            if not pushed:
+                return False
+            rest -= pushed
+    return True
+
+
+def _push(
+    groups: list[tuple[int, list[int]]],
+    flow: list[dict[int, int]],
+    load: dict[int, int],
+    users: dict[int, set[int]],
+    start: int,
+    most: int,
+    capacity: int,
+) -> int:
+    """Send up to `most` inputs of group `start` along one augmenting path; how many went."""
+    came_by: dict[int, tuple[int, int]] = {}
+    reached: set[int] = {start}
+    seen: set[int] = set()
+    queue: deque[int] = deque([start])
+    while queue:
+        group = queue.popleft()
+        for value in groups[group][1]:
+            if value in seen:
+                continue
+            seen.add(value)
+            room = capacity - load.get(value, 0)
+            if room > 0:
+                return _along(flow, load, came_by, group, value, start, min(most, room))
+            for other in sorted(users[value]):
+                if other not in reached and flow[other].get(value, 0) > 0:
+                    reached.add(other)
+                    came_by[other] = (group, value)
+                    queue.append(other)
+    return 0
+
+
+def _along(
+    flow: list[dict[int, int]],
+    load: dict[int, int],
+    came_by: dict[int, tuple[int, int]],
+    group: int,
+    value: int,
+    start: int,
+    amount: int,
+) -> int:
+    """Move `amount` (or what the path allows) so that `group` takes `value` and its predecessors follow."""
+    here = group
+    while here != start:
+        previous, given = came_by[here]
+        amount = min(amount, flow[here][given])
+        here = previous
+    load[value] = load.get(value, 0) + amount
+    here, gained = group, value
+    while True:
+        flow[here][gained] = flow[here].get(gained, 0) + amount
+        if here == start:
+            return amount
+        previous, given = came_by[here]
+        flow[here][given] -= amount
+        here, gained = previous, given
