@@ -1,0 +1,49 @@
+"""Names: which functions expressions have, and what words, constants and loop variables may be called."""
+
+from __future__ import annotations
+
+import keyword
+import re
+
+from revsynth.errors import SpecError
+
+FUNCTIONS: dict[str, tuple[int, int | None]] = {
+    "abs": (1, 1),
+    "all": (1, 1),
+    "any": (1, 1),
+    "distinct": (1, None),
+    "len": (1, 1),
+    "max": (1, None),
+    "min": (1, None),
+    "parity": (1, 1),
+    "popcount": (1, 1),
+    "pow": (2, 3),
+    "range": (1, 3),
+    "sum": (1, 2),
+}
+"""The functions of expressions: fewest and most arguments (None: no limit)."""
+
+FORMULA_FUNCTIONS = ("Xor", "Majority", "OneHot", "OneHot0", "ITE", "And", "Or", "Not")
+STEP_FUNCTIONS = ("rotate",)
+TAKEN = frozenset((*FUNCTIONS, *FORMULA_FUNCTIONS, *STEP_FUNCTIONS))
+"""Names that words, constants and loop variables may not have, besides Python's keywords."""
+
+_NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]*", re.ASCII)
+
+
+def why_not_a_name(name: str) -> str | None:
+    """Say in words why `name` cannot name a word, constant or loop variable; None where it can."""
+    if not isinstance(name, str) or not _NAME.fullmatch(name):
+        return "names are ASCII letters, digits and underscores, a letter first"
+    if keyword.iskeyword(name):
+        return "it is a Python keyword; choose another name"
+    if name in TAKEN:
+        return "it is a function of expressions or formulas; choose another name"
+    return None
+
+
+def check_name(name: str, *, source: str = "", place: str = "") -> None:
+    """Accept the name of a word or constant, or raise SpecError saying what would be right."""
+    why = why_not_a_name(name)
+    if why is not None:
+        raise SpecError(f"{name!r} cannot be a name: {why}", source=source, place=place)
