@@ -1,0 +1,80 @@
+"""The look-back pass: every gate is brought next to earlier ones on its target, and what gets cheaper is done.
+
+A gate meets an earlier one if the gates between them can move out of the way: to the right past the newer gate, or
+aside because the earlier one passes them. Those that can do neither stay between the two.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from revsynth.cascade.price import Uncompute
+from revsynth.options import Controls
+from revsynth.reduction.masks import Masks
+from revsynth.reduction.rewriting import improvement
+from revsynth.reduction.rules.moving import cross
+
+
+@dataclass(frozen=True)
+class Look:
+    """How far a gate looks back: at most so many gates, and so many that stay between."""
+
+    reach: int
+    between: int
+
+
+def look_back(
+    gates: list[Masks], look: Look, controls: Controls, uncompute: Uncompute
+) -> tuple[list[Masks], bool]:
+    """The gates once no gate has an earlier one to gain from; and whether anything changed.
+
+    After a change the gates from there on are looked at again, so one pass ends at a fixed point. Time is
+    proportional to gates plus changes, times `reach` and `between`.
+    """
+    done: list[Masks] = []
+    coming = gates[::-1]
+    changed = False
+    while coming:
+        gate = coming.pop()
+        start, after = _meet(done, gate, look, controls, uncompute)
+        if after is None:
+            done.append(gate)
+            continue
+        changed = True
+        del done[start:]
+        coming.extend(reversed(after))
+    return done, changed
+
+
+def _meet(
+    done: list[Masks], gate: Masks, look: Look, controls: Controls, uncompute: Uncompute
+) -> tuple[int, list[Masks] | None]:
+    """Where the gates from an earlier one on are to be replaced, and by what; None where nothing is gained."""
+    turn = controls == "mixed"
+    between: list[Masks] = []
+    passed: list[Masks] = []
+    for index in range(len(done) - 1, max(len(done) - look.reach, 0) - 1, -1):
+        earlier = done[index]
+        moved = earlier
+        aside: list[Masks] = []
+        for other in between:
+            crossed = cross(moved, other, turn=turn)
+            if crossed is None:
+                break
+            aside.append(crossed[0])
+            moved = crossed[1]
+        else:
+            if moved[0] == gate[0]:
+                better = improvement((moved, gate), controls, uncompute)
+                if better is not None:
+                    return index, [*aside, *better, *reversed(passed)]
+            crossed = cross(moved, gate, turn=turn)
+            if crossed is not None:
+                between = aside
+                gate = crossed[0]
+                passed.append(crossed[1])
+                continue
+        if len(between) == look.between:
+            break
+        between.insert(0, earlier)
+    return 0, None

@@ -1,0 +1,85 @@
+"""From a cascade to a cheaper one that does the same: the passes in turn, until none of them gains."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+from revsynth.cascade.model import Cascade
+from revsynth.cascade.price import Uncompute
+from revsynth.errors import UsageError
+from revsynth.options import CHOICES, Controls
+from revsynth.reduction.lookback import Look, look_back
+from revsynth.reduction.masks import Masks, masked, unmasked
+from revsynth.reduction.stretches import WIDE, in_stretches
+from revsynth.reduction.windows import Search, search_windows
+
+Progress = Callable[[str], None]
+
+LOOK = Look(reach=32, between=8)
+
+SEARCHES: tuple[tuple[int, Search], ...] = (
+    (64, Search(width=10, reach=32, forms=300, step=1)),
+    (4_000, Search(width=8, reach=24, forms=200, step=3)),
+    (40_000, Search(width=4, reach=12, forms=50, step=1)),
+)
+"""Cascades of up to so many gates are searched so far; longer ones get the look-back pass alone."""
+
+
+def silent(_: str) -> None:
+    """A progress that says nothing."""
+
+
+def reduce(
+    cascade: Cascade,
+    *,
+    controls: Controls = "mixed",
+    uncompute: Uncompute = "unitary",
+    progress: Progress = silent,
+) -> Cascade:
+    """A cascade of the same function, signs included, on the same lines, that costs no more.
+
+    Cost is (gates, T by `cascade.price` with this `uncompute`, control literals), compared in this order, and
+    neither gates nor T ever rise. The same cascade comes back where nothing is gained, so a second call changes
+    nothing. `controls="positive"` brings in no negative control; those that are there may stay.
+    Time is about proportional to the gates; it does not depend on the lines that a gate does not touch.
+
+    Raises UsageError for unknown `controls` or `uncompute`.
+    """
+    for name, value in (("controls", controls), ("uncompute", uncompute)):
+        if value not in CHOICES[name]:
+            raise UsageError(f"{name} {value!r} is not one of {', '.join(CHOICES[name])}")
+    total = len(cascade)
+
+    def work(gates: list[Masks]) -> tuple[list[Masks], bool]:
+        return _settle(gates, total, controls, uncompute, progress)
+
+    if cascade.lines >= WIDE:
+        return in_stretches(cascade, work)
+    gates, changed = work(masked(cascade))
+    return unmasked(cascade.lines, gates) if changed else cascade
+
+
+def _settle(
+    gates: list[Masks], total: int, controls: Controls, uncompute: Uncompute, progress: Progress
+) -> tuple[list[Masks], bool]:
+    """Both passes in turn until the search gains nothing on what the look-back pass left; and whether one did.
+
+    `total` is the length of the whole cascade, which decides how far to search.
+    """
+    changed = False
+    while True:
+        before = len(gates)
+        gates, gained = look_back(gates, LOOK, controls, uncompute)
+        total += len(gates) - before
+        changed = changed or gained
+        search = next((search for most, search in SEARCHES if total <= most), None)
+        if search is None:
+            return gates, changed
+        if len(gates) > 1_000:
+            progress(f"searching {len(gates)} gates for exchanges")
+        before = len(gates)
+        gates, gained = search_windows(gates, search, controls, uncompute)
+        if not gained:
+            return gates, changed
+        total += len(gates) - before
+        changed = True

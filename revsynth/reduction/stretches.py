@@ -1,0 +1,54 @@
+"""Wide cascades a stretch at a time, each on the lines it touches: a mask is never wider than a stretch is busy."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+from revsynth.cascade.model import PHASE, Cascade, Gate, Line
+from revsynth.reduction.masks import Masks, to_gate
+
+WIDE = 256
+"""Lines from which on a cascade is worked on in stretches."""
+STRETCH = 2_048
+"""Gates in a stretch."""
+
+Work = Callable[[list[Masks]], tuple[list[Masks], bool]]
+
+
+def in_stretches(cascade: Cascade, work: Work) -> Cascade:
+    """The cascade after `work` on overlapping stretches, again and again until it changes none of them.
+
+    The stretches of every second round lie across the borders of those of the first.
+    """
+    gates = list(cascade)
+    quiet = 0
+    changed = False
+    border = 0
+    while quiet < 2:
+        after: list[Gate] = []
+        active = False
+        start = 0
+        for end in (*range(border or STRETCH, len(gates), STRETCH), len(gates)):
+            stretch, gained = _on_own_lines(gates[start:end], work)
+            after.extend(stretch)
+            active = active or gained
+            start = end
+        gates = after
+        changed = changed or active
+        quiet = 0 if active else quiet + 1
+        border = 0 if border else STRETCH // 2
+    return Cascade.from_gates(cascade.lines, gates) if changed else cascade
+
+
+def _on_own_lines(gates: list[Gate], work: Work) -> tuple[list[Gate], bool]:
+    """The gates after `work`, which sees them on lines 0, 1, ... without gaps, in the same order."""
+    lines: list[Line] = sorted({line for gate in gates for line in gate.lines})
+    bit = {line: 1 << index for index, line in enumerate(lines)}
+    masked: list[Masks] = []
+    for target, controls in gates:
+        literals = [0, 0]
+        for control in controls:
+            literals[control & 1] |= bit[control >> 1]
+        masked.append((0 if target == PHASE else bit[target], literals[0], literals[1]))
+    after, gained = work(masked)
+    return ([to_gate(gate, lines) for gate in after], True) if gained else (gates, False)
