@@ -28,7 +28,7 @@ class Step(NamedTuple):
 
 
 class Variant(NamedTuple):
-    """How to go about it: `both` sides, rows in the order of their number XOR `flip`, `width` images tried."""
+    """How to go about it: `both` sides or one, rows by their number XOR `flip`, `width` images tried."""
 
     both: bool
     flip: int = 0
@@ -129,7 +129,7 @@ class _Run:
         return sorted(found, key=lambda one: (one[1], one[0]))
 
     def _path(self, place: int, goal: int) -> list[Step] | None:
-        """Gates from `place` to `goal`, one a differing bit, the cheapest next; None where all are blocked."""
+        """Gates from `place` to `goal`, one a differing bit, cheapest first; None where all are blocked."""
         path: list[Step] = []
         while place != goal:
             best: tuple[int, int, int] | None = None
