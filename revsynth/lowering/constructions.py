@@ -1,0 +1,149 @@
+"""The list of constructions, and the choice of the cheapest that the scratch at hand allows."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from functools import cache
+from typing import NamedTuple
+
+from revsynth.circuit.model import Kind
+from revsynth.lowering.borrowed_chain import BorrowedChain
+from revsynth.lowering.clean_tree import CleanTree
+from revsynth.lowering.composites import expansion
+from revsynth.lowering.construction import Construction, Needs, Site
+from revsynth.lowering.direct import Direct
+from revsynth.lowering.draft import Composite, Draft, Template, Tip
+from revsynth.lowering.erased_tree import ErasedTree
+from revsynth.lowering.one_line import OneBorrowedLine, OneCleanLine
+from revsynth.options import Aim, GateSet, Uncompute
+
+CONSTRUCTIONS: tuple[Construction, ...] = (
+    Direct(),
+    CleanTree(),
+    OneCleanLine(),
+    BorrowedChain(),
+    OneBorrowedLine(),
+)
+"""Every unitary construction; a new one is a new file and a line here. `ErasedTree` wraps each of them."""
+
+
+@dataclass(frozen=True)
+class Style:
+    """What lowering is asked for."""
+
+    gates: GateSet
+    uncompute: Uncompute
+    aim: Aim
+
+
+class Price(NamedTuple):
+    """T gates (Toffolis in the gate set `toffoli`), all gates and layers of depth of one template."""
+
+    t: int
+    gates: int
+    depth: int
+
+    def key(self, aim: Aim) -> tuple[int, int, int]:
+        """What to make small first, second and third."""
+        if aim == "gates":
+            return (self.gates, self.t, self.depth)
+        if aim == "depth":
+            return (self.depth, self.t, self.gates)
+        return (self.t, self.gates, self.depth)
+
+
+@dataclass(frozen=True)
+class Choice:
+    """The construction for a gate. The template's qubits: controls, target, clean ones, borrowed ones."""
+
+    construction: Construction
+    needs: Needs
+    template: Template
+    price: Price
+
+
+@cache
+def choose(controls: int, tip: Tip, clean: int, borrowed: int, style: Style) -> Choice | None:
+    """The cheapest construction for that many controls and scratch qubits, the first where they tie.
+
+    None where there is none: three or more controls without any scratch.
+    """
+    best: Choice | None = None
+    for construction in _candidates(controls, clean, style.uncompute):
+        needs = construction.needs(controls)
+        if needs is None or needs.clean > clean or needs.clean + needs.borrowed > clean + borrowed:
+            continue
+        template = construction_template(construction, controls, tip)
+        price = price_of(template, style)
+        if best is None or price.key(style.aim) < best.price.key(style.aim):
+            best = Choice(construction, needs, template, price)
+    return best
+
+
+def _candidates(controls: int, clean: int, uncompute: Uncompute) -> Iterator[Construction]:
+    """All constructions that can pay. A product more saves T, so only the most products, or one less, do."""
+    yield from CONSTRUCTIONS
+    if uncompute == "measured":
+        most = min(clean, controls - 1)
+        for products in (most, most - 1):
+            if products >= 1:
+                yield from (ErasedTree(products, inner) for inner in CONSTRUCTIONS)
+
+
+@cache
+def construction_template(construction: Construction, controls: int, tip: Tip) -> Template:
+    """Write a construction down on local qubits: controls, target, clean, borrowed."""
+    needs = construction.needs(controls)
+    if needs is None:
+        raise ValueError(f"{construction.name} is not made for {controls} controls")
+    clean = range(controls + 1, controls + 1 + needs.clean)
+    borrowed = range(clean.stop, clean.stop + needs.borrowed)
+    draft = Draft()
+    construction.write(draft, tip, Site(range(controls), controls, clean, borrowed))
+    return draft.template()
+
+
+@cache
+def _gate_price(kind: int, operands: int, style: Style) -> Price:
+    """T count (or Toffolis), gates and layers of one gate of a template, written out in the gate set."""
+    if operands < 3:
+        return Price(int(kind in (Kind.T, Kind.TDG)), 1, 1)
+    template = expansion(kind, style.gates, style.uncompute)
+    toffoli = style.gates == "toffoli"
+    plain = (Kind.X, Kind.Z) if toffoli else (Kind.T, Kind.TDG)
+    wanted = [
+        k in plain and (n == 3 or not toffoli) for k, n in zip(template.kind, template.count, strict=True)
+    ]
+    return Price(sum(wanted), len(template), _layers(template, [1] * len(template)))
+
+
+def price_of(template: Template, style: Style) -> Price:
+    """Count a template; composite gates count as what they stand for, in one block of depth."""
+    parts = [
+        _gate_price(int(kind), int(count), style)
+        for kind, count in zip(template.kind, template.count, strict=True)
+    ]
+    return Price(
+        sum(part.t for part in parts),
+        sum(part.gates for part in parts),
+        _layers(template, [part.depth for part in parts]),
+    )
+
+
+def _layers(template: Template, duration: list[int]) -> int:
+    """Depth as soon as possible, each gate taking that many layers on all its qubits."""
+    busy: dict[int, int] = {}
+    local = template.local.tolist()
+    cursor = 0
+    for count, layers in zip(template.count.tolist(), duration, strict=True):
+        qubits = local[cursor : cursor + count]
+        cursor += count
+        end = max(busy.get(qubit, 0) for qubit in qubits) + layers
+        busy.update(dict.fromkeys(qubits, end))
+    return max(busy.values(), default=0)
+
+
+def is_composite(kind: int, operands: int) -> bool:
+    """Whether a gate is written out by `composites.expansion`."""
+    return operands == 3 and (kind in (Kind.X, Kind.Z) or kind >= min(Composite))

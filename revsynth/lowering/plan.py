@@ -1,0 +1,230 @@
+"""From a cascade to pieces: which template goes onto which qubits, gate by gate.
+
+Controls that wait for 0 are met by flipping their line, lazily: each line remembers whether it is held
+flipped, a NOT of the cascade only changes that, and an X is written where a gate needs the other polarity. So
+neighbouring X pairs never arise, and no X is written for a negative control of a CNOT.
+"""
+
+from __future__ import annotations
+
+from array import array
+from collections import Counter
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+
+from revsynth.circuit.model import Kind
+from revsynth.lowering.constructions import Choice, Style
+from revsynth.lowering.draft import Draft, Template, Tip
+from revsynth.lowering.fan_out import Unit
+from revsynth.lowering.scratch import Demand, scratch_needed
+from revsynth.lowering.zero_lines import LineValues
+
+
+def _one(kind: Kind, qubits: int) -> Template:
+    draft = Draft()
+    draft.put(kind, range(qubits))
+    return draft.template()
+
+
+FLIP = _one(Kind.X, 1)
+SIGN = _one(Kind.Z, 1)
+COPY = _one(Kind.X, 2)
+
+
+@dataclass(frozen=True)
+class Step:
+    """One unit of the cascade with what is known at that moment.
+
+    controls: literals of the product (of a phase gate all but the last); target: where the tip goes, -1 for
+    none; before, after: targets that are changed too, by CNOTs from the target before or after the tip;
+    zeros: further lines known to be in 0 that the unit does not touch.
+    """
+
+    controls: tuple[int, ...]
+    tip: Tip
+    target: int
+    last: int = -1
+    before: tuple[int, ...] = ()
+    after: tuple[int, ...] = ()
+    zeros: tuple[int, ...] = ()
+
+
+def steps_of(units: Sequence[Unit], lines: int, known: dict[int, int]) -> list[Step]:
+    """Steps with tips by what is known of the lines; `known` gives those that start in 0 or 1 for certain."""
+    if not known:
+        return [_plain_step(unit) for unit in units]
+    state = LineValues.start(lines, known)
+    steps: list[Step] = []
+    for unit in units:
+        zero_before = [line for line in range(lines) if state.is_zero(line)]
+        state.apply(unit.controls, unit.targets)
+        touched = {*unit.targets, *(c >> 1 for c in unit.controls)}
+        zeros = tuple(line for line in zero_before if line not in touched)
+        if not unit.targets:
+            steps.append(_plain_step(unit, zeros))
+            continue
+        before = [t for t in unit.targets if t in zero_before]
+        after = [t for t in unit.targets if state.is_zero(t)]
+        steps.append(_not_step(unit, before, after, zeros))
+    return steps
+
+
+def _plain_step(unit: Unit, zeros: tuple[int, ...] = ()) -> Step:
+    if unit.targets:
+        return _not_step(unit, [], [], zeros)
+    if not unit.controls:
+        return Step((), Tip.Z, -1)
+    return Step(unit.controls[:-1], Tip.Z, unit.controls[-1] >> 1, unit.controls[-1], zeros=zeros)
+
+
+def _not_step(unit: Unit, before: list[int], after: list[int], zeros: tuple[int, ...]) -> Step:
+    tip, target = Tip.NOT, unit.targets[0]
+    if after:
+        tip, target = Tip.TO_ZERO, after[0]
+    elif before:
+        tip, target = Tip.FROM_ZERO, before[0]
+    others = tuple(t for t in unit.targets if t != target)
+    return Step(
+        unit.controls,
+        tip,
+        target,
+        before=() if tip is Tip.FROM_ZERO else others,
+        after=() if tip is Tip.TO_ZERO else others,
+        zeros=zeros,
+    )
+
+
+@dataclass
+class Pieces:
+    """Templates and the qubits they go to: piece i has its qubits in `qubits` from `start[i]` on."""
+
+    templates: list[Template] = field(default_factory=list)
+    template: array[int] = field(default_factory=lambda: array("i"))
+    start: array[int] = field(default_factory=lambda: array("q"))
+    qubits: array[int] = field(default_factory=lambda: array("i"))
+    _number: dict[int, int] = field(default_factory=dict)
+
+    def put(self, template: Template, qubits: Sequence[int]) -> None:
+        """Append a piece."""
+        number = self._number.setdefault(id(template), len(self.templates))
+        if number == len(self.templates):
+            self.templates.append(template)
+        self.template.append(number)
+        self.start.append(len(self.qubits))
+        self.qubits.extend(qubits)
+
+
+@dataclass(frozen=True)
+class Plan:
+    """Pieces on the lines and then `scratch` scratch qubits; `minus` where the constant -1 is left over."""
+
+    pieces: Pieces
+    scratch: int
+    minus: bool
+
+
+def plan(steps: Sequence[Step], lines: int, max_qubits: int | None, style: Style) -> Plan:
+    """Choose the scratch and write every step; raises BudgetError."""
+    demands = Counter(_demand(step, lines) for step in steps if step.controls)
+    scratch = scratch_needed(demands, lines, max_qubits, style)
+    choices: dict[Demand, Choice] = {}
+    for demand in demands:
+        choice = demand.choice(scratch, style)
+        if choice is None:
+            raise AssertionError(f"no construction for {demand} with {scratch} scratch qubits")
+        choices[demand] = choice
+    writer = _Writer(lines, scratch)
+    for step in steps:
+        writer.write(step, choices[_demand(step, lines)] if step.controls else None)
+    writer.finish()
+    return Plan(writer.pieces, scratch, writer.minus)
+
+
+def _demand(step: Step, lines: int) -> Demand:
+    zeros = len(step.zeros)
+    return Demand(len(step.controls), step.tip, zeros, lines - len(step.controls) - 1 - zeros)
+
+
+class _Writer:
+    """Writes steps to pieces, holding lines flipped."""
+
+    def __init__(self, lines: int, scratch: int) -> None:
+        self.pieces = Pieces()
+        self.minus = False
+        self._lines = lines
+        self._scratch = list(range(lines, lines + scratch))
+        self._flipped = bytearray(lines + scratch)
+
+    def write(self, step: Step, choice: Choice | None) -> None:
+        """One step; without controls it needs no choice."""
+        if step.tip is Tip.Z and not self._ready_for_phase(step):
+            return
+        if choice is None:
+            if step.tip is Tip.Z:
+                self.pieces.put(SIGN, (step.target,))
+                return
+            for target in (step.target, *step.before, *step.after):
+                self._flipped[target] ^= 1
+            return
+        if len(step.controls) == 1 and step.tip is not Tip.Z:
+            self._write_cnots(step)
+            return
+        controls = [control >> 1 for control in step.controls]
+        for control in step.controls:
+            if (control & 1) != self._flipped[control >> 1]:
+                self._flip(control >> 1)
+        if step.tip in (Tip.FROM_ZERO, Tip.TO_ZERO):
+            self._unflip(step.target)
+        for other in step.before:
+            self.pieces.put(COPY, (step.target, other))
+        self.pieces.put(choice.template, self._place(step, controls, choice))
+        for other in step.after:
+            self.pieces.put(COPY, (step.target, other))
+
+    def _ready_for_phase(self, step: Step) -> bool:
+        """Meet the last literal of a phase gate; False where nothing but a constant is left to do."""
+        if step.target < 0:
+            self.minus = not self.minus
+            return False
+        wrong = (step.last & 1) != self._flipped[step.target]
+        if wrong and step.controls:
+            self._flip(step.target)
+        elif wrong:
+            self.minus = not self.minus
+        return True
+
+    def _write_cnots(self, step: Step) -> None:
+        control = step.controls[0] >> 1
+        flips = (step.controls[0] & 1) ^ self._flipped[control]
+        for target in dict.fromkeys((step.target, *step.before, *step.after)):
+            self.pieces.put(COPY, (control, target))
+            self._flipped[target] ^= flips
+
+    def _place(self, step: Step, controls: list[int], choice: Choice) -> list[int]:
+        """The qubits of a template: controls, target, clean ones, borrowed ones."""
+        needs = choice.needs
+        if not any(needs):
+            return [*controls, step.target]
+        clean = [*self._scratch, *sorted(step.zeros, key=lambda line: (self._flipped[line], line))]
+        taken = clean[: needs.clean]
+        for line in taken:
+            self._unflip(line)
+        busy = {*controls, step.target, *taken}
+        borrowed: list[int] = []
+        if needs.borrowed:
+            everything = range(self._lines + len(self._scratch))
+            borrowed = [line for line in everything if line not in busy][: needs.borrowed]
+        return [*controls, step.target, *taken, *borrowed]
+
+    def _flip(self, line: int) -> None:
+        self.pieces.put(FLIP, (line,))
+        self._flipped[line] ^= 1
+
+    def _unflip(self, line: int) -> None:
+        if self._flipped[line]:
+            self._flip(line)
+
+    def finish(self) -> None:
+        """Bring every line back to where it should be."""
+        for line in range(self._lines):
+            self._unflip(line)
