@@ -1,17 +1,15 @@
-"""The look-back pass: every gate is brought next to earlier ones on its target, and what gets cheaper is done.
+"""The look-back pass: every gate is brought next to earlier ones on its target; what gets cheaper is done.
 
-A gate meets an earlier one if the gates between them can move out of the way: to the right past the newer gate, or
-aside because the earlier one passes them. Those that can do neither stay between the two.
+A gate meets an earlier one if each gate between them can get out of the way: either the newer one passes it,
+or the earlier one does.
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 
-from revsynth.cascade.price import Uncompute
-from revsynth.options import Controls
 from revsynth.reduction.masks import Masks
-from revsynth.reduction.rewriting import improvement
+from revsynth.reduction.rewriting import Rewriter
 from revsynth.reduction.rules.moving import cross
 
 
@@ -23,9 +21,7 @@ class Look:
     between: int
 
 
-def look_back(
-    gates: list[Masks], look: Look, controls: Controls, uncompute: Uncompute
-) -> tuple[list[Masks], bool]:
+def look_back(gates: list[Masks], look: Look, rewriter: Rewriter) -> tuple[list[Masks], bool]:
     """The gates once no gate has an earlier one to gain from; and whether anything changed.
 
     After a change the gates from there on are looked at again, so one pass ends at a fixed point. Time is
@@ -36,7 +32,7 @@ def look_back(
     changed = False
     while coming:
         gate = coming.pop()
-        start, after = _meet(done, gate, look, controls, uncompute)
+        start, after = _meet(done, gate, look, rewriter)
         if after is None:
             done.append(gate)
             continue
@@ -46,11 +42,12 @@ def look_back(
     return done, changed
 
 
-def _meet(
-    done: list[Masks], gate: Masks, look: Look, controls: Controls, uncompute: Uncompute
-) -> tuple[int, list[Masks] | None]:
-    """Where the gates from an earlier one on are to be replaced, and by what; None where nothing is gained."""
-    turn = controls == "mixed"
+def _meet(done: list[Masks], gate: Masks, look: Look, rewriter: Rewriter) -> tuple[int, list[Masks] | None]:
+    """From which gate on to replace, and by what; None where nothing is gained.
+
+    `between` are the gates that the newer one cannot pass, first one first; `passed` those it has passed.
+    """
+    turn = rewriter.may_turn
     between: list[Masks] = []
     passed: list[Masks] = []
     for index in range(len(done) - 1, max(len(done) - look.reach, 0) - 1, -1):
@@ -65,7 +62,7 @@ def _meet(
             moved = crossed[1]
         else:
             if moved[0] == gate[0]:
-                better = improvement((moved, gate), controls, uncompute)
+                better = rewriter.improvement((moved, gate))
                 if better is not None:
                     return index, [*aside, *better, *reversed(passed)]
             crossed = cross(moved, gate, turn=turn)

@@ -10,6 +10,7 @@ from revsynth.errors import UsageError
 from revsynth.options import CHOICES, Controls
 from revsynth.reduction.lookback import Look, look_back
 from revsynth.reduction.masks import Masks, masked, unmasked
+from revsynth.reduction.rewriting import Rewriter, rewriter
 from revsynth.reduction.stretches import WIDE, in_stretches
 from revsynth.reduction.windows import Search, search_windows
 
@@ -39,8 +40,8 @@ def reduce(
     """A cascade of the same function, signs included, on the same lines, that costs no more.
 
     Cost is (gates, T by `cascade.price` with this `uncompute`, control literals), compared in this order, and
-    neither gates nor T ever rise. The same cascade comes back where nothing is gained, so a second call changes
-    nothing. `controls="positive"` brings in no negative control; those that are there may stay.
+    neither gates nor T ever rise. The same cascade comes back where nothing is gained, so a second call
+    changes nothing. `controls="positive"` brings in no negative control; those that are there may stay.
     Time is about proportional to the gates; it does not depend on the lines that a gate does not touch.
 
     Raises UsageError for unknown `controls` or `uncompute`.
@@ -48,28 +49,26 @@ def reduce(
     for name, value in (("controls", controls), ("uncompute", uncompute)):
         if value not in CHOICES[name]:
             raise UsageError(f"{name} {value!r} is not one of {', '.join(CHOICES[name])}")
-    total = len(cascade)
+    rules = rewriter(controls, uncompute)
 
-    def work(gates: list[Masks]) -> tuple[list[Masks], bool]:
-        return _settle(gates, total, controls, uncompute, progress)
+    def work(gates: list[Masks], total: int) -> tuple[list[Masks], bool]:
+        return _settle(gates, total, rules, progress)
 
     if cascade.lines >= WIDE:
         return in_stretches(cascade, work)
-    gates, changed = work(masked(cascade))
+    gates, changed = work(masked(cascade), len(cascade))
     return unmasked(cascade.lines, gates) if changed else cascade
 
 
-def _settle(
-    gates: list[Masks], total: int, controls: Controls, uncompute: Uncompute, progress: Progress
-) -> tuple[list[Masks], bool]:
-    """Both passes in turn until the search gains nothing on what the look-back pass left; and whether one did.
+def _settle(gates: list[Masks], total: int, rules: Rewriter, progress: Progress) -> tuple[list[Masks], bool]:
+    """Both passes in turn until the search gains nothing on what look-back left; and whether any did.
 
     `total` is the length of the whole cascade, which decides how far to search.
     """
     changed = False
     while True:
         before = len(gates)
-        gates, gained = look_back(gates, LOOK, controls, uncompute)
+        gates, gained = look_back(gates, LOOK, rules)
         total += len(gates) - before
         changed = changed or gained
         search = next((search for most, search in SEARCHES if total <= most), None)
@@ -78,7 +77,7 @@ def _settle(
         if len(gates) > 1_000:
             progress(f"searching {len(gates)} gates for exchanges")
         before = len(gates)
-        gates, gained = search_windows(gates, search, controls, uncompute)
+        gates, gained = search_windows(gates, search, rules)
         if not gained:
             return gates, changed
         total += len(gates) - before

@@ -1,7 +1,4 @@
-"""The rules put to work on neighbouring gates, with what is worse or not allowed left out.
-
-The answers are kept for a while: a search meets the same few gates again and again.
-"""
+"""The rules put to work on neighbouring gates, with what is worse or not allowed left out."""
 
 from __future__ import annotations
 
@@ -14,7 +11,10 @@ from revsynth.reduction.masks import Masked, negatives, weigh
 from revsynth.reduction.rules import RULES
 
 KEPT = 1 << 15
-"""How many windows' answers are kept."""
+"""How many answers are kept before all are forgotten."""
+
+SIZES = tuple(sorted({rule.size for rule in RULES}))
+"""How many neighbouring gates the rules look at."""
 
 
 class Change(NamedTuple):
@@ -28,34 +28,59 @@ class Change(NamedTuple):
     literals: int
 
 
-@lru_cache(maxsize=KEPT)
-def changes(gates: Masked, controls: Controls, uncompute: Uncompute) -> tuple[Change, ...]:
-    """All that the rules of this size make of the gates, the cheapest first; nothing with more gates or T.
+class Rewriter:
+    """The rules under one setting. Answers are kept in `known`: a search meets the same few gates again."""
 
-    With `positive` controls nothing with more negative ones than before.
-    """
-    before = weigh(gates, uncompute)
-    limit = negatives(gates)
-    found: dict[Masked, tuple[int, int, int]] = {}
-    for rule in RULES:
-        if rule.size != len(gates):
-            continue
-        for after in rule.rewrite(gates):
-            weight = weigh(after, uncompute)
-            if weight.gates > before.gates or weight.t > before.t or after in found or after == gates:
+    def __init__(self, controls: Controls, uncompute: Uncompute) -> None:
+        self.controls = controls
+        self.uncompute = uncompute
+        self.known: dict[Masked, tuple[Change, ...]] = {}
+
+    @property
+    def may_turn(self) -> bool:
+        """Whether controls may become negative."""
+        return self.controls == "mixed"
+
+    def changes(self, gates: Masked) -> tuple[Change, ...]:
+        """All that the rules of this size make of the gates, the cheapest first.
+
+        Nothing with more gates or more T; with `positive` controls, nothing with more negative ones.
+        """
+        found = self.known.get(gates)
+        if found is None:
+            if len(self.known) >= KEPT:
+                self.known.clear()
+            found = self.known[gates] = self._changes(gates)
+        return found
+
+    def improvement(self, gates: Masked) -> Masked | None:
+        """The cheapest that one rule makes of the gates, or None where no rule makes them cheaper."""
+        for change in self.changes(gates):
+            if change.cheaper or change.literals < 0:
+                return change.gates
+        return None
+
+    def _changes(self, gates: Masked) -> tuple[Change, ...]:
+        before = weigh(gates, self.uncompute)
+        limit = negatives(gates)
+        found: dict[Masked, Change] = {}
+        for rule in RULES:
+            if rule.size != len(gates):
                 continue
-            if controls == "positive" and negatives(after) > limit:
-                continue
-            found[after] = weight
-    ranked = sorted(found.items(), key=lambda item: item[1])
-    return tuple(
-        Change(after, weight[:2] != before[:2], weight[2] - before.literals) for after, weight in ranked
-    )
+            for after in rule.rewrite(gates):
+                weight = weigh(after, self.uncompute)
+                if weight.gates > before.gates or weight.t > before.t or after == gates:
+                    continue
+                if self.may_turn or negatives(after) <= limit:
+                    literals = weight.literals - before.literals
+                    found[after] = Change(after, weight[:2] != before[:2], literals)
+        return tuple(sorted(found.values(), key=self._rank))
+
+    def _rank(self, change: Change) -> tuple[int, ...]:
+        return weigh(change.gates, self.uncompute)
 
 
-def improvement(gates: Masked, controls: Controls, uncompute: Uncompute) -> Masked | None:
-    """The cheapest that one rule makes of the gates, or None where no rule makes them cheaper."""
-    for change in changes(gates, controls, uncompute):
-        if change.cheaper or change.literals < 0:
-            return change.gates
-    return None
+@lru_cache(maxsize=4)
+def rewriter(controls: Controls, uncompute: Uncompute) -> Rewriter:
+    """The rewriter of a setting, shared by all cascades."""
+    return Rewriter(controls, uncompute)

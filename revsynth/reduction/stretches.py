@@ -1,4 +1,4 @@
-"""Wide cascades a stretch at a time, each on the lines it touches: a mask is never wider than a stretch is busy."""
+"""Wide cascades a stretch at a time, on the lines that it touches, so that masks stay narrow."""
 
 from __future__ import annotations
 
@@ -12,7 +12,8 @@ WIDE = 256
 STRETCH = 2_048
 """Gates in a stretch."""
 
-Work = Callable[[list[Masks]], tuple[list[Masks], bool]]
+Work = Callable[[list[Masks], int], tuple[list[Masks], bool]]
+"""Given some gates and the number of gates in the whole cascade: the gates now, and whether any changed."""
 
 
 def in_stretches(cascade: Cascade, work: Work) -> Cascade:
@@ -29,7 +30,7 @@ def in_stretches(cascade: Cascade, work: Work) -> Cascade:
         active = False
         start = 0
         for end in (*range(border or STRETCH, len(gates), STRETCH), len(gates)):
-            stretch, gained = _on_own_lines(gates[start:end], work)
+            stretch, gained = _on_own_lines(gates[start:end], len(gates), work)
             after.extend(stretch)
             active = active or gained
             start = end
@@ -40,7 +41,7 @@ def in_stretches(cascade: Cascade, work: Work) -> Cascade:
     return Cascade.from_gates(cascade.lines, gates) if changed else cascade
 
 
-def _on_own_lines(gates: list[Gate], work: Work) -> tuple[list[Gate], bool]:
+def _on_own_lines(gates: list[Gate], total: int, work: Work) -> tuple[list[Gate], bool]:
     """The gates after `work`, which sees them on lines 0, 1, ... without gaps, in the same order."""
     lines: list[Line] = sorted({line for gate in gates for line in gate.lines})
     bit = {line: 1 << index for index, line in enumerate(lines)}
@@ -50,5 +51,5 @@ def _on_own_lines(gates: list[Gate], work: Work) -> tuple[list[Gate], bool]:
         for control in controls:
             literals[control & 1] |= bit[control >> 1]
         masked.append((0 if target == PHASE else bit[target], literals[0], literals[1]))
-    after, gained = work(masked)
+    after, gained = work(masked, total)
     return ([to_gate(gate, lines) for gate in after], True) if gained else (gates, False)

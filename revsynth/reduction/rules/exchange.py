@@ -9,12 +9,16 @@ from revsynth.reduction.rules.model import Rule
 
 
 def _third(gate: Masks, other: Masks, line: int) -> tuple[int, int]:
-    """The literal on a line (a mask) that is neither gate's: of 1, 0 and none, the XOR of two is the third."""
-    return line & ~(gate[1] ^ other[1]), line & ~(gate[2] ^ other[2])
+    """The literal on a line (a mask) that is neither gate's: of 1, 0 and none."""
+    return line & ~(gate[1] | other[1]), line & ~(gate[2] | other[2])
 
 
 def exchange(gates: Masked) -> Iterator[Masked]:
-    """Both other pairs: with x, y the literals of one gate and u, v of the other, xy + uv = x(y+v) + (x+u)v."""
+    """The other forms of two products that differ at two lines.
+
+    With x, y the literals of one gate there and u, v those of the other (1, 0 or none, the XOR of two of them
+    is the third): xy + uv = x(y + v) + (x + u)v = (x + u)y + u(y + v); and x + v = (not x) + (not v).
+    """
     first, second = gates
     if first[0] != second[0]:
         return
@@ -29,6 +33,12 @@ def exchange(gates: Masked) -> Iterator[Masked]:
         yield (
             (first[0], first[1] & ~turned | one[0], first[2] & ~turned | one[1]),
             (first[0], second[1] & ~kept | two[0], second[2] & ~kept | two[1]),
+        )
+    care, other_care = (first[1] | first[2]) & differ, (second[1] | second[2]) & differ
+    if care and other_care and not care & other_care:
+        yield (
+            (first[0], first[1] ^ care, first[2] ^ care),
+            (first[0], second[1] ^ other_care, second[2] ^ other_care),
         )
 
 

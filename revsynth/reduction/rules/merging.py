@@ -11,7 +11,7 @@ from revsynth.reduction.rules.model import Rule
 def merge(gates: Masked) -> Iterator[Masked]:
     """Nothing for equal gates; else one gate where the controls differ at exactly one line.
 
-    Opposite literals there: the literal goes, as ab XOR a(not b) = a. One literal missing there: the other one
+    Opposite literals there: the literal goes, as ab XOR a(not b) = a. One literal missing there: the other
     turns round, as a XOR ab = a(not b).
     """
     (target, positive, negative), (other, other_positive, other_negative) = gates

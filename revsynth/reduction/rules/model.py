@@ -12,8 +12,8 @@ from revsynth.reduction.masks import Masked
 class Rule:
     """A rewriting of neighbouring gates.
 
-    `rewrite` takes exactly `size` gates and yields every sequence of gates that the rule puts in their place.
-    All of them compute the same function, phases included. A rule need not look at cost or at what controls are
+    `rewrite` takes exactly `size` gates and yields every sequence that the rule puts in their place. All of
+    these compute the same function, phases included. A rule need not look at cost or at what controls are
     allowed: the caller drops what is worse. `source` is where the rule is published, or how it follows.
     """
 

@@ -12,8 +12,8 @@ def cross(first: Masks, second: Masks, *, turn: bool = True) -> tuple[Masks, Mas
     """The same two gates in the other order, second one first, or None where they cannot pass.
 
     They pass unchanged where they commute. With `turn` also where one flips a line that the other reads and
-    does so whenever the other might fire: the other then goes on with the opposite literal on that line. A NOT,
-    which has no controls, passes everything that way.
+    does so whenever the other might fire: the other then goes on with the opposite literal on that line.
+    A NOT, which has no controls, passes everything that way.
     """
     target, positive, negative = first
     other, other_positive, other_negative = second
@@ -45,6 +45,6 @@ def move(gates: Masked) -> Iterator[Masked]:
 MOVING = Rule(
     name="moving",
     size=2,
-    source="Miller, Maslov, Dueck, DAC 2003 (moving rule); with turned polarities: follows by cases on the controls",
+    source="moving rule: Miller, Maslov, Dueck, DAC 2003; turned polarities: by cases on the controls",
     rewrite=move,
 )

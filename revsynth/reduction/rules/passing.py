@@ -10,9 +10,9 @@ from revsynth.reduction.rules.model import Rule
 
 
 def remainder(first: Masks, second: Masks) -> Masks | None:
-    """The gate r with first, second = second, first, r; None where they commute or read each other's target.
+    """The gate r with first, second = second, first, r; None where they commute or read each other.
 
-    r has the target of the gate that reads the other's, and all other controls of both. It commutes with both.
+    r has the target of the gate that reads the other's, and all other controls; it commutes with both.
     """
     if commute(first, second):
         return None
@@ -31,7 +31,7 @@ def _merged(first: Masks, second: Masks) -> Iterator[Masked]:
 
 
 def pass_over(gates: Masked) -> Iterator[Masked]:
-    """a b x = b a r x = b r a x and x a b = x r b a = x b r a, where x merges with its new neighbour r, a or b."""
+    """a b x = b a r x = b r a x and x a b = x r b a = x b r a, where x merges with its new neighbour."""
     first, middle, last = gates
     left = remainder(first, middle)
     if left is not None:

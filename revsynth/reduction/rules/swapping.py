@@ -9,21 +9,46 @@ from revsynth.reduction.rules.model import Rule
 
 
 def swap(gates: Masked) -> Iterator[Masked]:
-    """The forms of a b a where a flips line l reading k, and b flips k reading l and all else that a reads.
+    """The forms of a b a, where each of a and b flips a line that the other reads, and of what it turns into.
 
-    Where b's other controls hold the three swap l and k, and flip both if the two polarities differ; elsewhere the
-    outer two undo each other. So the outer gates need no other controls, the two lines may trade their parts, and
-    both polarities may turn together.
+    Let K be the other controls of a, L those of b. Where K and L hold, a b a swaps the two lines, and flips
+    both if the polarities differ.
+    K within L: elsewhere a undoes itself, so it needs no K, the lines may trade their parts, and both
+    polarities may turn together.
+    L within K: a b a = c a b = b a c, where c is b with all the controls of K.
     """
-    outer, inner, again = gates
-    if outer != again or not outer[0] or not inner[0]:
+    first, middle, last = gates
+    if not _read_each_other(first, middle) or not _read_each_other(middle, last):
         return
-    outer_care, inner_care = outer[1] | outer[2], inner[1] | inner[2]
-    both = outer[0] | inner[0]
-    if not (outer_care & inner[0] and inner_care & outer[0]):
-        return
-    if outer[1] & ~(inner[1] | both) or outer[2] & ~(inner[2] | both):
-        return
+    both = first[0] | middle[0]
+    if first == last:
+        if _within(first, middle, both):
+            yield from _swaps(first, middle, both)
+        if _within(middle, first, both):
+            wide = _widened(middle, first, both)
+            yield wide, first, middle
+            yield middle, first, wide
+    else:
+        for narrow, wide in ((last, first), (first, last)):
+            if _within(narrow, middle, both) and wide == _widened(narrow, middle, both):
+                yield middle, narrow, middle
+
+
+def _read_each_other(first: Masks, second: Masks) -> bool:
+    return bool(first[0] & (second[1] | second[2]) and second[0] & (first[1] | first[2]))
+
+
+def _within(inner: Masks, outer: Masks, both: int) -> bool:
+    """Whether the controls of `inner`, those on the two lines aside, are all controls of `outer`."""
+    return not (inner[1] & ~(outer[1] | both) or inner[2] & ~(outer[2] | both))
+
+
+def _widened(gate: Masks, other: Masks, both: int) -> Masks:
+    """The gate with the other one's controls too, those on the two lines aside."""
+    return gate[0], gate[1] | other[1] & ~both, gate[2] | other[2] & ~both
+
+
+def _swaps(outer: Masks, inner: Masks, both: int) -> Iterator[Masked]:
     rest = (inner[1] & ~both, inner[2] & ~both)
     odd = bool(outer[2] & both) != bool(inner[2] & both)
     for flipped, read in ((outer[0], inner[0]), (inner[0], outer[0])):
