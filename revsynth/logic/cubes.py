@@ -27,9 +27,7 @@ class Cube(NamedTuple):
 
     def text(self, inputs: int) -> str:
         """One character an input, input bit 0 leftmost: 0, 1, or - where it takes no part."""
-        return "".join(
-            "-" if not self.care >> i & 1 else str(self.value >> i & 1) for i in range(inputs)
-        )
+        return "".join("-" if not self.care >> i & 1 else str(self.value >> i & 1) for i in range(inputs))
 
 
 @dataclass(frozen=True, eq=False)

@@ -61,9 +61,7 @@ def decompose(
         inside = value >> np.uint64(inputs) == 0
         low = np.uint64((1 << inputs) - 1)
         care, value, feeds = care[inside] & low, value[inside], feeds[inside]
-    return ExclusiveSum(
-        inputs, rows.shape[0], _moved(care, order), _moved(value, order), feeds
-    ).in_order()
+    return ExclusiveSum(inputs, rows.shape[0], _moved(care, order), _moved(value, order), feeds).in_order()
 
 
 def _arranged(columns: Columns, inputs: int, order: tuple[int, ...]) -> NDArray[np.uint64]:

@@ -1,0 +1,128 @@
+"""Short exclusive sums of products for several outputs with free values: the whole way.
+
+Free values are settled, starting sums are made (the best fixed polarity, decompositions in several orders of the
+inputs), and the cheapest is shortened by pair rewriting. The work is fixed by `effort`, never by a clock.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+
+import numpy as np
+
+from revsynth.cascade.price import Uncompute, gate_t
+from revsynth.errors import BudgetError
+from revsynth.logic.annealing import anneal
+from revsynth.logic.completion import complete
+from revsynth.logic.cubes import ExclusiveSum
+from revsynth.logic.decomposition import decompose
+from revsynth.logic.function import Function
+from revsynth.logic.normal_form import best_polarity, count_by_size
+from revsynth.logic.pair_rewriting import Random, fits, rewrite
+from revsynth.logic.truth_table import Columns
+from revsynth.options import Effort
+
+_STEPS: dict[Effort, int] = {"low": 60, "normal": 220, "high": 400}
+_MOVES: dict[Effort, int] = {"low": 60_000, "normal": 300_000, "high": 3_000_000}
+_ORDERS: dict[Effort, int] = {"low": 6, "normal": 24, "high": 120}
+
+WALKED_CUBES = 96
+"""Sums of at most so many cubes are shortened without numba, which costs half a second to start."""
+MAX_CUBES = 1 << 18
+"""Longer sums are not made: a function that needs more is no case for products."""
+
+
+def cube_prices(inputs: int) -> tuple[int, ...]:
+    """Prices by number of literals that make the number of cubes small, then the literals."""
+    return tuple(1024 + size for size in range(inputs + 1))
+
+
+def t_prices(inputs: int, uncompute: Uncompute, *, phase: bool) -> tuple[int, ...]:
+    """Prices by number of literals that make the T count small, then the cubes, then the literals.
+
+    phase: a cube of k literals is a controlled Z, which costs what a NOT with k - 1 controls does.
+    """
+    controls = [max(size - 1, 0) if phase else size for size in range(inputs + 1)]
+    return tuple(64 * gate_t(count, uncompute) + 32 + size for size, count in enumerate(controls))
+
+
+def minimise(
+    function: Function, prices: Sequence[int], *, effort: Effort = "normal", seed: int = 0
+) -> ExclusiveSum:
+    """A cheap exclusive sum for every output, right wherever `function.care` is 1.
+
+    prices: the price of a cube of 0 ... n literals, from 1 up; a cube that feeds several outputs is paid once.
+    Raises ValueError where 2 * inputs + outputs exceeds 64, BudgetError where MAX_CUBES do not suffice.
+    """
+    if not fits(function.inputs, function.outputs):
+        raise ValueError(f"{function.inputs} inputs and {function.outputs} outputs are too many for one sum")
+    columns = complete(function, prices)
+    best = starting_sum(columns, function.inputs, prices, effort=effort, seed=seed)
+    return shorten(best, prices, effort=effort, seed=seed)
+
+
+def shorten(
+    cubes: ExclusiveSum, prices: Sequence[int], *, effort: Effort = "normal", seed: int = 0
+) -> ExclusiveSum:
+    """Rewrite a sum to one that is no dearer, for the same function."""
+    if len(cubes) <= WALKED_CUBES:
+        cubes = rewrite(cubes, prices, steps=_STEPS[effort], seed=seed)
+        if effort != "high" or len(cubes) <= 3:
+            return cubes
+    moves = _MOVES[effort]
+    heat = 0.2 if moves > 5000 * len(cubes) else (0.12 if moves > 1500 * len(cubes) else 0.05)
+    return anneal(cubes, prices, moves=moves, heat=heat, seed=seed)
+
+
+def starting_sum(
+    columns: Columns, inputs: int, prices: Sequence[int], *, effort: Effort = "normal", seed: int = 0
+) -> ExclusiveSum:
+    """The cheapest of the starting sums: best common polarity, best polarity a row, decompositions.
+
+    columns: values, shape (outputs, words). Raises BudgetError where each has more than MAX_CUBES.
+    """
+    starts = []
+    polarity, coefficients = best_polarity(columns, inputs, prices)
+    if int(count_by_size(coefficients, inputs).sum()) <= MAX_CUBES:
+        starts.append(ExclusiveSum.from_coefficients(coefficients, inputs, polarity))
+        if columns.shape[0] > 1:
+            starts.append(_row_by_row(columns, inputs, prices))
+    for order in _orders(inputs, effort, seed):
+        found = decompose(columns, inputs, prices, order)
+        if found is None:
+            break
+        if len(found) <= MAX_CUBES:
+            starts.append(found)
+    if not starts:
+        raise BudgetError(
+            f"products: the exclusive sum would have more than {MAX_CUBES} cubes: use another method"
+        )
+    return min(starts, key=lambda start: start.price(prices))
+
+
+def _row_by_row(columns: Columns, inputs: int, prices: Sequence[int]) -> ExclusiveSum:
+    """Each row with its own best polarity, equal cubes joined."""
+    parts = []
+    for row, column in enumerate(columns):
+        polarity, coefficients = best_polarity(column[None], inputs, prices)
+        part = ExclusiveSum.from_coefficients(coefficients, inputs, polarity)
+        parts.append((part.care, part.value, np.full(len(part), 1 << row, dtype=np.uint64)))
+    care, value, feeds = (np.concatenate(column) for column in zip(*parts, strict=True))
+    return ExclusiveSum(inputs, columns.shape[0], care, value, feeds).in_order()
+
+
+def _orders(inputs: int, effort: Effort, seed: int) -> Iterator[tuple[int, ...]]:
+    """The natural order, the reversed one, then shuffled ones; fewer where a decomposition is long work."""
+    natural = tuple(range(inputs))
+    yield natural
+    if inputs <= 3:
+        return
+    wanted = max(1, min(_ORDERS[effort], (_ORDERS[effort] << 12) // 3 ** min(inputs - 4, 16)))
+    if inputs == 5:
+        yield from (natural[i:] + natural[:i] for i in range(1, 5))
+        return
+    if wanted > 1:
+        yield natural[::-1]
+    random = Random(seed)
+    for _ in range(wanted - 2):
+        yield tuple(np.argsort(random.words(inputs), kind="stable").tolist())
