@@ -62,6 +62,7 @@ class _Run:
         self.position_of_row = self.state.copy()
         self.position_of_image = self.state.copy()
         self.open_row = target.fixed != 0
+        self.open_rows = target.cared
         self.open_image = np.ones(size, dtype=bool)
         self.finished = 0
         self.on_line = [_set_of_line(target.lines, line) for line in range(target.lines)]
@@ -70,16 +71,21 @@ class _Run:
         self.behind: list[Step] = []
 
     def cascade(self) -> Cascade | None:
-        """Finish all rows that matter, in order of position."""
-        for number in range(1 << self.target.lines):
-            if not self.open_row.any():
-                break
-            if not self._finish(number ^ self.variant.flip):
-                return None
+        """Finish all rows that matter, in order of position.
+
+        Gates before the function may move an open row to a position that was passed over for its free row,
+        so positions are gone through until no open row is left: each round finishes at least one.
+        """
+        while self.open_rows:
+            for number in range(1 << self.target.lines):
+                if self.open_rows and not self._finish(number ^ self.variant.flip):
+                    return None
         return _to_cascade(self.target.lines, [*self.before, *reversed(self.behind)])
 
     def _finish(self, goal: int) -> bool:
         """Finish the row at position `goal`, if it matters; False at a dead end."""
+        if (self.finished >> goal) & 1:
+            return True
         row = int(np.flatnonzero(self.position_of_row == goal)[0])
         if not self.open_row[row]:
             return True
@@ -97,6 +103,7 @@ class _Run:
             self._apply(step, self.position_of_row if before else self.position_of_image)
         (self.before if before else self.behind).extend(path)
         self.open_row[row] = self.open_image[image] = False
+        self.open_rows -= 1
         self.finished |= 1 << goal
         return True
 
