@@ -1,7 +1,7 @@
 """Pair rewriting of long sums: random exchanges with hashing instead of looking at all pairs.
 
-The same exchanges as in `pair_rewriting` (Song, Perkowski, IEEE TCAD 15(4), 1996), one random pair at a time, worse
-sums allowed with a chance that cools down (S. Kirkpatrick, C. Gelatt, M. Vecchi, Science 220, 1983).
+The same exchanges as in `pair_rewriting` (Song, Perkowski, IEEE TCAD 15(4), 1996), one random pair at a time,
+worse sums allowed with a chance that cools down (S. Kirkpatrick, C. Gelatt, M. Vecchi, Science 220, 1983).
 """
 
 from __future__ import annotations
@@ -19,8 +19,8 @@ def anneal(
 ) -> ExclusiveSum:
     """Make `moves` random exchanges and return the cheapest sum met, for the same function.
 
-    prices, heat, seed: as in `pair_rewriting.rewrite`. Raises ValueError where the cubes do not fit a 64-bit code
-    or a price is not a number from 1 up.
+    prices, heat, seed: as in `pair_rewriting.rewrite`. Raises ValueError where the cubes do not fit a 64-bit
+    code or a price is not a number from 1 up.
     """
     if len(prices) != cubes.inputs + 1 or min(prices) < 1:
         raise ValueError(f"{cubes.inputs + 1} prices from 1 up are needed, not {tuple(prices)}")
@@ -32,7 +32,7 @@ def anneal(
 
     low = np.uint64((1 << 2 * cubes.inputs) - 1)
     start = encode(cubes) & low
-    # An exchange may add one cube; room for a long climb is never needed as heat is a part of one cube's price.
+    # An exchange adds at most one cube, and the heat, a part of one cube's price, allows no long climb.
     capacity = 2 * len(cubes) + 64
     codes, masks = np.zeros(capacity, dtype=np.uint64), np.zeros(capacity, dtype=np.uint64)
     best_codes, best_masks = np.zeros_like(codes), np.zeros_like(masks)

@@ -1,7 +1,8 @@
 """Choosing the free values of a function so that its exclusive sums get short.
 
-A few sensible completions are made for each output (all 0, all 1, the normal form of low degree, copies across one
-input) and the one whose quick exclusive sum is cheapest is kept. The rewriting may change free values later.
+A few sensible completions are made for each output (all 0, all 1, the normal form of low degree, copies
+across one input) and the one whose quick exclusive sum is cheapest is kept. The rewriting may change free
+values later.
 """
 
 from __future__ import annotations

@@ -32,7 +32,7 @@ class Cube(NamedTuple):
 
 @dataclass(frozen=True, eq=False)
 class ExclusiveSum:
-    """An exclusive sum of cubes for each of `outputs` (at most 64) outputs; `care`, `value`, `feeds`: uint64."""
+    """An exclusive sum of cubes for each of at most 64 outputs; `care`, `value`, `feeds`: uint64."""
 
     inputs: int
     outputs: int
@@ -78,7 +78,7 @@ class ExclusiveSum:
         return np.bitwise_count(self.care).astype(np.int64)
 
     def price(self, prices: Sequence[int]) -> int:
-        """The sum of prices[k] over the cubes of k literals; a cube counts once however many outputs it feeds."""
+        """The sum of prices[k] over the cubes of k literals; a cube counts once for all its outputs."""
         return int(np.asarray(prices, dtype=np.int64)[self.sizes()].sum())
 
     def in_order(self) -> ExclusiveSum:

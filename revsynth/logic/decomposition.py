@@ -4,8 +4,8 @@ With f0, f1 the halves of f at x = 0 and x = 1 and f2 = f0 + f1 (exclusive), f i
 x' f0 + x f1. Every part of every part is looked at once (equal parts are one part), the cheapest of the three
 ways is settled from below, and the cubes are read off from above.
 
-Sources: P. Davio, J. Deschamps, A. Thayse, "Discrete and switching functions", 1978 (the expansions); T. Sasao,
-"Switching theory for logic synthesis", 1999 (choosing them node by node), both from memory.
+Sources: P. Davio, J. Deschamps, A. Thayse, "Discrete and switching functions", 1978 (the expansions); T.
+Sasao, "Switching theory for logic synthesis", 1999 (choosing them node by node), both from memory.
 """
 
 from __future__ import annotations
@@ -38,11 +38,11 @@ class _Level:
 def decompose(
     columns: Columns, inputs: int, prices: Sequence[int], order: Sequence[int] | None = None
 ) -> ExclusiveSum | None:
-    """A cheap exclusive sum of each row, equal cubes of several rows joined; None where the parts are too many.
+    """A cheap exclusive sum of each row, equal cubes of several rows joined; None: too many parts.
 
-    columns: values, shape (k, words). prices: price of a cube of 0 ... n literals, from 1 up. order: the input
-    bits in the order of splitting from the last to the first (default 0, 1, ... n-1: the highest first);
-    order[:4] are the inputs of the exact part. Exact for up to four inputs and one row.
+    columns: values, shape (k, words). prices: price of a cube of 0 ... n literals, from 1 up. order: the
+    input bits in the order of splitting from the last to the first (default 0, 1, ... n-1: the highest
+    first); order[:4] are the inputs of the exact part. Exact for up to four inputs and one row.
     """
     order = tuple(range(inputs)) if order is None else tuple(order)
     if sorted(order) != list(range(inputs)):

@@ -1,7 +1,7 @@
 """Short exclusive sums of products for several outputs with free values: the whole way.
 
-Free values are settled, starting sums are made (the best fixed polarity, decompositions in several orders of the
-inputs), and the cheapest is shortened by pair rewriting. The work is fixed by `effort`, never by a clock.
+Free values are settled, starting sums are made (the best fixed polarity, decompositions in several orders of
+the inputs), and the cheapest is shortened by pair rewriting. The work is fixed by `effort`, never by a clock.
 """
 
 from __future__ import annotations
@@ -51,8 +51,8 @@ def minimise(
 ) -> ExclusiveSum:
     """A cheap exclusive sum for every output, right wherever `function.care` is 1.
 
-    prices: the price of a cube of 0 ... n literals, from 1 up; a cube that feeds several outputs is paid once.
-    Raises ValueError where 2 * inputs + outputs exceeds 64, BudgetError where MAX_CUBES do not suffice.
+    prices: the price of a cube of 0 ... n literals, from 1 up; a cube that feeds several outputs is paid
+    once. Raises ValueError where 2 * inputs + outputs exceeds 64, BudgetError where MAX_CUBES do not suffice.
     """
     if not fits(function.inputs, function.outputs):
         raise ValueError(f"{function.inputs} inputs and {function.outputs} outputs are too many for one sum")

@@ -1,9 +1,9 @@
 """The cheapest exclusive sums of every function of four inputs, exactly, for any prices.
 
-A function is its 16-bit truth table, input 0 the least significant bit. There are 81 cubes on four inputs, and
-an exclusive sum uses each of them at most once, so one pass over the cubes as over the items of a knapsack
-settles all 65,536 functions. With a price of 1 a cube: at most 6 cubes, 3.66 on average, as in T. Sasao and
-P. Besslich, "On the complexity of mod-2 sum PLA's", IEEE Trans. Computers 39(2), 1990.
+A function is its 16-bit truth table, input 0 the least significant bit. There are 81 cubes on four inputs,
+and an exclusive sum uses each of them at most once, so one pass over the cubes as over the items of a
+knapsack settles all 65,536 functions. With a price of 1 a cube: at most 6 cubes, 3.66 on average, as in T.
+Sasao and P. Besslich, "On the complexity of mod-2 sum PLA's", IEEE Trans. Computers 39(2), 1990.
 """
 
 from __future__ import annotations

@@ -1,8 +1,9 @@
 """Numba kernels of the pair rewriting for sums too long for the numpy walk; called by `annealing` only.
 
-A sum under rewriting is: codes (capacity,) uint64, two bits an input as in `pair_rewriting`, without outputs, all
-different; masks (capacity,) uint64, the outputs each cube feeds; table (a power of two) int64, an open-addressing
-hash table of index + 1 by code, 0 where empty; state (3,) int64: number of cubes, price of the sum, spare.
+A sum under rewriting is: codes (capacity,) uint64, two bits an input as in `pair_rewriting`, without outputs,
+all different; masks (capacity,) uint64, the outputs each cube feeds; table (a power of two) int64, an
+open-addressing hash table of index + 1 by code, 0 where empty; state (3,) int64: number of cubes, price of
+the sum, spare.
 """
 
 from __future__ import annotations
@@ -26,7 +27,7 @@ def popcount(word):  # type: ignore[no-untyped-def]  # pragma: no cover
 
 @njit(cache=True)
 def random_word(seed):  # type: ignore[no-untyped-def]  # pragma: no cover
-    """The next word of a xorshift sequence (Marsaglia, J. Statistical Software 8, 2003); seed: uint64 (1,)."""
+    """The next word of a xorshift sequence (Marsaglia, J. Stat. Software 8, 2003); seed: uint64 (1,)."""
     x = seed[0]
     x ^= x << np.uint64(13)
     x ^= x >> np.uint64(7)
@@ -86,7 +87,7 @@ def insert(code, mask, codes, masks, table, state, inputs, prices):  # type: ign
 
 @njit(cache=True)
 def remove(index, codes, masks, table, state, inputs, prices):  # type: ignore[no-untyped-def]  # pragma: no cover
-    """Take a cube out; the last one moves to its index. Later entries of the run move up in the hash table."""
+    """Take a cube out; the last one moves to its index. Later entries of the hash run move up."""
     state[1] -= price_of(codes[index], inputs, prices)
     last = state[0] - 1
     size = table.size

@@ -5,8 +5,9 @@ of the variables in the bits of c takes part in the exclusive sum. With the pola
 negated where bit i of p is 1; polarity 0 is the algebraic normal form.
 
 Sources: D. E. Muller, IRE Trans. Electronic Computers 3, 1954; I. S. Reed, IRE Trans. Information Theory 4,
-1954 (the forms); the butterfly is the Moebius transform of the subset order (common practice); walking through
-all polarities one variable at a time: T. Sasao, "Switching theory for logic synthesis", 1999, from memory.
+1954 (the forms); the butterfly is the Moebius transform of the subset order (common practice); walking
+through all polarities one variable at a time: T. Sasao, "Switching theory for logic synthesis", 1999, from
+memory.
 """
 
 from __future__ import annotations

@@ -1,14 +1,15 @@
 """Shortening an exclusive sum by rewriting pairs of cubes.
 
-Two cubes that differ in d places are worth d other cubes: d = 0 cancels, d = 1 merges, d = 2 and d = 3 exchange a
-pair for two or three that may merge with others. A walk looks at all exchanges of the sum at once, takes the one
-that saves most, and wanders among equally good sums (now and then a worse one) where none saves.
+Two cubes that differ in d places are worth d other cubes: d = 0 cancels, d = 1 merges, d = 2 and d = 3
+exchange a pair for two or three that may merge with others. A walk looks at all exchanges of the sum at once,
+takes the one that saves most, and wanders among equally good sums (now and then a worse one) where none
+saves.
 
-Cubes are coded in one word: two bits an input (01 negated, 10 plain, 11 absent), above them the outputs it feeds.
-In this code the third value of a place is the XOR of the other two, for the outputs too.
+Cubes are coded in one word: two bits an input (01 negated, 10 plain, 11 absent), above them the outputs it
+feeds. In this code the third value of a place is the XOR of the other two, for the outputs too.
 
-Source: N. Song, M. Perkowski, "Minimization of exclusive sum-of-products expressions for multiple-valued input,
-incompletely specified functions", IEEE TCAD 15(4), 1996 (the exchanges).
+Source: N. Song, M. Perkowski, "Minimization of exclusive sum-of-products expressions for multiple-valued
+input, incompletely specified functions", IEEE TCAD 15(4), 1996 (the exchanges).
 """
 
 from __future__ import annotations
@@ -29,7 +30,7 @@ _LOW_BITS = 0x5555555555555555
 _ONE = np.uint64(1)
 MAX_CODE_BITS = 64
 MAX_COMPARED = 150_000
-"""New cubes times old ones that one step compares; where there are more exchanges, it takes some at random."""
+"""New cubes times old ones that one step compares; of more exchanges it takes some at random."""
 
 
 @dataclass(frozen=True)
@@ -100,8 +101,8 @@ def rewrite(
 ) -> ExclusiveSum:
     """Walk `steps` steps from a sum and return the cheapest sum met, for the same function.
 
-    prices: the price of a cube of 0 ... n literals. heat: how much worse an exchange may be, as a part of the mean
-    price of a cube; 0 takes only what saves or costs nothing. Deterministic for a seed.
+    prices: the price of a cube of 0 ... n literals. heat: how much worse an exchange may be, as a part of the
+    mean price of a cube; 0 takes only what saves or costs nothing. Deterministic for a seed.
     """
     walk = Walk(encode(cubes), cubes.inputs, prices, seed)
     best, best_price = walk.codes, walk.total()
@@ -136,7 +137,7 @@ class Walk:
         return int(self.price(self.codes).sum())
 
     def _places(self, x: Codes) -> Codes:
-        """From a XOR of codes: a one at the low bit of each differing place; bit 2n stands for the outputs."""
+        """From a XOR of codes: ones at the low bits of the differing places; bit 2n stands for the outputs."""
         outputs = (x >> self._shift != 0).astype(np.uint64) << self._shift
         places: Codes = ((x | (x >> _ONE)) & self._low) | outputs
         return places

@@ -110,8 +110,7 @@ def _blocks(found: dict[str, list[ExclusiveSum]], task: Task) -> list[Block]:
     outputs = 0 if task.oracle == "phase" else task.function.outputs
     blocks: list[Block] = []
     for variant, sums in found.items():
-        gates = [gate for gate in to_gates(sums, task.function.inputs, task)]
-        cascade = Cascade.from_gates(lines_needed(task), gates)
+        cascade = Cascade.from_gates(lines_needed(task), to_gates(sums, task.function.inputs, task))
         if all(cascade != block.cascade for block in blocks):
             blocks.append(Block(cascade, f"products, {variant}", task.function.inputs, outputs))
     if task.aim in ("t", "depth", "qubits") and len(blocks) > 1:
@@ -144,8 +143,8 @@ def _controls(cube: Cube) -> tuple[int, ...]:
 def _onto_outputs(cubes: ExclusiveSum, first: int, task: Task) -> Iterator[Gate]:
     """All cubes that feed the same outputs together: CNOTs, the cubes onto one of the outputs, CNOTs again.
 
-    Where outputs start in 0, a line not written yet copies nothing, so the CNOTs before are left out: the widest
-    groups come first to make use of it.
+    Where outputs start in 0, a line not written yet copies nothing, so the CNOTs before are left out: the
+    widest groups come first to make use of it.
     """
     groups: dict[int, list[Cube]] = {}
     for cube in _in_gate_order(cubes):
@@ -168,7 +167,7 @@ def _onto_outputs(cubes: ExclusiveSum, first: int, task: Task) -> Iterator[Gate]
 
 
 def _joined(before: list[Gate], after: list[Gate]) -> list[Gate]:
-    """Two runs of CNOTs, each from one line, one after the other: equal ones cancel where that is the same line."""
+    """Two runs of CNOTs, each from one line, one after the other: equal ones cancel where it is the same."""
     if before and after and before[0].controls == after[0].controls:
         return [gate for gate in before if gate not in after] + [gate for gate in after if gate not in before]
     return before + after
