@@ -20,7 +20,8 @@ def output_multiplicity(function: Function) -> int:
     """The smallest possible largest multiplicity, at least 1, over the inputs with a fixed output bit.
 
     Exact where outputs are wholly fixed or wholly free, and with half-free outputs up to `MAX_CHOICES`
-    completions; beyond, an upper bound (each value completed with zeros).
+    completions; beyond, an upper bound (each value completed with zeros). Values with as many completions
+    as there are cared inputs never get in the way: one of them is always left.
     """
     values = unpack_values(function.values, function.inputs)
     care = unpack_values(function.care, function.inputs)
@@ -31,12 +32,13 @@ def output_multiplicity(function: Function) -> int:
     full = (1 << function.outputs) - 1
     if np.all(pairs[0] == full):
         return int(counts.max())
-    choices = int(sum(1 << (full & ~int(mask)).bit_count() for mask in pairs[0]))
-    if choices > MAX_CHOICES:
+    choices = np.int64(1) << (function.outputs - np.bitwise_count(pairs[0]).astype(np.int64))
+    tight = choices < counts.sum()
+    if choices[tight].sum() > MAX_CHOICES:
         return int(np.unique(values[cared], return_counts=True)[1].max())
     groups = [
         (int(count), _completions(full & ~int(mask), int(value)))
-        for mask, value, count in zip(pairs[0], pairs[1], counts, strict=True)
+        for mask, value, count in zip(pairs[0][tight], pairs[1][tight], counts[tight], strict=True)
     ]
     low, high = -(-int(counts.sum()) // (full + 1)), int(counts.sum())
     while low < high:
