@@ -27,10 +27,12 @@ LAZY_ROWS = 1024
 """Targets with more rows that matter are completed first."""
 DIRECT_LINES = 8
 """(x, y XOR f(x)) is also synthesised directly up to so many lines; more where nothing else fits."""
+DIRECT_ROWS = 64
+"""Where only states with y = 0 matter, targets of so few rows are synthesised directly on any lines."""
 MOST_DIRECT_LINES = 12
 
 _TRIES: dict[Effort, int] = {"low": 1, "normal": 20, "high": 100}
-_ROWS: dict[Effort, int] = {"low": 1, "normal": 2_000, "high": 40_000}
+_ROWS: dict[Effort, int] = {"low": 1, "normal": 1_000, "high": 40_000}
 """Rows times tries at most (but three tries where any are asked for)."""
 
 
@@ -259,7 +261,8 @@ def _direct(task: Task, progress: Progress) -> list[Block]:
     if task.oracle == "phase" or lines > MOST_DIRECT_LINES:
         return []
     undone = function.outputs + fewest_lines(function)
-    if lines > DIRECT_LINES and (task.lines is None or undone <= task.lines):
+    few = task.oracle != "bit" and 1 << function.inputs <= DIRECT_ROWS
+    if lines > DIRECT_LINES and not few and (task.lines is None or undone <= task.lines):
         return []
     if task.oracle == "bit":
         found = _completed(task, embed_xor(function), task.effort, progress)
