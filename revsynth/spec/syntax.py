@@ -55,16 +55,21 @@ class Origin:
 
     def error(self, refusal: Refusal, line: int, column: int, **fields: Any) -> ExpressionError:
         """The error for a refusal at a line and column of the text, both from 1."""
-        where = f"column {column}" if "\n" not in self.text.strip() else f"line {line}, column {column}"
         shown = {name: number(value) if isinstance(value, int) else value for name, value in fields.items()}
         return ExpressionError(
-            f"{where}: {refusal.message.format(**shown)}", source=self.source, place=self.place
+            f"{self.where(line, column)}: {refusal.message.format(**shown)}",
+            source=self.source,
+            place=self.place,
         )
 
     def error_at(self, node: ast.AST, refusal: Refusal, **fields: Any) -> ExpressionError:
         """The error for a refusal at a node."""
         fields.setdefault("text", f"'{self.shown(node)}'")
         return self.error(refusal, *self.position(node), **fields)
+
+    def where(self, line: int, column: int) -> str:
+        """A place in the text in words."""
+        return f"line {line}, column {column}" if "\n" in self.text.strip() else f"column {column}"
 
     def position(self, node: ast.AST) -> tuple[int, int]:
         """Line and column (from 1) where a node begins in the text."""
