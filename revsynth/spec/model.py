@@ -114,6 +114,8 @@ class Spec:
     constants: Mapping[str, Constant] = field(default_factory=dict)
     domain: str | None = None
     source: str = "spec"
+    labels: Mapping[str, str] = field(default_factory=dict)
+    """Names that a file gives to single bits, by ours: `{"v[0]": "lamp"}` (from a PLA's .ilb and .ob)."""
 
     @property
     def kind(self) -> Literal["predicate", "outputs", "permutation"]:

@@ -1,0 +1,102 @@
+"""Reading a spec of any format. A new format is one reader and one line in READERS."""
+
+from __future__ import annotations
+
+import sys
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+
+from revsynth.errors import SpecError
+from revsynth.spec.dimacs import parse_dimacs
+from revsynth.spec.model import Spec
+from revsynth.spec.pla import parse_pla
+from revsynth.spec.toml_reader import parse_toml
+
+STANDARD_INPUT = "-"
+
+
+@dataclass(frozen=True)
+class Reader:
+    """A format: its name for `--from`, its file endings, and text to Spec.
+
+    strict: the whole text must be UTF-8; otherwise only what matters (comments of old files may be in
+    any encoding).
+    """
+
+    name: str
+    endings: tuple[str, ...]
+    parse: Callable[[str, str], Spec]
+    strict: bool
+
+
+READERS = (
+    Reader("toml", (".toml",), parse_toml, strict=True),
+    Reader("cnf", (".cnf", ".dimacs"), parse_dimacs, strict=False),
+    Reader("pla", (".pla",), parse_pla, strict=False),
+)
+
+
+def read_spec(path: str, *, from_format: str | None = None) -> Spec:
+    """Read a spec file by its ending, or in the format named; "-" is standard input (TOML unless named).
+
+    Raises SpecError (one line) where the file cannot be read, is no text, or is no spec.
+    """
+    source = "standard input" if path == STANDARD_INPUT else Path(path).name
+    reader = _reader(path, from_format)
+    text = _decode(_bytes(path), path if path != STANDARD_INPUT else source, reader.strict)
+    return reader.parse(text, source)
+
+
+def _reader(path: str, from_format: str | None) -> Reader:
+    if from_format is not None:
+        for reader in READERS:
+            if reader.name == from_format.lower():
+                return reader
+        raise SpecError(f"--from {from_format[:40]!r} is unknown: {_names()} are known")
+    if path == STANDARD_INPUT:
+        return READERS[0]
+    ending = Path(path).suffix.lower()
+    for reader in READERS:
+        if ending in reader.endings:
+            return reader
+    if Path(path).is_dir():
+        raise SpecError("this is a directory: name a spec file in it", source=path)
+    found = f"the ending {ending!r} is unknown" if ending else "the name has no ending"
+    known = ", ".join(ending for reader in READERS for ending in reader.endings)
+    raise SpecError(f"{found}: {known} are known, or name the format (--from {_names()})", source=path)
+
+
+def _names() -> str:
+    names = [reader.name for reader in READERS]
+    return f"{', '.join(names[:-1])} or {names[-1]}"
+
+
+def _bytes(path: str) -> bytes:
+    if path == STANDARD_INPUT:
+        return sys.stdin.buffer.read()
+    try:
+        return Path(path).read_bytes()
+    except IsADirectoryError:
+        raise SpecError("this is a directory: name a spec file in it", source=path) from None
+    except FileNotFoundError:
+        raise SpecError("there is no such file", source=path) from None
+    except (OSError, ValueError) as error:
+        reason = getattr(error, "strerror", None) or "the name is not one of a file"
+        raise SpecError(f"cannot be read: {reason}", source=ascii(path).strip("'")) from None
+
+
+def _decode(data: bytes, source: str, strict: bool) -> str:
+    if data.startswith((b"\xff\xfe", b"\xfe\xff")):
+        raise SpecError("this is UTF-16 text: save it as UTF-8", source=source)
+    if b"\0" in data:
+        place = f"byte {data.index(0)}"
+        raise SpecError("this is not a text file: it has a zero byte", source=source, place=place)
+    try:
+        text = data.decode("utf-8-sig", errors="strict" if strict else "replace")
+    except UnicodeDecodeError as error:
+        line = data.count(b"\n", 0, error.start) + 1
+        raise SpecError(
+            "this is not UTF-8 text: save the file as UTF-8", source=source, place=f"line {line}"
+        ) from None
+    return text.replace("\r\n", "\n").replace("\r", "\n") if not strict else text
