@@ -20,6 +20,7 @@ from revsynth.placement import describe_placement
 from revsynth.qasm import read, read_file
 from revsynth.spec.model import Constant, Spec, Word
 from revsynth.spec.read import read_spec as _read_spec
+from revsynth.spec.toml_reader import spec_from_document
 from revsynth.verification import verify_program
 from revsynth.verification.evidence import Counterexample, Evidence, Verdict
 
@@ -103,7 +104,10 @@ def permutation(
     domain: str | None = None,
     title: str = "",
 ) -> Spec:
-    """A reversible block by the images of 0, 1, 2, ... ("-" is free) on the word `v`, or by new values of words."""
+    """A reversible block by the images of 0, 1, 2, ... ("-" is free), or by new values of words.
+
+    Without `inputs` the images are of the word `v`.
+    """
     if (values is None) == (map is None):
         raise UsageError("permutation: give either values or map=, not both")
     body: dict[str, Any] = {"values": list(values)} if values is not None else {"map": dict(map or {})}
@@ -139,7 +143,7 @@ def _width(width: int | Mapping[str, Any] | Word) -> Any:
 
 
 class Build:
-    """A built and verified circuit. `cost` holds the counts of the contract; `evidence` how far they reach."""
+    """A built and verified circuit: `cost` holds the counts, `evidence` says how far the check reaches."""
 
     def __init__(self, built: Built) -> None:
         self._built = built

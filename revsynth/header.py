@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
+import json
+import shlex
 from collections.abc import Iterable
 from dataclasses import fields
 
 from revsynth.options import BuildOptions, Oracle
+from revsynth.spec.inline import SOURCE as COMMAND_LINE
+from revsynth.spec.model import Predicate, Spec
 from revsynth.verification.evidence import Evidence
 
 _ACTIONS: dict[Oracle, str] = {
@@ -18,10 +22,10 @@ _ACTIONS: dict[Oracle, str] = {
 }
 
 
-def canonical_options(source: str, oracle: Oracle, options: BuildOptions) -> str:
+def canonical_options(spec: Spec, oracle: Oracle, options: BuildOptions) -> str:
     """The command that builds this file again, options in a fixed order, the spec by its base name."""
     defaults = BuildOptions()
-    parts = ["revsynth build", source, f"--oracle {oracle}"]
+    parts = ["revsynth build", *_spec_words(spec), f"--oracle {oracle}"]
     for entry in fields(options):
         value = getattr(options, entry.name)
         if entry.name == "oracle" or value == getattr(defaults, entry.name):
@@ -31,9 +35,23 @@ def canonical_options(source: str, oracle: Oracle, options: BuildOptions) -> str
     return " ".join(parts)
 
 
+def _spec_words(spec: Spec) -> list[str]:
+    """What stands for the spec on the command line: its base name, or the options that spell it out."""
+    if spec.source != COMMAND_LINE or not isinstance(spec.body, Predicate) or spec.body.where is None:
+        return ["-" if spec.source == "standard input" else shlex.quote(spec.source)]
+    words = ["--where", shlex.quote(spec.body.where)]
+    for word in spec.inputs:
+        count = "" if word.count is None else f"x{word.count}"
+        words += ["--input", f"{word.name}={word.bits}{'s' if word.signed else ''}{count}"]
+    for name, value in spec.constants.items():
+        words += ["--constant", shlex.quote(f"{name}={json.dumps(value)}")]
+    if spec.domain is not None:
+        words += ["--domain", shlex.quote(spec.domain)]
+    return words
+
+
 def header_lines(
-    title: str,
-    source: str,
+    spec: Spec,
     oracle: Oracle,
     options: BuildOptions,
     *,
@@ -45,7 +63,7 @@ def header_lines(
     stopped_early: bool,
 ) -> list[str]:
     """The header of a file, one comment line each; the writer makes them printable."""
-    lines = [title] if title else []
+    lines = [spec.title] if spec.title else []
     lines.append(f"oracle: {oracle}, {_ACTIONS[oracle]}")
     lines.append("registers: index 0 is the least significant bit")
     lines.extend(f"word {name} is in register {register}" for name, register in renamed if name != register)
@@ -56,7 +74,7 @@ def header_lines(
         f"method: {method}" + (" (stopped by the time limit: the best so far)" if stopped_early else "")
     )
     lines.append(f"evidence: {_in_words(evidence)}")
-    lines.append(f"made by: {canonical_options(source, oracle, options)}")
+    lines.append(f"made by: {canonical_options(spec, oracle, options)}")
     return lines
 
 

@@ -77,20 +77,19 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
         lines=options.qubits,
     )
     layout = register_layout(understanding, oracle, options)
-    blocks, tried, early = _synthesise(task, options, progress, clock.started)
+    blocks, missed, early = _synthesise(task, options, progress, clock.started)
     clock.lap("synthesise")
-    best, tried = _lower_the_cheapest(blocks, tried, layout, oracle, options, progress)
+    best, tried = _lower_the_cheapest(blocks, missed, layout, oracle, options, progress)
     clock.lap("lower")
 
     progress("verifying")
-    circuit = prepare(best.circuit, options.format)
+    circuit = best.circuit
     verdict = _verify_text(understanding, oracle, best.block, circuit, options)
     evidence = _accept(verdict, options)
     clock.lap("verify")
     cost = best.cost.to_json(ands=and_count(best.block.cascade), cascade=len(best.block.cascade))
     header = header_lines(
-        spec.title,
-        spec.source,
+        spec,
         oracle,
         options,
         method=best.block.method,
@@ -196,7 +195,7 @@ def _synthesise(
 
 
 def _asked_for(method: Method, options: BuildOptions) -> bool:
-    """`linear` is part of every choice: it recognises what needs no Toffoli at all."""
+    """`linear` has no name of its own on the command line: it recognises what needs no Toffoli at all."""
     return options.method in ("auto", method.name) or (
         method.name == "linear" and options.method == "transform"
     )
@@ -220,7 +219,7 @@ def _lower_the_cheapest(
             continue
         progress(f"{block.method}: lowering {len(block.cascade)} gates")
         try:
-            circuit = lower(
+            lowered = lower(
                 block,
                 _registers_for(block, layout),
                 oracle=oracle,
@@ -233,7 +232,7 @@ def _lower_the_cheapest(
             misses.append(f"{block.method}: {error}")
             tried.append(Trial(block.method, failed=str(error)))
             continue
-        candidate = Candidate.of(block, circuit)
+        candidate = Candidate.of(block, prepare(lowered, options.format))
         miss = within(candidate, options)
         tried.append(Trial.of(candidate, failed=miss))
         if miss is None:
@@ -264,7 +263,8 @@ def _accept(verdict: Verdict, options: BuildOptions) -> Evidence:
     if verdict.holds is False:
         found = verdict.counterexample
         raise AssertionError(
-            f"a defect of revsynth: the circuit built is wrong, nothing was written ({found.why if found else ''})"
+            "a defect of revsynth: the circuit built is wrong, so nothing was written "
+            f"({found.why if found else 'no input at hand'})"
         )
     if verdict.holds is None and not options.unverified:
         raise UndecidedError(

@@ -3,18 +3,19 @@
 from __future__ import annotations
 
 import sys
+from collections.abc import Callable
 from typing import TYPE_CHECKING, Any
 
 import click
 
-from revsynth.cli.common import clear_progress, echo_json, load_spec, progress_line, spec_options, warn
+from revsynth.cli.common import F, clear_progress, echo_json, load_spec, progress_line, spec_options, warn
 from revsynth.options import CHOICES, BuildOptions
 
 if TYPE_CHECKING:
     from revsynth.api import Build
 
 
-def _choice(name: str, text: str, show_default: bool = True) -> Any:
+def _choice(name: str, text: str, show_default: bool = True) -> Callable[[F], F]:
     values = CHOICES[name]
     default = f" Default: {values[0]}." if show_default else ""
     return click.option(f"--{name}", type=click.Choice(values), default=None, help=text + default)
