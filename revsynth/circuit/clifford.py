@@ -1,8 +1,8 @@
 """Which gates are Clifford, which are T gates, and which are neither.
 
-A gate is Clifford where it takes Pauli matrices to Pauli matrices; a gate with one control is Clifford where
-what it controls is a Pauli matrix times a power of i; with more controls, where it does nothing at all (a
-sign with two controls is no Clifford gate).
+A gate is Clifford where it takes Pauli matrices to Pauli matrices; a gate with one control is Clifford where what
+it controls is a Pauli matrix times a power of i; with two controls, where that is a mere sign (a controlled Z on the
+controls); with more, where it does nothing at all.
 """
 
 from __future__ import annotations
@@ -72,7 +72,7 @@ def _one_qubit(kind: Kind, angles: tuple[float, ...]) -> Class:
 
 
 def _u_is_clifford(theta: float, phi: float, lam: float) -> bool:
-    """U is RZ(phi) RY(theta) RZ(lam) up to a phase: where RY is I or Y, only phi + lam or phi - lam counts."""
+    """U is RZ(phi) RY(theta) RZ(lam) up to a phase: where RY is I or Y, phi + lam or phi - lam counts."""
     if _is_multiple(theta, 2 * math.pi):
         return _is_multiple(phi + lam, math.pi / 2)
     return _is_multiple(theta - math.pi, 2 * math.pi) and _is_multiple(phi - lam, math.pi / 2)
@@ -88,7 +88,9 @@ def _controlled_matrix(kind: Kind, angles: tuple[float, ...], controls: int) -> 
     else:
         return Class.OTHER
     if controls > 1:
-        return Class.CLIFFORD if abs(a - 1) < TOLERANCE and abs(d - 1) < TOLERANCE else Class.OTHER
+        signs = (1, -1) if controls == 2 else (1,)
+        same = any(abs(a - sign) < TOLERANCE and abs(d - sign) < TOLERANCE for sign in signs)
+        return Class.CLIFFORD if same else Class.OTHER
     powers = all(abs(entry**4 - 1) < TOLERANCE for entry in (first, second))
     return Class.CLIFFORD if powers and abs((first / second) ** 2 - 1) < TOLERANCE else Class.OTHER
 

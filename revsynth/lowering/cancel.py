@@ -113,44 +113,56 @@ def sweep(
     qubit.
     """
     for index in range(len(kind)):
-        current = index
-        while condition[current] < 0:
-            begin = offset[current]
-            width = offset[current + 1] - begin
-            top = last[qubit[begin]]
-            if top < 0 or condition[top] >= 0 or offset[top + 1] - offset[top] != width:
-                break
+        begin = offset[index]
+        width = offset[index + 1] - begin
+        top = last[qubit[begin]]
+        if condition[index] >= 0 or top < 0 or condition[top] >= 0 or offset[top + 1] - offset[top] != width:
+            top = -1
+        elif width == 1 and eighths[kind[index]] > 0:
+            # A phase gate joins those that end the qubit: at most two, a Clifford gate and then a T.
+            place = qubit[begin]
+            turn = eighths[kind[index]]
+            first = index
+            while (
+                top >= 0
+                and condition[top] < 0
+                and eighths[kind[top]] > 0
+                and offset[top + 1] - offset[top] == 1
+            ):
+                turn += eighths[kind[top]]
+                first = top
+                last[place] = link[offset[top]]
+                keep[top] = 0
+                top = last[place]
+            keep[index] = 0
+            turn = turn % 8
+            rest = single[turn] == 255
+            if turn != 0:
+                keep[first] = 1
+                kind[first] = single[turn - 1] if rest else single[turn]
+                link[offset[first]] = last[place]
+                last[place] = first
+            if rest and turn != 0:
+                keep[index] = 1
+                kind[index] = single[1]
+                link[begin] = first
+                last[place] = index
+            continue
+        elif inverse[kind[index]] != kind[top]:
+            top = -1
+        else:
             at = offset[top]
-            turn, other = eighths[kind[current]], eighths[kind[top]]
-            if width == 1 and turn > 0 and other > 0:
-                total = (turn + other) % 8
-                if total != 0 and single[total] == 255:
-                    break
-                keep[current] = 0
-                last[qubit[begin]] = link[at]
-                if total == 0:
-                    keep[top] = 0
-                    current = -1
-                    break
-                kind[top] = single[total]
-                current = top
-                continue
-            if inverse[kind[current]] != kind[top]:
-                break
-            same = True
             for k in range(width):
                 if qubit[begin + k] != qubit[at + k] or last[qubit[begin + k]] != top:
-                    same = False
+                    top = -1
                     break
-            if not same:
-                break
+        if top >= 0:
+            at = offset[top]
             for k in range(width):
                 last[qubit[at + k]] = link[at + k]
-            keep[current] = 0
+            keep[index] = 0
             keep[top] = 0
-            current = -1
-            break
-        if current >= 0:
-            for k in range(offset[current], offset[current + 1]):
+        else:
+            for k in range(begin, begin + width):
                 link[k] = last[qubit[k]]
-                last[qubit[k]] = current
+                last[qubit[k]] = index

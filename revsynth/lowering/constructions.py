@@ -70,25 +70,29 @@ def choose(controls: int, tip: Tip, clean: int, borrowed: int, style: Style) -> 
     None where there is none: three or more controls without any scratch.
     """
     best: Choice | None = None
-    for construction in _candidates(controls, clean, style.uncompute):
+    for construction in _candidates(controls, clean, style):
         needs = construction.needs(controls)
         if needs is None or needs.clean > clean or needs.clean + needs.borrowed > clean + borrowed:
             continue
-        template = construction_template(construction, controls, tip)
-        price = price_of(template, style)
+        price = _price(construction, controls, tip, style)
         if best is None or price.key(style.aim) < best.price.key(style.aim):
-            best = Choice(construction, needs, template, price)
+            best = Choice(construction, needs, construction_template(construction, controls, tip), price)
     return best
 
 
-def _candidates(controls: int, clean: int, uncompute: Uncompute) -> Iterator[Construction]:
-    """All constructions that can pay. A product more saves T, so only the most products, or one less, do."""
+def _candidates(controls: int, clean: int, style: Style) -> Iterator[Construction]:
+    """All that can pay. A product more saves T, so for T only the most products, or one less, do."""
     yield from CONSTRUCTIONS
-    if uncompute == "measured":
+    if style.uncompute == "measured":
         most = min(clean, controls - 1)
-        for products in (most, most - 1):
-            if products >= 1:
-                yield from (ErasedTree(products, inner) for inner in CONSTRUCTIONS)
+        least = 1 if style.aim in ("gates", "depth") else max(most - 1, 1)
+        for products in range(most, least - 1, -1):
+            yield from (ErasedTree(products, inner) for inner in CONSTRUCTIONS)
+
+
+@cache
+def _price(construction: Construction, controls: int, tip: Tip, style: Style) -> Price:
+    return price_of(construction_template(construction, controls, tip), style)
 
 
 @cache

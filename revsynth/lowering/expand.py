@@ -16,6 +16,9 @@ def expand(gates: Gates, style: Style) -> Gates:
     width = np.diff(gates.offset)
     codes, template = np.unique(gates.kind.astype(np.int64) * 4 + width, return_inverse=True)
     templates = [_template(int(code) // 4, int(code) % 4, style) for code in codes]
+    if all(len(shape) == 1 for shape in templates):
+        kind = np.array([shape.kind[0] for shape in templates], dtype=np.uint8)[template]
+        return Gates(kind, gates.offset, gates.operand, gates.condition, gates.bit, gates.bits)
     return assemble(templates, template.astype(np.int32), gates.offset[:-1], gates.qubit())
 
 

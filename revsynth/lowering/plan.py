@@ -11,6 +11,7 @@ from array import array
 from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from typing import NamedTuple
 
 from revsynth.circuit.model import Kind
 from revsynth.lowering.constructions import Choice, Style
@@ -31,8 +32,7 @@ SIGN = _one(Kind.Z, 1)
 COPY = _one(Kind.X, 2)
 
 
-@dataclass(frozen=True)
-class Step:
+class Step(NamedTuple):
     """One unit of the cascade with what is known at that moment.
 
     controls: literals of the product (of a phase gate all but the last); target: where the tip goes, -1 for
