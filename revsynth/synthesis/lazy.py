@@ -15,8 +15,8 @@ from numpy.typing import NDArray
 from revsynth.cascade.model import Cascade
 from revsynth.embed.target import ReversibleTarget
 
-MAX_LINES = 12
-"""Each gate looks at sets of 2**lines states."""
+MAX_LINES = 16
+"""Each gate looks at sets of 2**lines states: a predicate of 12 inputs takes half a second, of 14 five."""
 
 
 class Step(NamedTuple):
@@ -38,7 +38,7 @@ class Variant(NamedTuple):
 def transform_lazily(target: ReversibleTarget, variant: Variant, *, positive: bool) -> Cascade | None:
     """A cascade that the target accepts; None where this variant runs into a dead end.
 
-    `positive`: only positive controls. Raises ValueError above 12 lines.
+    `positive`: only positive controls. Raises ValueError above 16 lines.
     """
     if target.lines > MAX_LINES:
         raise ValueError(f"{target.lines} lines are too many here: at most {MAX_LINES}")
@@ -89,51 +89,63 @@ class _Run:
         row = int(np.flatnonzero(self.position_of_row == goal)[0])
         if not self.open_row[row]:
             return True
+        there = int(np.flatnonzero(self.position_of_image == goal)[0])
+        if self.open_image[there] and there & int(self.target.fixed[row]) == int(self.target.image[row]):
+            self._close(row, there, goal)
+            return True
         fits = self.open_image & ((self.state & self.target.fixed[row]) == self.target.image[row])
         options = [
             (cost, 0, row, image, path)
             for image, cost, path in self._paths(np.flatnonzero(fits), self.position_of_image, goal)
         ]
-        if self.variant.both and (not options or options[0][0][1]):
-            options += self._from_the_front(goal)
+        if self.variant.both and self.open_image[there]:
+            fits = self.open_row & ((self.target.fixed & there) == self.target.image)
+            options += [
+                (cost, 1, other, there, path)
+                for other, cost, path in self._paths(np.flatnonzero(fits), self.position_of_row, goal)
+            ]
         if not options:
             return False
         _, before, row, image, path = min(options, key=lambda option: (option[0], option[1], option[2:4]))
         for step in path:
             self._apply(step, self.position_of_row if before else self.position_of_image)
         (self.before if before else self.behind).extend(path)
+        self._close(row, image, goal)
+        return True
+
+    def _close(self, row: int, image: int, goal: int) -> None:
         self.open_row[row] = self.open_image[image] = False
         self.open_rows -= 1
         self.finished |= 1 << goal
-        return True
-
-    def _from_the_front(self, goal: int) -> list[tuple[tuple[int, int], int, int, int, list[Step]]]:
-        """Ways to bring another row to `goal`, one that may have the image which is there."""
-        image = int(np.flatnonzero(self.position_of_image == goal)[0])
-        if not self.open_image[image]:
-            return []
-        fits = self.open_row & ((self.target.fixed & image) == self.target.image)
-        return [
-            (cost, 1, row, image, path)
-            for row, cost, path in self._paths(np.flatnonzero(fits), self.position_of_row, goal)
-        ]
 
     def _paths(
         self, candidates: NDArray[np.int64], position: NDArray[np.int64], goal: int
     ) -> list[tuple[int, tuple[int, int], list[Step]]]:
         """(candidate, (ANDs, gates), path) for the nearest candidates that can be moved to `goal`."""
         places = position[candidates]
-        distance = np.bitwise_count(places ^ goal)
-        order = np.lexsort((candidates, places, distance))
+        distance = np.bitwise_count(places ^ goal).astype(np.int64)
+        key = (distance << self.target.lines) + places
+        few = 2 * self.variant.width
+        if len(key) > 4 * few:
+            nearest = np.argpartition(key, few)[:few]
+            found = self._first_paths(candidates[nearest], places[nearest], key[nearest], goal)
+            if found:
+                return found
+        return self._first_paths(candidates, places, key, goal)
+
+    def _first_paths(
+        self, candidates: NDArray[np.int64], places: NDArray[np.int64], key: NDArray[np.int64], goal: int
+    ) -> list[tuple[int, tuple[int, int], list[Step]]]:
+        """Paths of the first candidates by `key` (all different) that have one, at most `width` of them."""
         found: list[tuple[int, tuple[int, int], list[Step]]] = []
-        for index in order.tolist():
-            if len(found) >= self.variant.width or (found and found[0][1] <= (0, int(distance[index]))):
-                break
+        for index in np.argsort(key).tolist():
             path = self._path(int(places[index]), goal)
             if path is not None:
                 ands = sum(max(step.care.bit_count() - 1, 0) for step in path)
                 found.append((int(candidates[index]), (ands, len(path)), path))
-        return sorted(found, key=lambda one: (one[1], one[0]))
+                if len(found) >= self.variant.width:
+                    break
+        return found
 
     def _path(self, place: int, goal: int) -> list[Step] | None:
         """Gates from `place` to `goal`, one a differing bit, cheapest first; None where all are blocked."""

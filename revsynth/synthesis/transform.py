@@ -23,8 +23,11 @@ from revsynth.synthesis.relabelled import MAX_LINES, best_cascades, rank_for
 
 NAME = "transform"
 
-LAZY_ROWS = 1024
+LAZY_ROWS = 1 << 14
 """Targets with more rows that matter are completed first."""
+UNDONE_ROWS = 1024
+UNDONE_LINES = 12
+"""Larger functions are not computed in place and undone: other methods do that far better."""
 DIRECT_LINES = 8
 """(x, y XOR f(x)) is also synthesised directly up to so many lines; more where nothing else fits."""
 DIRECT_ROWS = 64
@@ -33,7 +36,10 @@ MOST_DIRECT_LINES = 12
 
 _TRIES: dict[Effort, int] = {"low": 1, "normal": 20, "high": 100}
 _ROWS: dict[Effort, int] = {"low": 1, "normal": 1_000, "high": 40_000}
-"""Rows times tries at most (but three tries where any are asked for)."""
+"""Rows times line placements tried, at most (but three placements up to `FEW_ROWS`)."""
+FEW_ROWS = 512
+BOTH_WAYS_ROWS = 4096
+"""With more rows only one direction is tried lazily."""
 
 
 @dataclass(frozen=True)
@@ -65,10 +71,10 @@ class Transform:
         if task.oracle == "embedded":
             return _over_budget(task, lines)
         rows = int(np.count_nonzero(tables(task.function)[1]))
-        if rows > LAZY_ROWS or lines > lazy.MAX_LINES:
+        if rows > UNDONE_ROWS or lines > UNDONE_LINES:
             return (
                 f"computed in place and undone it has {rows} rows on {lines} lines; "
-                f"at most {LAZY_ROWS} rows on {lazy.MAX_LINES} lines are worth it"
+                f"at most {UNDONE_ROWS} rows on {UNDONE_LINES} lines are worth it"
             )
         added = 0 if task.oracle == "phase" else task.function.outputs
         direct = task.function.inputs + added
@@ -168,7 +174,7 @@ def _lazily(task: Task, target: ReversibleTarget, tries: int) -> tuple[Cascade, 
     best: tuple[Cascade, str] | None = None
     for attempt in range(max(1, tries // 2)):
         flip = 0 if positive or not attempt else int(random.integers(0, 1 << target.lines))
-        for both in (True, False):
+        for both in _ways(task, target):
             cascade = transform_lazily(target, Variant(both, flip), positive=positive)
             if cascade is not None and (best is None or rank(cascade) < rank(best[0])):
                 best = (cascade, _said(both))
@@ -180,8 +186,13 @@ def _said(both: bool) -> str:
 
 
 def _tries(task: Task, target: ReversibleTarget) -> int:
-    most = _TRIES[task.effort]
-    return min(most, max(3, _ROWS[task.effort] // max(target.cared, 1)))
+    least = 3 if target.cared <= FEW_ROWS else 1
+    return min(_TRIES[task.effort], max(least, _ROWS[task.effort] // max(target.cared, 1)))
+
+
+def _ways(task: Task, target: ReversibleTarget) -> tuple[bool, ...]:
+    """Whether to work from both sides: both answers are tried, or one where rows are many or effort low."""
+    return (False,) if task.effort == "low" or target.cared > BOTH_WAYS_ROWS else (True, False)
 
 
 def _embeddings(task: Task, progress: Progress) -> list[_Candidate]:
@@ -206,7 +217,7 @@ def _embeddings(task: Task, progress: Progress) -> list[_Candidate]:
             progress(f"{NAME}: line placement {attempt + 1} of {min(tries, _tries(task, target))}")
         flips = [0] if positive or attempt < 3 else [0, int(random.integers(0, 1 << lines))]
         for flip in flips:
-            for both in (True, False) if task.effort != "low" else (False,):
+            for both in _ways(task, target):
                 cascade = transform_lazily(target, Variant(both, flip), positive=positive)
                 if cascade is not None:
                     found.append(_Candidate(cascade, _said(both), before, after))

@@ -69,6 +69,6 @@ def test_nothing_fixed_needs_no_gates() -> None:
 
 
 def test_too_many_lines_are_refused() -> None:
-    free = np.zeros(1 << 13, dtype=np.int64)
-    with pytest.raises(ValueError, match="13 lines are too many here: at most 12"):
-        transform_lazily(ReversibleTarget(13, free, free), Variant(True), positive=False)
+    free = np.zeros(1 << 17, dtype=np.int64)
+    with pytest.raises(ValueError, match="17 lines are too many here: at most 16"):
+        transform_lazily(ReversibleTarget(17, free, free), Variant(True), positive=False)

@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from revsynth.cascade.price import cascade_t
 from revsynth.embed.in_place import fewest_lines
 from revsynth.logic.function import Function
+from revsynth.synthesis import transform
 from revsynth.synthesis.interface import Task
 from revsynth.synthesis.transform import TRANSFORM
 from tests.strategies import permutations
@@ -127,12 +128,16 @@ def test_a_wide_function_that_matters_little_is_done() -> None:
             check_block(task, block)
 
 
-def test_embedded_beyond_the_lazy_limit_is_completed_first() -> None:
+@pytest.mark.parametrize("most_rows", [1 << 14, 1 << 10])
+def test_large_embedded_blocks(most_rows: int, monkeypatch: pytest.MonkeyPatch) -> None:
+    """With free values chosen on the way, and (beyond a number of rows) completed first."""
     from revsynth.cascade.simulate import permutation
 
+    monkeypatch.setattr(transform, "LAZY_ROWS", most_rows)
     x = np.arange(1 << 11)
     task = Task(from_table(11, 3, np.bitwise_count(x) % 5), "embedded", effort="low")
     (block, *_) = TRANSFORM.synthesise(task)
+    assert ("free values" in block.method) == (most_rows >= 1 << 11)
     place = block.placement
     assert place is not None
     assert place.before == tuple(range(11))
