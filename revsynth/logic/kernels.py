@@ -309,3 +309,21 @@ def add_all(new_codes, new_masks, codes, masks, table, state, inputs, prices, se
     """Start a sum: add cubes one by one."""
     for k in range(new_codes.size):
         add(new_codes[k], new_masks[k], codes, masks, table, state, inputs, prices, seed)
+
+
+@njit(cache=True)
+def cycle_lengths(images):  # type: ignore[no-untyped-def]  # pragma: no cover
+    """The lengths of the cycles of a permutation, in order of their least elements. images: int64 (size,)."""
+    seen = np.zeros(images.size, dtype=np.uint8)
+    lengths = np.zeros(images.size, dtype=np.int64)
+    count = 0
+    for start in range(images.size):
+        if seen[start]:
+            continue
+        at = start
+        while not seen[at]:
+            seen[at] = 1
+            at = images[at]
+            lengths[count] += 1
+        count += 1
+    return lengths[:count]

@@ -100,7 +100,9 @@ def degree(coefficients: Columns, inputs: int) -> int:
 def essential_inputs(coefficients: Columns, inputs: int) -> int:
     """A mask with bit i set where some row's normal form has variable i: f depends on it."""
     together = coefficients if coefficients.ndim == 1 else np.bitwise_or.reduce(coefficients, axis=0)
-    return sum(1 << i for i in range(inputs) if np.any(together & variable(inputs, i)))
+    in_words = int(np.bitwise_or.reduce(together)) if inputs else 0
+    low = sum(1 << i for i in range(min(inputs, 6)) if in_words & int(variable(6, i)[0]))
+    return low | sum(1 << i for i in range(6, inputs) if np.any(_halves(together, i)[:, 1]))
 
 
 class PolarityPrice:

@@ -137,7 +137,7 @@ class Walk:
         return int(self.price(self.codes).sum())
 
     def _places(self, x: Codes) -> Codes:
-        """From a XOR of codes: ones at the low bits of the differing places; bit 2n stands for the outputs."""
+        """From a XOR of codes: ones at the low bits of differing places; bit 2n stands for the outputs."""
         outputs = (x >> self._shift != 0).astype(np.uint64) << self._shift
         places: Codes = ((x | (x >> _ONE)) & self._low) | outputs
         return places
