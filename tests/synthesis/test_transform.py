@@ -206,3 +206,37 @@ def test_a_tight_line_budget_takes_the_out_of_place_form(oracle: str) -> None:
     assert [block.work for block in blocks] == [0] * len(blocks)
     for block in blocks:
         check_block(task, block)
+
+
+@given(
+    functions(max_inputs=4),
+    st.sampled_from(("bit", "fresh", "compute", "embedded")),
+    st.sampled_from(("t", "gates", "qubits", "depth")),
+    st.integers(1, 9),
+)
+def test_line_budgets_are_kept_for_every_aim(function: Function, oracle: str, aim: str, lines: int) -> None:
+    task = Task(function, oracle, aim=aim, lines=lines, effort="low")
+    if TRANSFORM.unfit(task) is not None:
+        return
+    blocks = TRANSFORM.synthesise(task)
+    assert blocks
+    for block in blocks:
+        check_block(task, block)
+
+
+def test_small_work_imports_no_compiler() -> None:
+    """Eight lines must not pay half a second for numba."""
+    import subprocess
+    import sys
+
+    program = (
+        "import sys, numpy as np\n"
+        "from revsynth.synthesis.rows import transform_many\n"
+        "from revsynth.synthesis.transform import TRANSFORM\n"
+        "from revsynth.synthesis.linear import LINEAR\n"
+        "from revsynth.synthesis.relabelled import best_cascades\n"
+        "best_cascades(np.arange(256)[::-1].copy(), positive=False, aim='t', uncompute='unitary',"
+        " effort='low', seed=0)\n"
+        "assert 'numba' not in sys.modules\n"
+    )
+    subprocess.run([sys.executable, "-c", program], check=True, timeout=60)
