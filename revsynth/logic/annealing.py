@@ -10,8 +10,9 @@ from collections.abc import Sequence
 
 import numpy as np
 
+from revsynth.logic.cube_codes import encode
 from revsynth.logic.cubes import ExclusiveSum
-from revsynth.logic.pair_rewriting import Random, encode
+from revsynth.logic.random_words import Random
 
 
 def anneal(

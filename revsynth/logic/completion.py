@@ -12,6 +12,8 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 
 from revsynth.logic.decomposition import decompose
+from revsynth.logic.four_inputs import INPUTS as LEAF_INPUTS
+from revsynth.logic.four_inputs import four_input_sums
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import PolarityPrice, algebraic_normal_form, best_polarity, fixed_polarity
 from revsynth.logic.truth_table import Column, Columns, last_word_mask, variable
@@ -94,6 +96,8 @@ def _candidates(values: Column, care: Column, inputs: int, prices: Sequence[int]
 
 
 def _cheapest(values: Column, care: Column, inputs: int, prices: Sequence[int]) -> Column:
+    if inputs <= LEAF_INPUTS:
+        return _cheapest_exactly(values, care, inputs, prices)
     best: tuple[int, Column] | None = None
     seen: set[bytes] = set()
     quick = PolarityPrice(inputs, len(values), prices)
@@ -114,3 +118,16 @@ def _cheapest(values: Column, care: Column, inputs: int, prices: Sequence[int]) 
             best = (price, candidate)
     assert best is not None
     return best[1]
+
+
+def _cheapest_exactly(values: Column, care: Column, inputs: int, prices: Sequence[int]) -> Column:
+    """The best of all completions, for up to four inputs."""
+    padded = tuple(prices) + (prices[-1],) * (LEAF_INPUTS - inputs)
+    table = four_input_sums(padded).cost
+    choices = np.array([int(values[0])], dtype=np.int64)
+    for x in range(1 << inputs):
+        if not int(care[0]) >> x & 1:
+            choices = np.concatenate([choices, choices | 1 << x])
+    repeated = sum(1 << (shift << inputs) for shift in range(1 << (LEAF_INPUTS - inputs)))
+    cost = table[choices * repeated]
+    return np.array([choices[int(cost.argmin())]], dtype=np.uint64)

@@ -14,11 +14,15 @@ from revsynth.cascade.price import Uncompute, gate_t
 from revsynth.errors import BudgetError
 from revsynth.logic.annealing import anneal
 from revsynth.logic.completion import complete
+from revsynth.logic.cube_codes import CodeSpace, decode, encode, fits
 from revsynth.logic.cubes import ExclusiveSum
 from revsynth.logic.decomposition import decompose
+from revsynth.logic.four_inputs import INPUTS as LEAF_INPUTS
+from revsynth.logic.free_cubes import FreeCubes
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import best_polarity, count_by_size
-from revsynth.logic.pair_rewriting import Random, fits, rewrite
+from revsynth.logic.pair_rewriting import rewrite
+from revsynth.logic.random_words import Random
 from revsynth.logic.truth_table import Columns
 from revsynth.options import Effort
 
@@ -58,20 +62,38 @@ def minimise(
         raise ValueError(f"{function.inputs} inputs and {function.outputs} outputs are too many for one sum")
     columns = complete(function, prices)
     best = starting_sum(columns, function.inputs, prices, effort=effort, seed=seed)
-    return shorten(best, prices, effort=effort, seed=seed)
+    if function.inputs <= LEAF_INPUTS and function.outputs <= 1:
+        return best  # already exact
+    return shorten(best, prices, care=function.care, effort=effort, seed=seed)
 
 
 def shorten(
-    cubes: ExclusiveSum, prices: Sequence[int], *, effort: Effort = "normal", seed: int = 0
+    cubes: ExclusiveSum,
+    prices: Sequence[int],
+    *,
+    care: Columns | None = None,
+    effort: Effort = "normal",
+    seed: int = 0,
 ) -> ExclusiveSum:
-    """Rewrite a sum to one that is no dearer, for the same function."""
+    """Rewrite a sum to one that is no dearer, for the same function, or wherever `care` is 1.
+
+    care: shape (outputs, words); None where all values are fixed. Free values are made use of up to
+    `free_cubes.MAX_INPUTS` inputs.
+    """
+    free = None if care is None else FreeCubes.of(care, cubes.inputs)
     if len(cubes) <= WALKED_CUBES:
-        cubes = rewrite(cubes, prices, steps=_STEPS[effort], seed=seed)
+        cubes = rewrite(cubes, prices, steps=_STEPS[effort], seed=seed, free=free)
         if effort != "high" or len(cubes) <= 3:
             return cubes
     moves = _MOVES[effort]
     heat = 0.2 if moves > 5000 * len(cubes) else (0.12 if moves > 1500 * len(cubes) else 0.05)
-    return anneal(cubes, prices, moves=moves, heat=heat, seed=seed)
+    if free is None:
+        return anneal(cubes, prices, moves=moves, heat=heat, seed=seed)
+    space = CodeSpace(cubes.inputs, prices)
+    for part in range(3):
+        cubes = anneal(cubes, prices, moves=moves // 3, heat=heat, seed=seed + part)
+        cubes = decode(free.loosen(encode(cubes), space), cubes.inputs, cubes.outputs).in_order()
+    return cubes
 
 
 def starting_sum(
