@@ -1,8 +1,8 @@
 """Which gates are Clifford, which are T gates, and which are neither.
 
-A gate is Clifford where it takes Pauli matrices to Pauli matrices; a gate with one control is Clifford where what
-it controls is a Pauli matrix times a power of i; with two controls, where that is a mere sign (a controlled Z on the
-controls); with more, where it does nothing at all.
+A gate is Clifford where it takes Pauli matrices to Pauli matrices; a gate with one control is Clifford where
+what it controls is a Pauli matrix times a power of i; with two controls, where that is a mere sign (a
+controlled Z on the controls); with more, where it does nothing at all.
 """
 
 from __future__ import annotations

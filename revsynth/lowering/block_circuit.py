@@ -8,14 +8,16 @@ from collections.abc import Sequence
 import numpy as np
 
 from revsynth.circuit.model import Circuit, CircuitBuilder, Guard, Kind
-from revsynth.lowering.assemble import Gates, assemble
+from revsynth.lowering.assemble import Gates
 from revsynth.lowering.cancel import cancel_neighbours
 from revsynth.lowering.constructions import Style
 from revsynth.lowering.expand import expand
 from revsynth.lowering.fan_out import gather_units, units_of
 from revsynth.lowering.multi_control import write_cascade
-from revsynth.lowering.plan import plan, steps_of
+from revsynth.lowering.plan import steps_of
 from revsynth.lowering.scratch import check_budget
+from revsynth.lowering.sharing import order_units
+from revsynth.lowering.variants import cheapest
 from revsynth.options import Aim, GateSet, Oracle, Uncompute
 from revsynth.synthesis.interface import Block
 
@@ -52,17 +54,10 @@ def lower(
     style = Style(gates, uncompute, aim)
     once = gates == "clifford+t" or aim != "gates"
     units = gather_units(lines, block.cascade) if once else units_of(block.cascade)
-    planned = plan(steps_of(units, lines, _known(block, oracle)), lines, max_qubits, style)
-    pieces = planned.pieces
-    qubits = lines + planned.scratch
-    composite = assemble(
-        pieces.templates,
-        np.array(pieces.template, dtype=np.int32),
-        np.array(pieces.start, dtype=np.int64),
-        np.array(pieces.qubits, dtype=np.int32),
-    )
-    written = cancel_neighbours(expand(cancel_neighbours(composite, qubits), style), qubits)
-    return _circuit(written, registers, block.work + planned.scratch, planned.minus)
+    steps = steps_of(order_units(units, lines), lines, _known(block, oracle))
+    best = cheapest(steps, lines, max_qubits, style)
+    written = cancel_neighbours(expand(best.gates, style), lines + best.scratch)
+    return _circuit(written, registers, block.work + best.scratch, best.minus)
 
 
 def _known(block: Block, oracle: Oracle) -> dict[int, int]:

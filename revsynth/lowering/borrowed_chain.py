@@ -17,6 +17,7 @@ class BorrowedChain:
     """The target takes u c_k, then (u ^ d) c_k: a chain changes the line u by d = c_1 ... c_(k-1)."""
 
     name = "borrowed chain"
+    shape = None
 
     def needs(self, controls: int) -> Needs | None:
         """k - 2 borrowed qubits from three controls on."""

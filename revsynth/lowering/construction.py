@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from typing import NamedTuple, Protocol
 
 from revsynth.lowering.draft import Draft, Tip
+from revsynth.lowering.fold import Shape
 
 
 class Needs(NamedTuple):
@@ -32,6 +33,10 @@ class Construction(Protocol):
     @property
     def name(self) -> str:
         """A few words for people."""
+
+    @property
+    def shape(self) -> Shape | None:
+        """How it folds controls; None where it does not, so that it goes with either shape."""
 
     def __hash__(self) -> int:
         """Equal constructions hash alike: templates are kept by construction."""

@@ -7,25 +7,30 @@ from dataclasses import dataclass
 from functools import cache
 from typing import NamedTuple
 
+import numpy as np
+from numpy.typing import NDArray
+
 from revsynth.circuit.model import Kind
 from revsynth.lowering.borrowed_chain import BorrowedChain
-from revsynth.lowering.clean_tree import CleanTree
+from revsynth.lowering.clean_chain import CleanChain
 from revsynth.lowering.composites import expansion
 from revsynth.lowering.construction import Construction, Needs, Site
 from revsynth.lowering.direct import Direct
 from revsynth.lowering.draft import Composite, Draft, Template, Tip
-from revsynth.lowering.erased_tree import ErasedTree
+from revsynth.lowering.erased_chain import ErasedChain
+from revsynth.lowering.fold import Shape
 from revsynth.lowering.one_line import OneBorrowedLine, OneCleanLine
 from revsynth.options import Aim, GateSet, Uncompute
 
 CONSTRUCTIONS: tuple[Construction, ...] = (
     Direct(),
-    CleanTree(),
+    CleanChain("tree"),
+    CleanChain("ladder"),
     OneCleanLine(),
     BorrowedChain(),
     OneBorrowedLine(),
 )
-"""Every unitary construction; a new one is a new file and a line here. `ErasedTree` wraps each of them."""
+"""Every unitary construction; a new one is a new file and a line here. `ErasedChain` wraps each of them."""
 
 
 @dataclass(frozen=True)
@@ -35,6 +40,7 @@ class Style:
     gates: GateSet
     uncompute: Uncompute
     aim: Aim
+    shape: Shape = "tree"
 
 
 class Price(NamedTuple):
@@ -82,12 +88,13 @@ def choose(controls: int, tip: Tip, clean: int, borrowed: int, style: Style) -> 
 
 def _candidates(controls: int, clean: int, style: Style) -> Iterator[Construction]:
     """All that can pay. A product more saves T, so for T only the most products, or one less, do."""
-    yield from CONSTRUCTIONS
+    inner = [construction for construction in CONSTRUCTIONS if construction.shape in (None, style.shape)]
+    yield from inner
     if style.uncompute == "measured":
         most = min(clean, controls - 1)
         least = 1 if style.aim in ("gates", "depth") else max(most - 1, 1)
         for products in range(most, least - 1, -1):
-            yield from (ErasedTree(products, inner) for inner in CONSTRUCTIONS)
+            yield from (ErasedChain(products, each, style.shape) for each in inner)
 
 
 @cache
@@ -119,33 +126,42 @@ def _gate_price(kind: int, operands: int, style: Style) -> Price:
     wanted = [
         k in plain and (n == 3 or not toffoli) for k, n in zip(template.kind, template.count, strict=True)
     ]
-    return Price(sum(wanted), len(template), _layers(template, [1] * len(template)))
+    return Price(
+        sum(wanted),
+        len(template),
+        _layers(template.count.tolist(), template.local.tolist(), [1] * len(template)),
+    )
 
 
 def price_of(template: Template, style: Style) -> Price:
     """Count a template; composite gates count as what they stand for, in one block of depth."""
-    parts = [
-        _gate_price(int(kind), int(count), style)
-        for kind, count in zip(template.kind, template.count, strict=True)
-    ]
+    return price_gates(template.kind, template.count, template.local, style)
+
+
+def price_gates(
+    kind: NDArray[np.uint8], count: NDArray[np.int64], qubit: NDArray[np.integer], style: Style
+) -> Price:
+    """The same for gates with `count` operands each, on the qubits listed one gate after the other."""
+    pairs = zip(kind.tolist(), count.tolist(), strict=True)
+    parts = [_gate_price(code, operands, style) for code, operands in pairs]
     return Price(
         sum(part.t for part in parts),
         sum(part.gates for part in parts),
-        _layers(template, [part.depth for part in parts]),
+        _layers(count.tolist(), qubit.tolist(), [part.depth for part in parts]),
     )
 
 
-def _layers(template: Template, duration: list[int]) -> int:
+def _layers(count: list[int], qubit: list[int], duration: list[int]) -> int:
     """Depth as soon as possible, each gate taking that many layers on all its qubits."""
-    busy: dict[int, int] = {}
-    local = template.local.tolist()
+    busy = [0] * (max(qubit, default=0) + 1)
     cursor = 0
-    for count, layers in zip(template.count.tolist(), duration, strict=True):
-        qubits = local[cursor : cursor + count]
-        cursor += count
-        end = max(busy.get(qubit, 0) for qubit in qubits) + layers
-        busy.update(dict.fromkeys(qubits, end))
-    return max(busy.values(), default=0)
+    for operands, layers in zip(count, duration, strict=True):
+        qubits = qubit[cursor : cursor + operands]
+        cursor += operands
+        end = max([busy[place] for place in qubits]) + layers
+        for place in qubits:
+            busy[place] = end
+    return max(busy)
 
 
 def is_composite(kind: int, operands: int) -> bool:

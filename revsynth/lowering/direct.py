@@ -10,6 +10,7 @@ class Direct:
     """CNOT or controlled Z, or the doubly-controlled gate: 7 T, 4 where the target is 0 before or after."""
 
     name = "direct"
+    shape = None
 
     def needs(self, controls: int) -> Needs | None:
         """Nothing, for one or two controls."""

@@ -55,6 +55,7 @@ class OneCleanLine:
     """One clean qubit, which takes c0 c1: 2k - 3 Toffolis, 8k - 9 T."""
 
     name = "one clean line"
+    shape = None
 
     def needs(self, controls: int) -> Needs | None:
         """One clean qubit from three controls on."""
@@ -79,6 +80,7 @@ class OneBorrowedLine:
     """
 
     name = "one borrowed line"
+    shape = None
 
     def needs(self, controls: int) -> Needs | None:
         """One borrowed qubit from three controls on."""

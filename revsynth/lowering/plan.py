@@ -17,7 +17,9 @@ from revsynth.circuit.model import Kind
 from revsynth.lowering.constructions import Choice, Style
 from revsynth.lowering.draft import Draft, Template, Tip
 from revsynth.lowering.fan_out import Unit
-from revsynth.lowering.scratch import Demand, scratch_needed
+from revsynth.lowering.fold import Shape
+from revsynth.lowering.scratch import Demand
+from revsynth.lowering.sharing import arrange
 from revsynth.lowering.zero_lines import LineValues
 
 
@@ -67,6 +69,32 @@ def steps_of(units: Sequence[Unit], lines: int, known: dict[int, int]) -> list[S
         after = [t for t in unit.targets if state.is_zero(t)]
         steps.append(_not_step(unit, before, after, zeros))
     return steps
+
+
+def arrange_steps(steps: Sequence[Step], shape: Shape) -> list[Step]:
+    """The same steps, the literals of each in an order that lets neighbours share products (`sharing`)."""
+    literals = [(*step.controls, step.last) if step.tip is Tip.Z else step.controls for step in steps]
+    following: list[tuple[int, ...]] = [()] * len(steps)
+    later: tuple[int, ...] = ()
+    for index in range(len(steps) - 1, -1, -1):
+        following[index] = later
+        later = literals[index] if len(literals[index]) > 1 else later
+    arranged: list[Step] = []
+    previous: list[int] = []
+    changed: set[int] = set()
+    for index, step in enumerate(steps):
+        if len(literals[index]) > 1:
+            previous = arrange(literals[index], previous, changed, following[index], shape)
+            changed = set()
+            if step.tip is Tip.Z:
+                last = previous[-1]
+                step = step._replace(controls=tuple(previous[:-1]), target=last >> 1, last=last)
+            else:
+                step = step._replace(controls=tuple(previous))
+        if step.tip is not Tip.Z:
+            changed.update((step.target, *step.before, *step.after))
+        arranged.append(step)
+    return arranged
 
 
 def _plain_step(unit: Unit, zeros: tuple[int, ...] = ()) -> Step:
@@ -123,21 +151,24 @@ class Plan:
     minus: bool
 
 
-def plan(steps: Sequence[Step], lines: int, max_qubits: int | None, style: Style) -> Plan:
-    """Choose the scratch and write every step; raises BudgetError."""
-    demands = Counter(_demand(step, lines) for step in steps if step.controls)
-    scratch = scratch_needed(demands, lines, max_qubits, style)
+def plan(steps: Sequence[Step], lines: int, scratch: int, style: Style) -> Plan:
+    """Write every step with that many scratch qubits, which must suffice."""
     choices: dict[Demand, Choice] = {}
-    for demand in demands:
+    for demand in demands_of(steps, lines):
         choice = demand.choice(scratch, style)
         if choice is None:
-            raise AssertionError(f"no construction for {demand} with {scratch} scratch qubits")
+            raise ValueError(f"no construction for {demand} with {scratch} scratch qubits")
         choices[demand] = choice
     writer = _Writer(lines, scratch)
     for step in steps:
         writer.write(step, choices[_demand(step, lines)] if step.controls else None)
     writer.finish()
     return Plan(writer.pieces, scratch, writer.minus)
+
+
+def demands_of(steps: Sequence[Step], lines: int) -> Counter[Demand]:
+    """How often each demand comes up."""
+    return Counter(_demand(step, lines) for step in steps if step.controls)
 
 
 def _demand(step: Step, lines: int) -> Demand:

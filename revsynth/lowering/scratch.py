@@ -1,4 +1,4 @@
-"""How many scratch qubits a cascade is given: as many as pay for the aim, as few as do, within the budget."""
+"""How many scratch qubits a cascade can be given within the budget, and what its gates cost with them."""
 
 from __future__ import annotations
 
@@ -6,8 +6,9 @@ from collections import Counter
 from typing import NamedTuple
 
 from revsynth.errors import BudgetError
-from revsynth.lowering.constructions import Choice, Style, choose
+from revsynth.lowering.constructions import Choice, Price, Style, choose
 from revsynth.lowering.draft import Tip
+from revsynth.options import Aim
 
 
 class Demand(NamedTuple):
@@ -26,27 +27,36 @@ class Demand(NamedTuple):
         return choose(self.controls, self.tip, clean - spare, min(self.idle_lines + spare, most), style)
 
 
-def scratch_needed(demands: Counter[Demand], lines: int, max_qubits: int | None, style: Style) -> int:
-    """The number of scratch qubits to add to `lines` lines.
+def scratch_choices(
+    demands: Counter[Demand], lines: int, max_qubits: int | None, style: Style
+) -> list[tuple[tuple[int, ...], int]]:
+    """Every number of scratch qubits that fits, with the sort key of what the gates cost with it one by one.
 
-    demands: how often each demand comes up. Raises BudgetError where `max_qubits` is too small, saying
-    how many are needed.
+    demands: how often each demand comes up; `lines`: the lines that are there already. Raises BudgetError
+    where `max_qubits` is too small, saying how many are needed.
     """
     most = max((demand.controls - 1 for demand in demands), default=0)
-    totals: list[tuple[tuple[int, ...], int]] = []
-    least: int | None = None
+    found: list[tuple[tuple[int, ...], int]] = []
     for scratch in range(max(most, 1) + 1):
-        if least is not None and max_qubits is not None and lines + scratch > max_qubits:
+        if found and max_qubits is not None and lines + scratch > max_qubits:
             break
-        key = _total(demands, scratch, style)
-        if key is None:
-            continue
-        least = scratch if least is None else least
-        totals.append((key, scratch))
-    if least is None:
-        raise AssertionError("one scratch qubit serves any number of controls")
-    check_budget(lines + least, max_qubits)
-    return min(totals)[1]
+        price = _total(demands, scratch, style)
+        if price is not None:
+            found.append((sort_key(price, scratch, style), scratch))
+    check_budget(lines + found[0][1], max_qubits)
+    return found
+
+
+def sort_key(price: Price, scratch: int, style: Style) -> tuple[int, ...]:
+    """What to make small first for the aim, and what after it."""
+    t, gates, depth = price
+    keys: dict[Aim, tuple[int, ...]] = {
+        "t": (t, scratch, gates, depth),
+        "qubits": (scratch, t, gates, depth),
+        "gates": (gates, t, scratch, depth),
+        "depth": (depth, t, scratch, gates),
+    }
+    return keys[style.aim]
 
 
 def check_budget(needed: int, max_qubits: int | None) -> None:
@@ -55,7 +65,7 @@ def check_budget(needed: int, max_qubits: int | None) -> None:
         raise BudgetError(f"needs at least {needed} qubits, {max_qubits} allowed")
 
 
-def _total(demands: Counter[Demand], scratch: int, style: Style) -> tuple[int, ...] | None:
+def _total(demands: Counter[Demand], scratch: int, style: Style) -> Price | None:
     t = gates = depth = 0
     for demand, times in demands.items():
         choice = demand.choice(scratch, style)
@@ -64,8 +74,4 @@ def _total(demands: Counter[Demand], scratch: int, style: Style) -> tuple[int, .
         t += times * choice.price.t
         gates += times * choice.price.gates
         depth += times * choice.price.depth
-    if style.aim == "gates":
-        return (gates, t, scratch)
-    if style.aim == "depth":
-        return (depth, t, scratch)
-    return (scratch, t, gates) if style.aim == "qubits" else (t, scratch, gates)
+    return Price(t, gates, depth)

@@ -11,19 +11,19 @@ from revsynth.circuit.cost import measure
 from revsynth.circuit.model import Circuit, Guard, Kind, Register
 from revsynth.lowering.assemble import assemble
 from revsynth.lowering.borrowed_chain import BorrowedChain
-from revsynth.lowering.clean_tree import CleanTree
+from revsynth.lowering.clean_chain import CleanChain
 from revsynth.lowering.construction import Construction
 from revsynth.lowering.constructions import CONSTRUCTIONS, Style, choose, construction_template, price_of
 from revsynth.lowering.direct import Direct
 from revsynth.lowering.draft import Tip
-from revsynth.lowering.erased_tree import ErasedTree
+from revsynth.lowering.erased_chain import ErasedChain
 from revsynth.lowering.expand import expand
 from revsynth.lowering.one_line import OneBorrowedLine, OneCleanLine
 from tests.lowering.columns import run
 from tests.slow_simulator import run_circuit
 
 UNITARY = [(construction, "unitary") for construction in CONSTRUCTIONS]
-ERASED = [(ErasedTree(p, inner), "measured") for p in range(1, 5) for inner in CONSTRUCTIONS]
+ERASED = [(ErasedChain(p, inner), "measured") for p in range(1, 5) for inner in CONSTRUCTIONS]
 CASES = [
     pytest.param(construction, uncompute, k, id=f"{construction.name} {uncompute} {k}")
     for construction, uncompute in (*UNITARY, *ERASED)
@@ -86,7 +86,7 @@ def test_a_construction_is_the_exact_matrix(construction, uncompute, k, tip, gat
 
 
 @pytest.mark.parametrize(
-    ("construction", "uncompute"), [(OneBorrowedLine(), "unitary"), (ErasedTree(3, Direct()), "measured")]
+    ("construction", "uncompute"), [(OneBorrowedLine(), "unitary"), (ErasedChain(3, Direct()), "measured")]
 )
 def test_the_simulator_of_this_room_agrees_with_the_slow_one(construction, uncompute):
     """On a superposition of all inputs with random amplitudes, branch by branch."""
@@ -109,7 +109,7 @@ def test_unitary_t_counts_are_the_published_ones(k):
     Lemma 7.2; Maslov 2016). One clean qubit: 2k - 3 Toffolis (Khattar, Gidney, arXiv 2407.17966).
     """
     for construction, t, toffoli in (
-        (CleanTree(), 8 * k - 9, 2 * k - 3),
+        (CleanChain(), 8 * k - 9, 2 * k - 3),
         (OneCleanLine(), 8 * k - 9, 2 * k - 3),
         (BorrowedChain(), 8 * (k - 1), 4 * (k - 2)),
     ):
@@ -129,10 +129,10 @@ def test_one_borrowed_qubit_takes_16k_minus_32_t(k):
 def test_measured_t_counts_are_the_published_ones(k):
     """k - 1 clean qubits: 4k - 4 T; k - 2: 4k - 1 (Jones, Phys. Rev. A 87, 2013; Gidney, Quantum 2, 2018)."""
     assert (
-        measure(circuit_of(ErasedTree(k - 1, Direct()), k, Tip.NOT, "clifford+t", "measured")).t == 4 * k - 4
+        measure(circuit_of(ErasedChain(k - 1, Direct()), k, Tip.NOT, "clifford+t", "measured")).t == 4 * k - 4
     )
     if k > 2:
-        fewer = circuit_of(ErasedTree(k - 2, Direct()), k, Tip.NOT, "clifford+t", "measured")
+        fewer = circuit_of(ErasedChain(k - 2, Direct()), k, Tip.NOT, "clifford+t", "measured")
         assert measure(fewer).t == 4 * k - 1
         assert measure(fewer).measured == k - 2
 
@@ -181,7 +181,7 @@ def test_the_price_of_a_template_is_what_it_costs_when_written_out(gates, uncomp
             assert price.depth >= cost.depth
 
 
-@pytest.mark.parametrize("construction", [OneCleanLine(), OneBorrowedLine(), CleanTree(), BorrowedChain()])
+@pytest.mark.parametrize("construction", [OneCleanLine(), OneBorrowedLine(), CleanChain(), BorrowedChain()])
 @pytest.mark.parametrize("k", [*range(3, 12), 16, 23, 64])
 def test_many_controls_classically(construction, k):
     """In the gate set `toffoli`: all inputs up to 11 controls, above that random ones dense near all ones."""
@@ -210,4 +210,4 @@ def test_many_controls_classically(construction, k):
 
 def test_a_construction_is_not_written_where_it_does_not_fit():
     with pytest.raises(ValueError, match="clean tree is not made for 2 controls"):
-        construction_template(CleanTree(), 2, Tip.NOT)
+        construction_template(CleanChain(), 2, Tip.NOT)

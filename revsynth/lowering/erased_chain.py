@@ -11,20 +11,21 @@ from dataclasses import dataclass
 
 from revsynth.lowering.construction import Construction, Needs, Site
 from revsynth.lowering.draft import Draft, Tip
-from revsynth.lowering.fold import apply, fold
+from revsynth.lowering.fold import Shape, apply, fold
 
 
 @dataclass(frozen=True)
-class ErasedTree:
+class ErasedChain:
     """`products` products, then `inner` on the controls that are left, then the erasures."""
 
     products: int
     inner: Construction
+    shape: Shape = "tree"
 
     @property
     def name(self) -> str:
-        """Both names."""
-        return f"{self.products} erased products, {self.inner.name}"
+        """The shape, and the inner construction's name."""
+        return f"{self.products} erased products in a {self.shape}, {self.inner.name}"
 
     def needs(self, controls: int) -> Needs | None:
         """One clean qubit a product, and what the inner construction lacks; each product frees two qubits."""
@@ -37,7 +38,7 @@ class ErasedTree:
 
     def write(self, draft: Draft, tip: Tip, site: Site) -> None:
         """Fold, act, erase."""
-        steps, left = fold(site.controls, site.clean, self.products)
+        steps, left = fold(site.controls, site.clean, self.products, self.shape)
         folded = [qubit for a, b, _ in steps for qubit in (a, b)]
         apply(steps, draft.compute_and)
         inner = Site(left, site.target, site.clean[self.products :], [*folded, *site.borrowed])
