@@ -245,7 +245,8 @@ def _undone(task: Task, progress: Progress) -> list[Block]:
     if task.lines is not None and inputs + added + extra > task.lines:
         return []
     blocks = []
-    for found in _embeddings(task, progress):
+    several = None if task.effort == "high" else 1
+    for found in _embeddings(task, progress)[:several]:
         width = inputs + added + extra
         place = [0] * found.cascade.lines
         spare = iter(range(inputs + added, width))
