@@ -6,10 +6,13 @@ or the earlier one does.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
-from revsynth.reduction.masks import Masks
+from revsynth.reduction.masks import Masks, apart
+from revsynth.reduction.reel import Reel
 from revsynth.reduction.rewriting import Rewriter
+from revsynth.reduction.rules import MOST_APART
 from revsynth.reduction.rules.moving import cross
 
 
@@ -21,36 +24,35 @@ class Look:
     between: int
 
 
-def look_back(gates: list[Masks], look: Look, rewriter: Rewriter) -> tuple[list[Masks], bool]:
-    """The gates once no gate has an earlier one to gain from; and whether anything changed.
+def look_back(
+    gates: list[Masks], fresh: Sequence[bool], look: Look, rewriter: Rewriter
+) -> tuple[list[Masks], list[bool]]:
+    """The gates once no gate has an earlier one to gain from; and which of them this pass has changed.
 
-    After a change the gates from there on are looked at again, so one pass ends at a fixed point. Time is
-    proportional to gates plus changes, times `reach` and `between`.
+    `fresh`: which gates are new since the last such pass; only what is near them is looked at. After a change
+    the gates from there on are looked at again, so one pass ends at a fixed point. Time is proportional to
+    gates plus changes, times `reach` and `between`. An empty result with a change has no marks to show.
     """
-    done: list[Masks] = []
-    coming = gates[::-1]
-    changed = False
-    while coming:
-        gate = coming.pop()
-        start, after = _meet(done, gate, look, rewriter)
-        if after is None:
-            done.append(gate)
+    reel = Reel(gates, fresh)
+    while reel.advance():
+        if reel.is_settled(look.reach):
             continue
-        changed = True
-        del done[start:]
-        coming.extend(reversed(after))
-    return done, changed
+        start, after = _meet(reel.done, look, rewriter)
+        if after is not None:
+            reel.replace(start, after)
+    return reel.done, reel.changed()
 
 
-def _meet(done: list[Masks], gate: Masks, look: Look, rewriter: Rewriter) -> tuple[int, list[Masks] | None]:
-    """From which gate on to replace, and by what; None where nothing is gained.
+def _meet(done: list[Masks], look: Look, rewriter: Rewriter) -> tuple[int, list[Masks] | None]:
+    """From which gate on to replace, and by what, so that the last gate gains; None where nothing is gained.
 
-    `between` are the gates that the newer one cannot pass, first one first; `passed` those it has passed.
+    `between` are the gates that the last one cannot pass, first one first; `passed` those it has passed.
     """
     turn = rewriter.may_turn
+    gate = done[-1]
     between: list[Masks] = []
     passed: list[Masks] = []
-    for index in range(len(done) - 1, max(len(done) - look.reach, 0) - 1, -1):
+    for index in range(len(done) - 2, max(len(done) - 2 - look.reach, -1), -1):
         earlier = done[index]
         moved = earlier
         aside: list[Masks] = []
@@ -61,7 +63,7 @@ def _meet(done: list[Masks], gate: Masks, look: Look, rewriter: Rewriter) -> tup
             aside.append(crossed[0])
             moved = crossed[1]
         else:
-            if moved[0] == gate[0]:
+            if moved[0] == gate[0] and apart(moved, gate) <= MOST_APART:
                 better = rewriter.improvement((moved, gate))
                 if better is not None:
                     return index, [*aside, *better, *reversed(passed)]

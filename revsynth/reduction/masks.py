@@ -7,7 +7,6 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from functools import lru_cache
 from typing import NamedTuple, TypeAlias
 
 import numpy as np
@@ -31,11 +30,6 @@ class Weight(NamedTuple):
     literals: int
 
 
-@lru_cache(maxsize=1 << 12)
-def _gate_t(literals: int, phase: bool, uncompute: Uncompute) -> int:
-    return gate_t(max(literals - phase, 0), uncompute)
-
-
 def weigh(gates: Iterable[Masks], uncompute: Uncompute) -> Weight:
     """The weight of some gates."""
     count = t = literals = 0
@@ -43,7 +37,8 @@ def weigh(gates: Iterable[Masks], uncompute: Uncompute) -> Weight:
         controls = (positive | negative).bit_count()
         count += 1
         literals += controls
-        t += _gate_t(controls, target == 0, uncompute)
+        if controls > 1:
+            t += gate_t(controls if target else controls - 1, uncompute)
     return Weight(count, t, literals)
 
 
@@ -60,6 +55,11 @@ def commute(first: Masks, second: Masks) -> bool:
     if first[1] & second[2] or first[2] & second[1]:
         return True
     return not (first[0] & (second[1] | second[2]) or second[0] & (first[1] | first[2]))
+
+
+def apart(first: Masks, second: Masks) -> int:
+    """At how many lines the controls of two gates differ."""
+    return ((first[1] ^ second[1]) | (first[2] ^ second[2])).bit_count()
 
 
 def masked(cascade: Cascade) -> list[Masks]:

@@ -20,10 +20,15 @@ LOOK = Look(reach=32, between=8)
 
 SEARCHES: tuple[tuple[int, Search], ...] = (
     (64, Search(width=10, reach=32, forms=300, step=1)),
-    (4_000, Search(width=8, reach=24, forms=200, step=3)),
-    (40_000, Search(width=4, reach=12, forms=50, step=1)),
+    (1_000, Search(width=8, reach=24, forms=200, step=3)),
+    (6_000, Search(width=6, reach=16, forms=100, step=2)),
+    (100_000, Search(width=4, reach=12, forms=10, step=1)),
 )
-"""Cascades of up to so many gates are searched so far; longer ones get the look-back pass alone."""
+"""How far cascades of up to so many gates are searched: about a second of work, then less a gate."""
+FAST = Search(width=3, reach=8, forms=1, step=1)
+"""How far longer ones are."""
+NOTABLE = 1_000
+"""Gates from which on a search says that it is at work."""
 
 
 def silent(_: str) -> None:
@@ -65,20 +70,20 @@ def _settle(gates: list[Masks], total: int, rules: Rewriter, progress: Progress)
 
     `total` is the length of the whole cascade, which decides how far to search.
     """
-    changed = False
+    original = gates
+    new: list[bool] = [True] * len(gates)
+    search: Search | None = None
     while True:
-        before = len(gates)
-        gates, gained = look_back(gates, LOOK, rules)
-        total += len(gates) - before
-        changed = changed or gained
-        search = next((search for most, search in SEARCHES if total <= most), None)
-        if search is None:
-            return gates, changed
-        if len(gates) > 1_000:
+        gates, new = look_back(gates, new, LOOK, rules)
+        reached = next(
+            (found for most, found in SEARCHES if total + len(gates) - len(original) <= most), FAST
+        )
+        if reached is not search:
+            search = reached
+            new = [True] * len(gates)
+        if len(gates) > NOTABLE:
             progress(f"searching {len(gates)} gates for exchanges")
         before = len(gates)
-        gates, gained = search_windows(gates, search, rules)
-        if not gained:
-            return gates, changed
-        total += len(gates) - before
-        changed = True
+        gates, new = search_windows(gates, new, search, rules)
+        if len(gates) == before and not any(new):
+            return gates, gates != original

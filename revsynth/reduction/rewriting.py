@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from functools import lru_cache
+from operator import itemgetter
 from typing import NamedTuple
 
 from revsynth.cascade.price import Uncompute
 from revsynth.options import Controls
-from revsynth.reduction.masks import Masked, negatives, weigh
+from revsynth.reduction.masks import Masked, Weight, negatives, weigh
 from revsynth.reduction.rules import RULES
 
 KEPT = 1 << 15
@@ -15,6 +16,8 @@ KEPT = 1 << 15
 
 SIZES = tuple(sorted({rule.size for rule in RULES}))
 """How many neighbouring gates the rules look at."""
+
+_REWRITES = {size: [rule.rewrite for rule in RULES if rule.size == size] for size in SIZES}
 
 
 class Change(NamedTuple):
@@ -61,23 +64,21 @@ class Rewriter:
         return None
 
     def _changes(self, gates: Masked) -> tuple[Change, ...]:
+        results = dict.fromkeys(after for rewrite in _REWRITES[len(gates)] for after in rewrite(gates))
+        if not results:
+            return ()
         before = weigh(gates, self.uncompute)
         limit = negatives(gates)
-        found: dict[Masked, Change] = {}
-        for rule in RULES:
-            if rule.size != len(gates):
+        found: list[tuple[Weight, Change]] = []
+        for after in results:
+            weight = weigh(after, self.uncompute)
+            if weight.gates > before.gates or weight.t > before.t or after == gates:
                 continue
-            for after in rule.rewrite(gates):
-                weight = weigh(after, self.uncompute)
-                if weight.gates > before.gates or weight.t > before.t or after == gates:
-                    continue
-                if self.may_turn or negatives(after) <= limit:
-                    literals = weight.literals - before.literals
-                    found[after] = Change(after, weight[:2] != before[:2], literals)
-        return tuple(sorted(found.values(), key=self._rank))
-
-    def _rank(self, change: Change) -> tuple[int, ...]:
-        return weigh(change.gates, self.uncompute)
+            if self.may_turn or negatives(after) <= limit:
+                literals = weight.literals - before.literals
+                found.append((weight, Change(after, weight[:2] != before[:2], literals)))
+        found.sort(key=itemgetter(0))
+        return tuple(change for _, change in found)
 
 
 @lru_cache(maxsize=4)

@@ -6,10 +6,14 @@ stepped over, so that a window holds gates that have to do with each other howev
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import combinations
 
-from revsynth.reduction.masks import Masked, Masks, commute
+from revsynth.reduction.masks import Masked, Masks, apart, commute
+from revsynth.reduction.reel import Reel
 from revsynth.reduction.rewriting import SIZES, Rewriter
+from revsynth.reduction.rules import MOST_APART
 
 
 @dataclass(frozen=True)
@@ -26,24 +30,26 @@ class Search:
     step: int
 
 
-def search_windows(gates: list[Masks], search: Search, rewriter: Rewriter) -> tuple[list[Masks], bool]:
-    """The gates after every window's search, until no window gives anything; and whether anything changed.
+def search_windows(
+    gates: list[Masks], fresh: Sequence[bool], search: Search, rewriter: Rewriter
+) -> tuple[list[Masks], list[bool]]:
+    """The gates once no window gives anything; and which of them this pass has changed.
 
+    `fresh`: which gates are new since the last such pass; with a step of one, only windows with one of them
+    are searched (with a longer step the ends of all windows move with every change).
     Time is proportional to the gates plus the changes made; each change is a strict gain, so it ends.
     """
-    gates = list(gates)
-    changed = False
-    end = 0
-    while end < len(gates):
-        if _is_due(gates, end, search):
-            start, window, passed = _window(gates, end, search)
+    reel = Reel(gates, fresh)
+    while reel.advance():
+        if search.step == 1 and reel.coming and reel.is_settled(search.reach):
+            continue
+        if _is_due(reel, search):
+            start, window, passed = _window(reel.done, search)
             better = cheaper_form(window, search.forms, rewriter)
             if better is not None:
-                gates[start : end + 1] = [*better, *passed]
-                changed = True
-                end = max(start - search.step, -1)
-        end += 1
-    return gates, changed
+                reel.replace(start, [*better, *passed])
+                reel.step_back(search.step - 1)
+    return reel.done, reel.changed()
 
 
 def _related(one: Masks, other: Masks) -> bool:
@@ -51,27 +57,27 @@ def _related(one: Masks, other: Masks) -> bool:
     return one[0] == other[0] or not commute(one, other)
 
 
-def _is_due(gates: list[Masks], end: int, search: Search) -> bool:
+def _is_due(reel: Reel, search: Search) -> bool:
     """Whether a window is to end here: at each `step`-th gate, the last, and any that no other takes up."""
-    first = search.width - 1
-    if end == len(gates) - 1:
+    if not reel.coming:
         return True
-    if end < first:
+    beyond = len(reel.done) - search.width
+    if beyond < 0:
         return False
-    ahead = -(end - first) % search.step
-    return not any(_related(gates[end], later) for later in gates[end + 1 : end + 1 + ahead])
+    ahead = reel.coming[: -1 - (-beyond % search.step) : -1]
+    return not any(_related(reel.done[-1], later) for later in ahead)
 
 
-def _window(gates: list[Masks], end: int, search: Search) -> tuple[int, Masked, list[Masks]]:
-    """The first gate's index, the window up to gate `end`, and what between them moves out behind it."""
-    if end < search.width:
-        return 0, tuple(gates[: end + 1]), []
-    window = [gates[end]]
+def _window(done: list[Masks], search: Search) -> tuple[int, Masked, list[Masks]]:
+    """The first gate's index, the window up to the last gate, and what between them moves out behind it."""
+    if len(done) <= search.width:
+        return 0, tuple(done), []
+    window = [done[-1]]
     passed: list[Masks] = []
     pending: list[Masks] = []
-    start = end
-    for index in range(end - 1, max(end - search.reach, -1), -1):
-        gate = gates[index]
+    start = len(done) - 1
+    for index in range(start - 1, max(start - search.reach, -1), -1):
+        gate = done[index]
         if not any(_related(gate, other) for other in window):
             pending.append(gate)
             continue
@@ -86,13 +92,21 @@ def _window(gates: list[Masks], end: int, search: Search) -> tuple[int, Masked, 
 
 def cheaper_form(window: Masked, forms: int, rewriter: Rewriter) -> Masked | None:
     """The first cheaper form of a window within that many forms of equal gates and T, or None."""
-    seen = {window: 0}
+    target = window[0][0]
+    if all(gate[0] == target for gate in window):
+        return _cheaper_sum(window, forms, rewriter)
+    return _cheaper_sequence(window, forms, rewriter)
+
+
+def _cheaper_sequence(window: Masked, forms: int, rewriter: Rewriter) -> Masked | None:
+    """Of two changes that do not touch, only the left one is tried first: both orders end in one form."""
+    seen = {window: (0, 0)}
     queue = [window]
     known = rewriter.known.get
     for form in queue:
-        extra = seen[form]
+        extra, place = seen[form]
         for size in SIZES:
-            for index in range(len(form) - size + 1):
+            for index in range(max(place - size + 1, 0), len(form) - size + 1):
                 part = form[index : index + size]
                 found = known(part)
                 if found is None:
@@ -103,8 +117,32 @@ def cheaper_form(window: Masked, forms: int, rewriter: Rewriter) -> Masked | Non
                     if cheaper or literals < 0:
                         return after
                     if after not in seen:
-                        seen[after] = literals
+                        seen[after] = literals, index
                         queue.append(after)
+        if len(queue) > forms:
+            return None
+    return None
+
+
+def _cheaper_sum(window: Masked, forms: int, rewriter: Rewriter) -> Masked | None:
+    """Gates on one target have no order, so forms are kept sorted and every two gates are neighbours."""
+    start = tuple(sorted(window))
+    seen = {start: 0}
+    queue = [start]
+    for form in queue:
+        extra = seen[form]
+        for left, right in combinations(range(len(form)), 2):
+            if apart(form[left], form[right]) > MOST_APART:
+                continue
+            rest = form[:left] + form[left + 1 : right] + form[right + 1 :]
+            for gates, cheaper, literals in rewriter.changes((form[left], form[right])):
+                literals += extra
+                after = tuple(sorted(rest + gates))
+                if cheaper or literals < 0:
+                    return after
+                if after not in seen:
+                    seen[after] = literals
+                    queue.append(after)
         if len(queue) > forms:
             return None
     return None
