@@ -255,4 +255,5 @@ def _embedding(analysis: Analysis) -> Iterator[str]:
         f"(ceil(log2 {found.multiplicity:,}))",
     )
     if found.constants:
-        yield _row("", f"{_plural(found.constants, 'line')} of them start in a constant")
+        start = "starts" if found.constants == 1 else "start"
+        yield _row("", f"{_plural(found.constants, 'line')} {start} in a constant")

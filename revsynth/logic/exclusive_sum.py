@@ -10,7 +10,6 @@ from collections.abc import Iterator, Sequence
 
 import numpy as np
 
-from revsynth.cascade.price import Uncompute, gate_t
 from revsynth.errors import BudgetError
 from revsynth.logic.annealing import anneal
 from revsynth.logic.completion import complete
@@ -39,15 +38,6 @@ MAX_CUBES = 1 << 18
 def cube_prices(inputs: int) -> tuple[int, ...]:
     """Prices by number of literals that make the number of cubes small, then the literals."""
     return tuple(1024 + size for size in range(inputs + 1))
-
-
-def t_prices(inputs: int, uncompute: Uncompute, *, phase: bool) -> tuple[int, ...]:
-    """Prices by number of literals that make the T count small, then the cubes, then the literals.
-
-    phase: a cube of k literals is a controlled Z, which costs what a NOT with k - 1 controls does.
-    """
-    controls = [max(size - 1, 0) if phase else size for size in range(inputs + 1)]
-    return tuple(64 * gate_t(count, uncompute) + 32 + size for size, count in enumerate(controls))
 
 
 def minimise(

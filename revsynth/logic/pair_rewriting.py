@@ -140,7 +140,9 @@ class Walk:
                 rows = [np.full(count, -1) if m < 0 else base + m * count + np.arange(count) for m in way]
                 parts.append(np.stack(rows, axis=1))
             base += len(made) * count
-        return _Candidates(*(np.concatenate(column) for column in (fresh, left, right, parts)))
+        return _Candidates(
+            np.concatenate(fresh), np.concatenate(left), np.concatenate(right), np.concatenate(parts)
+        )
 
     def _single_changes(self) -> tuple[list[Codes], list[Indices], list[Indices], list[Indices]]:
         """One cube changed in one place, the third cube lying on free values; that cube owns both ends."""

@@ -12,8 +12,9 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 
 from revsynth.cascade.model import PHASE, Cascade, Gate, literal
+from revsynth.cascade.price import Uncompute, gate_t
 from revsynth.logic.cubes import Cube, ExclusiveSum
-from revsynth.logic.exclusive_sum import cube_prices, minimise, shorten, t_prices
+from revsynth.logic.exclusive_sum import cube_prices, minimise, shorten
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import algebraic_normal_form, count_by_size
 from revsynth.options import Controls
@@ -67,6 +68,15 @@ class Products:
 
 
 PRODUCTS = Products()
+
+
+def t_prices(inputs: int, uncompute: Uncompute, *, phase: bool) -> tuple[int, ...]:
+    """Prices by number of literals that make the T count small, then the cubes, then the literals.
+
+    phase: a cube of k literals is a controlled Z, which costs what a NOT with k - 1 controls does.
+    """
+    controls = [max(size - 1, 0) if phase else size for size in range(inputs + 1)]
+    return tuple(64 * gate_t(count, uncompute) + 32 + size for size, count in enumerate(controls))
 
 
 def lines_needed(task: Task) -> int:
