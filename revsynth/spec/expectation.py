@@ -11,7 +11,7 @@ from collections.abc import Callable, Mapping, Sequence
 from revsynth.errors import ExpressionError
 from revsynth.spec.expression import Scope, parse
 from revsynth.spec.formula_reference import read_again, value_of
-from revsynth.spec.layout import Value, decode, encode
+from revsynth.spec.layout import Value, decode, encode, value_range
 from revsynth.spec.model import Clauses, Cover, Output, Outputs, Permutation, Predicate, Word
 from revsynth.spec.reference import evaluate
 from revsynth.spec.understand import Understanding
@@ -82,11 +82,17 @@ class Expectation:
         return lambda index, values: tuple(bit for rule in rules for bit in rule(index, values))
 
     def _output(self, output: Output, word: Word) -> Rule:
-        if output.value is not None:
-            number = self._number(output.value)
-            return lambda index, values: _bits(number(values), word.bits)
         table = output.table or ()
-        return lambda index, values: _bits(table[index], word.bits)
+        number = None if output.value is None else self._number(output.value)
+        lowest, highest = value_range(word)
+
+        def rule(index: int, values: Mapping[str, Value]) -> Bits:
+            wanted = table[index] if number is None else number(values)
+            if output.bits is None and wanted is not None and not lowest <= wanted <= highest:
+                raise AssertionError(f"{word.name} was taken for {word.bits} bits, but holds {wanted}")
+            return _bits(wanted, word.bits)
+
+        return rule
 
     def _permutation(self, body: Permutation) -> Rule:
         size = self.size

@@ -78,7 +78,7 @@ def resolve_width(table: Tabulated, over: OverDomain) -> Word:
             "or bits = N for the low bits modulo 2**N",
             f"[outputs] {output.name}",
         )
-    bits = max(highest.bit_length(), (~lowest).bit_length() if lowest < 0 else 0)
+    bits = max((end if end >= 0 else ~end).bit_length() for end in (lowest, highest))
     return Word(output.name, max(bits + (1 if output.signed else 0), 1), output.signed)
 
 
