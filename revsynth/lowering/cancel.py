@@ -96,17 +96,9 @@ def _kept(gates: Gates, kind: NDArray[np.uint8], keep: NDArray[np.bool_]) -> Gat
 
 
 def sweep(
-    kind: Any,
-    offset: Any,
-    qubit: Any,
-    condition: Any,
-    inverse: Any,
-    eighths: Any,
-    single: Any,
-    last: Any,
-    link: Any,
-    keep: Any,
-) -> None:
+    kind: Any, offset: Any, qubit: Any, condition: Any, inverse: Any, eighths: Any, single: Any,
+    last: Any, link: Any, keep: Any,
+) -> None:  # fmt: skip
     """One pass over the gates, changing `kind` and `keep`; lists or arrays, plain or compiled.
 
     last: the latest gate left on each qubit; link: for every operand of a gate, the gate before it on that
@@ -136,13 +128,14 @@ def sweep(
                 top = last[place]
             keep[index] = 0
             turn = turn % 8
+            if turn == 0:
+                continue
             rest = single[turn] == 255
-            if turn != 0:
-                keep[first] = 1
-                kind[first] = single[turn - 1] if rest else single[turn]
-                link[offset[first]] = last[place]
-                last[place] = first
-            if rest and turn != 0:
+            keep[first] = 1
+            kind[first] = single[turn - 1] if rest else single[turn]
+            link[offset[first]] = last[place]
+            last[place] = first
+            if rest:
                 keep[index] = 1
                 kind[index] = single[1]
                 link[begin] = first
