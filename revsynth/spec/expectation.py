@@ -7,6 +7,7 @@ reading, clauses and covers are looked up row by row: Python integers, one input
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
+from typing import TYPE_CHECKING
 
 from revsynth.errors import ExpressionError
 from revsynth.spec.expression import Scope, parse
@@ -14,7 +15,9 @@ from revsynth.spec.formula_reference import read_again, value_of
 from revsynth.spec.layout import Value, decode, encode, value_range
 from revsynth.spec.model import Clauses, Cover, Output, Outputs, Permutation, Predicate, Word
 from revsynth.spec.reference import evaluate
-from revsynth.spec.understand import Understanding
+
+if TYPE_CHECKING:
+    from revsynth.spec.understand import Understanding
 
 Bits = tuple[int | None, ...]
 """One entry an output bit, bit 0 of the first word first; None where the value is free."""

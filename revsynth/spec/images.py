@@ -15,7 +15,7 @@ from revsynth.spec.over_domain import OverDomain
 
 def listed_images(
     values: tuple[int | None, ...], over: OverDomain
-) -> tuple[NDArray[np.int64], NDArray[np.bool_]]:
+) -> tuple[NDArray[np.int32], NDArray[np.bool_]]:
     """Images by combined index, and where they are fixed (not '-', and inside the domain), shape (2**n,).
 
     Raises SpecError for a wrong length, an image out of range, and two inputs with one image.
@@ -29,20 +29,20 @@ def listed_images(
     fixed = np.array([image is not None for image in values])
     if over.needed is not None:
         fixed &= over.needed
-    images = np.array([0 if image is None else image for image in values], dtype=np.int64)
+    images = np.array([0 if image is None else image for image in values], dtype=np.int32)
     _one_to_one(images, fixed, over, place)
     return images, fixed
 
 
 def mapped_images(
     new_values: Mapping[str, str], over: OverDomain
-) -> tuple[NDArray[np.int64], NDArray[np.bool_]]:
+) -> tuple[NDArray[np.int32], NDArray[np.bool_]]:
     """Images where some words (or elements of arrays) get new values and the others keep theirs.
 
     Raises SpecError naming an input where a new value does not fit its word, and naming two inputs of the
     domain with one image; ExpressionError as `OverDomain.numbers` does.
     """
-    images = np.arange(1 << over.inputs, dtype=np.int64)
+    images = np.arange(1 << over.inputs, dtype=np.int32)
     registers = _registers(over.spec.inputs)
     for name, text in new_values.items():
         place = f"[permutation] map {name}"
@@ -58,8 +58,8 @@ def mapped_images(
                 f"write {_wrapped(text, word)} or restrict the domain",
                 place,
             )
-        pattern = (values & ((1 << word.bits) - 1)).astype(np.int64)
-        images = (images & ~np.int64(((1 << word.bits) - 1) << shift)) | (pattern << shift)
+        pattern = (values & ((1 << word.bits) - 1)).astype(np.int32)
+        images = (images & ~np.int32(((1 << word.bits) - 1) << shift)) | (pattern << shift)
     fixed = np.ones(1 << over.inputs, dtype=bool) if over.needed is None else over.needed
     images = np.where(fixed, images, 0)
     _one_to_one(images, fixed, over, "[permutation] map")
@@ -90,9 +90,9 @@ def _no_such_word(name: str, words: tuple[Word, ...]) -> str:
     return f"there is no word {name[:40]!r}: the inputs are {', '.join(word.name for word in words[:8])}"
 
 
-def _one_to_one(images: NDArray[np.int64], fixed: NDArray[np.bool_], over: OverDomain, place: str) -> None:
+def _one_to_one(images: NDArray[np.int32], fixed: NDArray[np.bool_], over: OverDomain, place: str) -> None:
     inputs = np.flatnonzero(fixed)
-    first = np.full(images.size, -1, dtype=np.int64)
+    first = np.full(images.size, -1, dtype=np.int32)
     first[images[inputs[::-1]]] = inputs[::-1]
     later = inputs[first[images[inputs]] != inputs]
     if later.size:

@@ -15,8 +15,8 @@ from revsynth.spec.over_domain import OverDomain
 
 MOST_BITS = 4096
 """Output bits of one spec."""
-MOST_WORDS = 1 << 25
-"""64-bit words of all output columns together: 256 MB, and as much again for what is free."""
+MOST_WORDS = 1 << 24
+"""64-bit words of all output columns together: 128 MB, and as much again for what is free."""
 
 
 @dataclass(frozen=True)

@@ -9,10 +9,15 @@ from numpy.typing import NDArray
 
 from revsynth.errors import ExpressionError, SpecError
 from revsynth.logic.truth_table import Column, count_ones, ones, pack, unpack
+from revsynth.spec.bounds import fits_int64
 from revsynth.spec.expression import Expression, Scope, parse
 from revsynth.spec.layout import describe
 from revsynth.spec.model import Spec
 from revsynth.spec.vector import evaluate_with_warnings
+
+MOST_BYTES = 1 << 29
+"""Memory for the values of one expression, where 64 bits do not suffice for each."""
+_INTEGER_BYTES = 40
 
 
 class OverDomain:
@@ -83,8 +88,22 @@ class OverDomain:
         """An error of this spec."""
         return SpecError(message, source=self.spec.source, place=place)
 
+    def _check_memory(self, expression: Expression, place: str) -> None:
+        """Refuse values beyond 64 bits, which are Python integers one by one, at too many inputs."""
+        if fits_int64(expression.bounds):
+            return
+        bits = max(abs(end).bit_length() for end in expression.bounds)
+        count = count_ones(self.domain)
+        if count * (_INTEGER_BYTES + bits // 8) > MOST_BYTES:
+            raise self.error(
+                f"values of up to {bits} bits at {count} inputs need too much memory: keep the low bits in "
+                "the expression, with % 2 ** 32 or the like",
+                place,
+            )
+
     def _values(self, text: str, place: str) -> tuple[Expression, NDArray[Any]]:
         expression = parse(text, self.scope, source=self.spec.source, place=place)
+        self._check_memory(expression, place)
         values, warnings = evaluate_with_warnings(expression, self.needed)
         self.warnings.extend(warnings)
         return expression, values

@@ -93,8 +93,11 @@ TOML = [
      OUT + "t = { value = 'a - 3' }\n"),
     ("5000 output bits over 4 input bits are too many: 4096 are allowed",
      OUT + "t = { value = 'a', bits = 5000 }\n"),
-    ("3000 output bits over 20 input bits are too many: 2048 are allowed",
+    ("3000 output bits over 20 input bits are too many: 1024 are allowed",
      "[inputs]\na = 20\n[outputs]\nt = { value = 'a', bits = 3000 }\n"),
+    ("[outputs] t value: values of up to 161 bits at 16777216 inputs need too much memory: "
+     "keep the low bits in the expression",
+     "[inputs]\na = 23\nb = 1\n[outputs]\nt = { value = 'a ** 7 + b', bits = 3 }\n"),
     ("[permutation] steps: steps come with a later version", PERM + "steps = ['a += 1']\n"),
     ("[permutation]: exactly one of values and map is wanted, not values and map at once",
      PERM + "values = [0]\nmap = { a = 'a' }\n"),
