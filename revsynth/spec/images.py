@@ -45,9 +45,9 @@ def mapped_images(
     images = np.arange(1 << over.inputs, dtype=np.int32)
     registers = _registers(over.spec.inputs)
     for name, text in new_values.items():
-        place = f"[permutation] map {name}"
         if name not in registers:
-            raise over.error(_no_such_word(name, over.spec.inputs), place)
+            raise over.error(_no_such_word(name, over.spec.inputs), "[permutation] map")
+        place = f"[permutation] map {name}"
         shift, word = registers[name]
         values = over.numbers(text, place)
         lowest, highest = value_range(word)

@@ -42,10 +42,16 @@ def read_spec(path: str, *, from_format: str | None = None) -> Spec:
 
     Raises SpecError (one line) where the file cannot be read, is no text, or is no spec.
     """
-    source = "standard input" if path == STANDARD_INPUT else Path(path).name
+    from_stdin = path == STANDARD_INPUT
+    source = "standard input" if from_stdin else _one_line(Path(path).name)
     reader = _reader(path, from_format)
-    text = _decode(_bytes(path), path if path != STANDARD_INPUT else source, reader.strict)
+    text = _decode(_bytes(path), source if from_stdin else _one_line(path), reader.strict)
     return reader.parse(text, source)
+
+
+def _one_line(path: str) -> str:
+    """A path as messages show it: characters that cannot be printed are escaped."""
+    return path if path.isprintable() else ascii(path)[1:-1]
 
 
 def _reader(path: str, from_format: str | None) -> Reader:
@@ -61,10 +67,12 @@ def _reader(path: str, from_format: str | None) -> Reader:
         if ending in reader.endings:
             return reader
     if Path(path).is_dir():
-        raise SpecError("this is a directory: name a spec file in it", source=path)
+        raise SpecError("this is a directory: name a spec file in it", source=_one_line(path))
     found = f"the ending {ending!r} is unknown" if ending else "the name has no ending"
     known = ", ".join(ending for reader in READERS for ending in reader.endings)
-    raise SpecError(f"{found}: {known} are known, or name the format (--from {_names()})", source=path)
+    raise SpecError(
+        f"{found}: {known} are known, or name the format (--from {_names()})", source=_one_line(path)
+    )
 
 
 def _names() -> str:
@@ -78,12 +86,12 @@ def _bytes(path: str) -> bytes:
     try:
         return Path(path).read_bytes()
     except IsADirectoryError:
-        raise SpecError("this is a directory: name a spec file in it", source=path) from None
+        raise SpecError("this is a directory: name a spec file in it", source=_one_line(path)) from None
     except FileNotFoundError:
-        raise SpecError("there is no such file", source=path) from None
+        raise SpecError("there is no such file", source=_one_line(path)) from None
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or "the name is not one of a file"
-        raise SpecError(f"cannot be read: {reason}", source=ascii(path).strip("'")) from None
+        raise SpecError(f"cannot be read: {reason}", source=_one_line(path)) from None
 
 
 def _decode(data: bytes, source: str, strict: bool) -> str:

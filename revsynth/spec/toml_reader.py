@@ -202,7 +202,9 @@ def _permutation(table: Mapping[str, Any], source: str) -> Permutation:
         raise SpecError(
             'at least one word is wanted, such as { a = "(a + 3) % 16" }', source=source, place=place
         )
-    return Permutation(map={name: _text(text, source, f"{place} {name}") for name, text in images.items()})
+    return Permutation(
+        map={name: _text(text, source, f"{place} {_one_line(name)}") for name, text in images.items()}
+    )
 
 
 def _images(value: Any, source: str, place: str) -> tuple[int | None, ...]:

@@ -86,6 +86,8 @@ def test_files_that_are_no_specs(tmp_path: Path, message: str, name: str, text: 
 def test_files_that_cannot_be_read(tmp_path: Path) -> None:
     with pytest.raises(SpecError, match=r"gone\.toml: there is no such file"):
         read_spec(str(tmp_path / "gone.toml"))
+    with pytest.raises(SpecError, match=r"a\\nb\.toml: there is no such file"):
+        read_spec(str(tmp_path / "a\nb.toml"))
     with pytest.raises(SpecError, match="this is a directory: name a spec file in it"):
         read_spec(str(tmp_path))
     folder = tmp_path / "folder.toml"
