@@ -24,6 +24,7 @@ from revsynth.reduction import reduce
 from revsynth.spec.model import Spec
 from revsynth.spec.understand import Understanding, understand
 from revsynth.synthesis.interface import Block, Method, Task
+from revsynth.synthesis.keeping import keep_products
 from revsynth.synthesis.methods import METHODS
 from revsynth.verification import verify_program
 from revsynth.verification.evidence import Evidence, Verdict
@@ -186,6 +187,9 @@ def _synthesise(
             progress(f"{block.method}: reducing {len(block.cascade)} gates")
             shorter = reduce(block.cascade, controls=options.controls, uncompute=options.uncompute)
             blocks.append(replace(block, cascade=shorter))
+            kept = keep_products(blocks[-1]) if task.oracle == "compute" else None
+            if kept is not None:
+                blocks.append(kept)
         if method.name == "linear" and blocks:
             break
     if not blocks:
