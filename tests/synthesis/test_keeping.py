@@ -49,7 +49,7 @@ def test_every_product_onto_a_line_known_to_be_0_and_equal_products_once() -> No
         Gate(6, (0, 2)),
         Gate(7, (4, 12)),
         Gate(4, (6, 14)),
-        Gate(5, (4, 12)),
+        Gate(5, (14,)),
         Gate(5, (12,)),
     ]
 
