@@ -41,10 +41,14 @@ class Undefined(Exception):  # noqa: N818 - it names a state of the operation, a
 
 
 def multiply(x: int, y: int) -> int:
-    """x * y, unless the result could have more than MAX_BITS bits."""
-    if x.bit_length() + y.bit_length() > MAX_BITS:
+    """x * y, of at most MAX_BITS bits."""
+    return _not_too_large(x * y)
+
+
+def _not_too_large(result: int) -> int:
+    if result.bit_length() > MAX_BITS:
         raise Undefined(refusals.TOO_LARGE, limit=MAX_BITS)
-    return x * y
+    return result
 
 
 def floor_divide(x: int, y: int) -> int:
@@ -83,9 +87,9 @@ def power(x: int, k: int) -> int:
     """x ** k for k >= 0; 0 ** 0 is 1."""
     if k < 0:
         raise Undefined(refusals.NEGATIVE_EXPONENT, count=k)
-    if abs(x) > 1 and x.bit_length() * k > MAX_BITS:
+    if abs(x) > 1 and (x.bit_length() - 1) * k >= MAX_BITS:
         raise Undefined(refusals.TOO_LARGE, limit=MAX_BITS)
-    return int(x**k)
+    return _not_too_large(int(x**k))
 
 
 def power_modulo(x: int, k: int, m: int) -> int:

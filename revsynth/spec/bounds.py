@@ -124,12 +124,12 @@ def power(x: Interval, k: Interval) -> Interval:
     low_k, high_k = max(k[0], 0), max(k[1], 0)
     if most <= 1:
         return (-1 if x[0] < 0 else 0), 1
-    top = _CEILING if most.bit_length() * high_k > MAX_BITS else int(most**high_k)
+    top = _CEILING if (most.bit_length() - 1) * high_k >= MAX_BITS else min(int(most**high_k), _CEILING)
     if x[0] < 0:
         return -top, top
     if x[0] == 0:
         return 0, top
-    if x[0].bit_length() * low_k > MAX_BITS:
+    if (x[0].bit_length() - 1) * low_k >= MAX_BITS:
         return 1, top
     return int(x[0] ** low_k), top
 

@@ -41,26 +41,26 @@ class Decision:
 
     def __init__(self, lanes: Lanes) -> None:
         self.settled: Mask = np.zeros(lanes.shared.size, dtype=np.bool_)
-        self._begun = False
+        self.changes = 0
 
     def settle(self, lanes: Lanes, where: bool | Mask) -> None:
         """The lanes in use where the condition holds have their answer."""
         hits = both(where, True if lanes.active is None else lanes.active)
-        if hits is False:
+        if not np.any(hits):
             return
-        self._begun = True
+        self.changes += 1
         if lanes.rows is None:
             self.settled |= hits
         else:
             self.settled[lanes.rows if hits is True else lanes.rows[hits]] = True
 
-    def open(self, lanes: Lanes) -> bool | Mask:
+    def open(self, lanes: Lanes) -> Mask:
         """The lanes that have no answer yet."""
-        return negated(self.on(lanes)) if self._begun else True
+        return ~(self.settled if lanes.rows is None else self.settled[lanes.rows])
 
     def on(self, lanes: Lanes) -> bool | Mask:
         """The lanes that have their answer; one truth value where all in use agree."""
-        if not self._begun:
+        if not self.changes:
             return False
         settled = self.settled if lanes.rows is None else self.settled[lanes.rows]
         used = settled if lanes.active is None else settled[lanes.active]
@@ -206,8 +206,10 @@ class Loops:
 
 def _each(values: Value, lanes: Lanes, decision: Decision | None) -> Iterator[tuple[Value, Lanes]]:
     """The items of a list one by one, each on the lanes where it is there and still wanted."""
+    changes = 0
     for number in range(rounds(values)):
-        if decision is not None:
+        if decision is not None and decision.changes != changes:
+            changes = decision.changes
             still = lanes.narrow(decision.open(lanes))
             if still is None:
                 return

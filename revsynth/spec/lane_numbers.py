@@ -204,12 +204,18 @@ def _multiply(x: Number, y: Number, lanes: Lanes) -> Number:
     x, y, interval, small = _brought(bounds.multiply, x, y, lanes)
     if small:
         return settled(np.multiply(plain(x), plain(y)), interval)
-    left, right = objects(x), objects(y)
+    product = np.multiply(objects(x), objects(y))
     if _longest(x) + _longest(y) > MAX_BITS:
-        bad = where_bad(lanes, np.greater(_lengths(left) + _lengths(right), MAX_BITS).astype(np.bool_))
-        if bad is not None:
-            left, interval = np.where(bad, np.array(0, dtype=object), left), union(interval, (0, 0))
-    return settled(np.multiply(left, right), interval)
+        return _not_too_large(product, interval, lanes)
+    return settled(product, interval)
+
+
+def _not_too_large(array: Any, interval: Interval, lanes: Lanes) -> Number:
+    """The number of an array of Python integers; it fails where one has more than MAX_BITS bits."""
+    bad = where_bad(lanes, np.greater(_lengths(array), MAX_BITS).astype(np.bool_))
+    if bad is None:
+        return settled(array, interval)
+    return settled(np.where(bad, np.array(0, dtype=object), array), union(interval, (0, 0)))
 
 
 def _longest(x: Number) -> int:
@@ -310,11 +316,12 @@ def _power(x: Number, k: Number, lanes: Lanes) -> Number:
         return settled(np.power(plain(x), plain(count)), interval)
     base, exponent = objects(x), objects(count)
     if _longest(x) * bounds_of(count)[1] > MAX_BITS:
-        long = np.greater(_lengths(base) * exponent, MAX_BITS).astype(np.bool_)
+        long = np.greater_equal((_lengths(base) - 1) * exponent, MAX_BITS).astype(np.bool_)
         bad = where_bad(lanes, long & np.greater(np.abs(base), 1).astype(np.bool_))
         if bad is not None:
             exponent = np.where(bad, np.array(0, dtype=object), exponent)
             interval = union(interval, (1, 1))
+        return _not_too_large(np.power(base, exponent), interval, lanes)
     return settled(np.power(base, exponent), interval)
 
 

@@ -51,26 +51,28 @@ class NegativeOnes(Exception):  # noqa: N818
     """Ones of a negative number without a width."""
 
 
-def _product(x: int, y: int) -> int:
-    if x.bit_length() + y.bit_length() > LIMIT:
+def _limited(result: int) -> int:
+    if abs(result) >= 2**LIMIT:
         raise TooLarge
-    return x * y
+    return result
+
+
+def _product(x: int, y: int) -> int:
+    return _limited(x * y)
 
 
 def _shift(x: int, n: int) -> int:
     if n > LIMIT and x:
         raise TooLarge
-    if n >= 0 and x and x.bit_length() + n > LIMIT:
-        raise TooLarge
-    return x << n
+    return _limited(x << min(n, LIMIT + 1))
 
 
 def _power(x: int, k: int) -> int:
     if k < 0:
         raise NegativeExponent
-    if abs(x) > 1 and x.bit_length() * k > LIMIT:
+    if abs(x) > 1 and (abs(x).bit_length() - 1) * k > LIMIT:
         raise TooLarge
-    return x**k
+    return _limited(x**k)
 
 
 def _bit(x: int, i: int, bits: int) -> int:
