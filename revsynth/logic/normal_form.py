@@ -180,4 +180,4 @@ def is_zero(columns: Columns) -> bool:
 def _halves(array: Columns, index: int) -> Columns:
     """A view (..., blocks, 2, words) that splits a word-level variable (index >= 6)."""
     block = 1 << (index - 6)
-    return array.reshape(*array.shape[:-1], -1, 2, block)
+    return array.reshape(*array.shape[:-1], array.shape[-1] // (2 * block), 2, block)
