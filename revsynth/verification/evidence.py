@@ -32,7 +32,7 @@ class Evidence:
 class Counterexample:
     """One input at which the circuit does not do what the spec says; words as (lists of) integers."""
 
-    inputs: dict[str, Any]
+    inputs: dict[str, Any] | list[int]
     kind: FaultKind
     expected: dict[str, Any]
     got: dict[str, Any]

@@ -1,0 +1,92 @@
+"""Does a circuit file do what a spec says? From the two of them alone, for every input and outcome."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import replace
+from typing import TYPE_CHECKING, Any
+
+from revsynth.options import Oracle
+from revsynth.spec.model import Spec
+from revsynth.spec.understand import Understanding, understand
+from revsynth.verification.counterexample import Teller
+from revsynth.verification.cross_check import cross_check
+from revsynth.verification.decide import Decision, decide
+from revsynth.verification.evidence import Evidence, Verdict
+from revsynth.verification.matching import Roles, match
+
+if TYPE_CHECKING:
+    from revsynth.circuit.model import Circuit
+    from revsynth.qasm import Program
+
+PHASE_TOLERANCE = 1e-9
+
+
+def verify_program(
+    spec: Spec,
+    program: Program,
+    *,
+    oracle: Oracle | None = None,
+    exact_phase: bool = False,
+    placement: Mapping[str, Any] | None = None,
+    progress: Callable[[str], None] | None = None,
+) -> Verdict:
+    """Decide whether `program` does what `spec` says, in the oracle form given or shown by its registers.
+
+    Index 0 of a register is the least significant bit of its word. Every input is run, every outcome of
+    every measurement is followed, their chances must not depend on the input, and phases count: one constant
+    phase passes and is reported, unless `exact_phase`. Where only the value of f is free, inputs, scratch and
+    signs are demanded all the same (not in `inplace` and `embedded` blocks). `placement` is the contract's
+    object for an embedded block; without it the file's comment lines are read. Registers that the spec does
+    not know count as scratch. Time and memory grow as 2**n for n input bits.
+
+    Raises SpecError for a spec that cannot be understood, UsageError where registers are missing or the form
+    does not go with the spec.
+    """
+    understanding = understand(spec)
+    roles = match(understanding, program, oracle, placement)
+    checked = cross_check(understanding)
+    decision = decide(program.circuit, roles, understanding.function, progress or (lambda _: None))
+    links = (checked, *_links(decision, roles, program.circuit))
+    teller = Teller(understanding, program.circuit, decision.demand)
+    counterexample = None if decision.found is None else teller.tell(decision.found)
+    holds = decision.holds
+    if holds and exact_phase and abs(decision.global_phase) > PHASE_TOLERANCE:
+        holds = False
+        counterexample = teller.constant_phase(decision.global_phase, _marked(understanding, decision, roles))
+    if counterexample is not None and decision.level == "sampled":
+        decision = replace(decision, detail="stopped at the first input that fails")
+    evidence = Evidence(decision.level, decision.inputs, links, decision.detail)
+    return Verdict(holds, evidence, decision.global_phase, counterexample)
+
+
+def _marked(understanding: Understanding, decision: Decision, roles: Roles) -> bool:
+    reference = decision.demand.reference or 0
+    row = understanding.function.values[0]
+    return roles.oracle == "phase" and bool(int(row[reference >> 6]) >> (reference & 63) & 1)
+
+
+def _links(decision: Decision, roles: Roles, circuit: Circuit) -> list[str]:
+    """What the verdict rests on, one line each."""
+    links = []
+    if roles.foreign:
+        links.append(
+            "registers: " + ", ".join(roles.foreign) + " not in the spec, taken as scratch from 0 to 0"
+        )
+    if decision.engine:
+        links.append(f"circuit: {decision.engine}, {len(circuit)} operations, form {roles.oracle}")
+    if decision.measurements:
+        outcomes = "both outcomes of each followed" if decision.random else "every outcome certain"
+        links.append(
+            f"measurements: {decision.measurements}, {outcomes}, their chances the same for all inputs"
+        )
+    enumerated = len(decision.demand.enumerated)
+    if enumerated:
+        what = "an output" if roles.oracle == "bit" and not roles.lent else "an output or lent qubit"
+        links.append(f"starts: every value of {enumerated} qubits that are {what} was run")
+    if decision.proven:
+        links.append(
+            f"starts: the circuit commutes with X on {len(decision.proven)} outputs or lent qubits, carried "
+            "through every step, so their starting value 0 stands for both"
+        )
+    return links
