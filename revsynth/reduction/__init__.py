@@ -5,6 +5,6 @@ DAC 2003 (deletion and moving rules); Maslov, Dueck, Miller, "Toffoli network sy
 IEEE TCAD 24(6), 2005 (classes of templates); Song, Perkowski, IEEE TCAD 15(4), 1996 (linking of products).
 """
 
-from revsynth.reduction.reduce import reduce
+from revsynth.reduction.fixed_point import reduce
 
 __all__ = ["reduce"]

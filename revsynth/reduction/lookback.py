@@ -47,27 +47,22 @@ def _meet(done: list[Masks], look: Look, rewriter: Rewriter) -> tuple[int, list[
     """From which gate on to replace, and by what, so that the last gate gains; None where nothing is gained.
 
     `between` are the gates that the last one cannot pass, first one first; `passed` those it has passed.
+    `flipped` and `read`: the lines that the last gate and those between flip and read.
     """
-    turn = rewriter.may_turn
     gate = done[-1]
     between: list[Masks] = []
     passed: list[Masks] = []
+    flipped, read = gate[0], gate[1] | gate[2]
     for index in range(len(done) - 2, max(len(done) - 2 - look.reach, -1), -1):
         earlier = done[index]
-        moved = earlier
-        aside: list[Masks] = []
-        for other in between:
-            crossed = cross(moved, other, turn=turn)
-            if crossed is None:
-                break
-            aside.append(crossed[0])
-            moved = crossed[1]
-        else:
+        is_free = not (earlier[0] & read or flipped & (earlier[1] | earlier[2]))
+        aside, moved = (between, earlier) if is_free else _set_aside(earlier, between, rewriter.may_turn)
+        if moved is not None:
             if moved[0] == gate[0] and apart(moved, gate) <= MOST_APART:
                 better = rewriter.improvement((moved, gate))
                 if better is not None:
                     return index, [*aside, *better, *reversed(passed)]
-            crossed = cross(moved, gate, turn=turn)
+            crossed = (gate, moved) if is_free else cross(moved, gate, turn=rewriter.may_turn)
             if crossed is not None:
                 between = aside
                 gate = crossed[0]
@@ -75,5 +70,19 @@ def _meet(done: list[Masks], look: Look, rewriter: Rewriter) -> tuple[int, list[
                 continue
         if len(between) == look.between:
             break
-        between.insert(0, earlier)
+        between = [earlier, *between]
+        flipped |= earlier[0]
+        read |= earlier[1] | earlier[2]
     return 0, None
+
+
+def _set_aside(gate: Masks, others: list[Masks], turn: bool) -> tuple[list[Masks], Masks | None]:
+    """The others and the gate after it has passed them all; None for the gate where it cannot."""
+    aside: list[Masks] = []
+    for other in others:
+        crossed = cross(gate, other, turn=turn)
+        if crossed is None:
+            return others, None
+        aside.append(crossed[0])
+        gate = crossed[1]
+    return aside, gate

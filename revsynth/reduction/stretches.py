@@ -7,9 +7,9 @@ from collections.abc import Callable
 from revsynth.cascade.model import PHASE, Cascade, Gate, Line
 from revsynth.reduction.masks import Masks, to_gate
 
-WIDE = 256
+WIDE = 4_096
 """Lines from which on a cascade is worked on in stretches."""
-STRETCH = 2_048
+STRETCH = 16_384
 """Gates in a stretch."""
 
 Work = Callable[[list[Masks], int], tuple[list[Masks], bool]]
@@ -25,7 +25,7 @@ def in_stretches(cascade: Cascade, work: Work) -> Cascade:
     quiet = 0
     changed = False
     border = 0
-    while quiet < 2:
+    while quiet < (2 if len(gates) > STRETCH // 2 else 1):
         after: list[Gate] = []
         active = False
         start = 0

@@ -76,12 +76,17 @@ def _window(done: list[Masks], search: Search) -> tuple[int, Masked, list[Masks]
     passed: list[Masks] = []
     pending: list[Masks] = []
     start = len(done) - 1
+    flipped, read = window[0][0], window[0][1] | window[0][2]
     for index in range(start - 1, max(start - search.reach, -1), -1):
         gate = done[index]
-        if not any(_related(gate, other) for other in window):
+        care = gate[1] | gate[2]
+        is_apart = gate[0] and not (gate[0] & (flipped | read) or flipped & care)
+        if is_apart or not any(_related(gate, other) for other in window):
             pending.append(gate)
             continue
         window.append(gate)
+        flipped |= gate[0]
+        read |= care
         passed.extend(pending)
         pending.clear()
         start = index
