@@ -9,6 +9,7 @@ from __future__ import annotations
 import time
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from typing import Literal
 
 from revsynth.cascade.price import cascade_t
 from revsynth.choice import Candidate, Trial, and_count, cheapest, estimate, within
@@ -144,7 +145,7 @@ def register_layout(understanding: Understanding, oracle: Oracle, options: Build
 
     The width of `line` and of `keep` depends on the block and is filled in when it is known (size -1).
     """
-    version = 3 if options.format == "openqasm3" else 2
+    version: Literal[2, 3] = 3 if options.format == "openqasm3" else 2
     inputs = [element for word in understanding.spec.inputs for element in word.elements()]
     outputs: list[tuple[str, int]] = []
     if oracle in ("bit", "fresh", "compute") and understanding.spec.kind == "outputs":

@@ -5,12 +5,15 @@ from __future__ import annotations
 import json
 import sys
 from collections.abc import Callable
-from typing import Any, TypeVar
+from typing import TYPE_CHECKING, Any, TypeVar
 
 import click
 
 from revsynth.errors import UsageError
 from revsynth.spec.model import Spec
+
+if TYPE_CHECKING:
+    from revsynth.qasm import Program
 
 F = TypeVar("F", bound=Callable[..., Any])
 
@@ -60,6 +63,17 @@ def load_spec(
     from revsynth.spec.read import read_spec
 
     return read_spec(path, from_format=from_format)
+
+
+def load_program(file: str, negctrl: Any) -> Program:
+    """The circuit of an OpenQASM file, or of standard input ('-')."""
+    from revsynth.qasm import read, read_file
+
+    if file == "-":
+        return read(
+            sys.stdin.buffer.read().decode("utf-8", "replace"), source="standard input", negctrl=negctrl
+        )
+    return read_file(file, negctrl=negctrl)
 
 
 def progress_line() -> Callable[[str], None]:

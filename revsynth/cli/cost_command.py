@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import click
 
-from revsynth.cli.common import echo_json
+from revsynth.cli.common import echo_json, load_program
 
 
 @click.command("cost")
@@ -15,7 +17,7 @@ from revsynth.cli.common import echo_json
     help="How to read negctrl(n) with n > 1 in a file from elsewhere.",
 )
 @click.option("--json", "as_json", is_flag=True, help="One JSON object on standard output.")
-def COMMAND(file: str, negctrl: str | None, as_json: bool) -> None:  # noqa: N802
+def COMMAND(file: str, negctrl: Any, as_json: bool) -> None:  # noqa: N802
     """Count what the OpenQASM FILE costs, gate definitions expanded ('-': standard input).
 
     \b
@@ -24,9 +26,8 @@ def COMMAND(file: str, negctrl: str | None, as_json: bool) -> None:  # noqa: N80
     """
     from revsynth.circuit.cost import measure
     from revsynth.cli.tables import cost_lines
-    from revsynth.qasm import read_file
 
-    cost = measure(read_file(file, negctrl=negctrl).circuit).to_json(ands=None, cascade=None)
+    cost = measure(load_program(file, negctrl).circuit).to_json(ands=None, cascade=None)
     if as_json:
         echo_json(cost)
     else:

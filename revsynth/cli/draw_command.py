@@ -4,10 +4,12 @@ from __future__ import annotations
 
 import shutil
 import sys
+from collections.abc import Callable
 from typing import Any
 
 import click
 
+from revsynth.cli.common import load_program
 from revsynth.errors import UsageError
 
 
@@ -36,9 +38,7 @@ def COMMAND(  # noqa: N802
       revsynth draw beacons.qasm
       revsynth draw beacons.qasm -o beacons.svg
     """
-    from revsynth.qasm import read_file
-
-    circuit = read_file(file, negctrl=negctrl).circuit
+    circuit = load_program(file, negctrl).circuit
     if output is None:
         from revsynth.report.terminal import draw_text
 
@@ -54,5 +54,5 @@ def COMMAND(  # noqa: N802
     from revsynth.report.export import svg_to_pdf, svg_to_png
 
     picture = draw_svg(circuit, title=title)
-    convert = {"svg": str.encode, "png": svg_to_png, "pdf": svg_to_pdf}[ending]
-    write_whole(output, convert(picture))
+    convert: dict[str, Callable[[str], bytes]] = {"svg": str.encode, "png": svg_to_png, "pdf": svg_to_pdf}
+    write_whole(output, convert[ending](picture))

@@ -7,7 +7,15 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from revsynth.cli.common import echo_json, load_spec, spec_options, warn
+from revsynth.cli.common import (
+    clear_progress,
+    echo_json,
+    load_program,
+    load_spec,
+    progress_line,
+    spec_options,
+    warn,
+)
 from revsynth.errors import UsageError
 from revsynth.options import CHOICES
 
@@ -50,12 +58,16 @@ def COMMAND(  # noqa: N802
     wanted = 1 if where is not None else 2
     if len(paths) != wanted:
         raise UsageError("give FILE alone with --where" if where is not None else "give SPEC and FILE")
+    if paths == ("-", "-"):
+        raise UsageError("standard input can be the spec or the circuit, not both")
     spec = load_spec(paths[0] if where is None else None, where, **inline)
-    from revsynth.api import verify
+    program = load_program(paths[-1], negctrl)
     from revsynth.spec.understand import understand
+    from revsynth.verification import verify_program
 
     warn(understand(spec).warnings)
-    verdict = verify(spec, paths[-1], oracle=oracle, exact_phase=exact_phase, negctrl=negctrl)
+    verdict = verify_program(spec, program, oracle=oracle, exact_phase=exact_phase, progress=progress_line())
+    clear_progress()
     if as_json:
         echo_json(verdict.to_json())
     else:
