@@ -72,26 +72,24 @@ def read_bits(circuit: Circuit, op: Op) -> tuple[int, ...]:
 def pack(circuit: Circuit, *, gap: int = 0) -> list[Column]:
     """Put each operation into the first column in which its lines, and `gap` more on both sides, are free.
 
-    An operation never moves before another that touches one of its lines or measures a bit that it reads.
-    Operations without lines (a constant phase) get a column of their own.
+    An operation never moves before another that touches one of its lines. One that writes or reads a bit also
+    takes the lane of the bits, below the last line, and with it everything on the way there. Operations
+    without lines (a constant phase) get a column of their own.
     """
-    free = [0] * (circuit.qubits + gap)
-    bit_ready: dict[int, int] = {}
+    free = [0] * (circuit.qubits + 1 + gap)
     columns: list[list[Op]] = []
     barrier = 0
     for op in circuit:
         lines = op.qubits
         if lines:
-            span = range(min(lines), max(lines) + 1 + gap)
+            last = circuit.qubits if op.kind is Kind.MEASURE or op.condition >= 0 else max(lines)
+            span = range(min(lines), last + 1 + gap)
             place = max(barrier, *(free[line] for line in span))
-            place = max([place, *(bit_ready.get(bit, 0) for bit in read_bits(circuit, op))])
             for line in span:
                 free[line] = place + 1
         else:
             place = barrier = len(columns)
             barrier += 1
-        if op.kind is Kind.MEASURE:
-            bit_ready[op.bit] = place + 1
         while len(columns) <= place:
             columns.append([])
         columns[place].append(op)

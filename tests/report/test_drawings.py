@@ -64,6 +64,16 @@ def test_wrapped_rows_hold_all_columns_and_keep_to_the_room(circuit: Circuit, ro
     assert all(30 * len(row) <= room for row in rows)
 
 
+def test_each_bit_written_or_read_has_its_own_place_in_the_lane() -> None:
+    builder = CircuitBuilder()
+    builder.add_register("a", 4)
+    builder.add_bits("seen", 4)
+    for qubit in range(4):
+        builder.measure(qubit, qubit)
+    for column in pack(builder.build()):
+        assert len(column.operations) == 1
+
+
 def test_a_gate_under_if_stands_after_the_measurement_it_reads() -> None:
     columns = pack(example())
     place = {op.kind: index for index, column in enumerate(columns) for op in column.operations}
