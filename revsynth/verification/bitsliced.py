@@ -15,6 +15,7 @@ from revsynth.verification.branches import (
     Branch,
     NotUniformError,
     distinct,
+    expanded,
     flip,
     hadamard,
     turn,
@@ -52,23 +53,13 @@ def run_bitsliced(
     """
     runs = [_Run([Branch(list(start))], [0] * plan.bits, 0.0, ())]
     random = False
-    conditions = plan.conditions
     for index, step in enumerate(plan.steps):
-        if step.condition < 0:
-            acting, idle = runs, []
+        if step.condition < 0 and step.act < MEASURE:
+            for run in runs:
+                _act(run, step, ones, most_branches)
         else:
-            acting = [run for run in runs if holds(conditions[step.condition], run.bits)]
-            idle = [run for run in runs if not holds(conditions[step.condition], run.bits)]
-        if step.act in (MEASURE, RESET):
-            after = [new for run in acting for new in _measure(run, step, ones)]
-            random = random or len(after) > len(acting)
-            acting = after
-        else:
-            for run in acting:
-                _act(run, step, ones)
-                if len(run.branches) > most_branches:
-                    raise CrowdedError
-        runs = acting + idle
+            runs, split = _guarded(runs, step, plan, ones, most_branches)
+            random = random or split
         if len(runs) > 1 and index in plan.live:
             runs = _merge(runs, plan.live[index], ones)
             if len(runs) > most_runs:
@@ -76,23 +67,46 @@ def run_bitsliced(
     return Finals([_final(run) for run in runs], random)
 
 
-def _act(run: _Run, step: Step, ones: Column) -> None:
-    if step.act == FLIP:
-        flip(run.branches, step.target, step.literals, ones)
-    elif step.act == TURN:
-        turn(run.branches, step.amount, step.literals, ones)
-    elif step.act == HADAMARD:
-        run.branches = hadamard(run.branches, step.target, ones)
+def _guarded(
+    runs: list[_Run], step: Step, plan: Plan, ones: Column, most_branches: int
+) -> tuple[list[_Run], bool]:
+    """A step under a condition, or a measurement: the runs after it, and whether one was split."""
+    after: list[_Run] = []
+    split = False
+    for run in runs:
+        if step.condition >= 0 and not holds(plan.conditions[step.condition], run.bits):
+            after.append(run)
+        elif step.act in (MEASURE, RESET):
+            parts = _measure(run, step, ones)
+            split = split or len(parts) > 1
+            after.extend(parts)
+        else:
+            _act(run, step, ones, most_branches)
+            after.append(run)
+    return after, split
+
+
+def _act(run: _Run, step: Step, ones: Column, most_branches: int) -> None:
+    act, literals, target, amount, angle, *_ = step
+    if act == FLIP:
+        run.branches = flip(run.branches, target, literals, ones)
+    elif act == TURN:
+        run.branches = turn(run.branches, amount, literals, ones)
+    elif act == HADAMARD:
+        run.branches = hadamard(run.branches, target, ones)
     else:
-        assert step.act == ANGLE
-        if step.literals:
+        assert act == ANGLE
+        if literals:
             raise NotUniformError
-        run.angle += step.angle
+        run.angle += angle
+    if len(run.branches) > most_branches:
+        raise CrowdedError
 
 
 def _measure(run: _Run, step: Step, ones: Column) -> list[_Run]:
     """The runs of both outcomes, or the one that is certain."""
     qubit = step.target
+    run.branches = expanded(run.branches, qubit, ones)
     columns = [branch.columns[qubit] for branch in run.branches]
     for value, column in ((0, 0), (1, ones)):
         if all(c == column for c in columns):
@@ -113,18 +127,21 @@ def _measure(run: _Run, step: Step, ones: Column) -> list[_Run]:
 
 def _side(branches: Sequence[Branch], qubit: int, value: int, ones: Column) -> list[Branch]:
     """Of two equally heavy branches that differ on the qubit in every lane: the side with that value."""
-    if len(branches) != 2 or branches[0].halves != branches[1].halves:
+    if len(branches) != 2:
         raise NotUniformError
     one, other = branches
+    if one.halves != other.halves or one.open.keys() != other.open.keys():
+        raise NotUniformError
     here = one.columns[qubit] ^ (0 if value else ones)
     if one.columns[qubit] ^ other.columns[qubit] != ones:
         raise NotUniformError
     columns = [b if a is b else b ^ (here & (a ^ b)) for a, b in zip(one.columns, other.columns, strict=True)]
-    return [Branch(columns, chosen(here, one.phases, other.phases), one.halves)]
+    opened = {q: chosen(here, phases, other.open[q]) for q, phases in one.open.items()}
+    return [Branch(columns, chosen(here, one.phases, other.phases), one.halves, opened)]
 
 
 def _with_outcome(
-    run: _Run, branches: Sequence[Branch], step: Step, value: int, *, certain: bool, ones: Column
+    run: _Run, branches: list[Branch], step: Step, value: int, *, certain: bool, ones: Column
 ) -> _Run:
     bits = run.bits
     if step.act == MEASURE:
@@ -133,7 +150,7 @@ def _with_outcome(
     elif value:
         flip(branches, step.target, (), ones)
     record = run.record if certain else (*run.record, Outcome(step.source, value))
-    return _Run(list(branches), bits, run.angle, record)
+    return _Run(branches, bits, run.angle, record)
 
 
 def _merge(runs: list[_Run], live: Sequence[int], ones: Column) -> list[_Run]:
@@ -163,7 +180,7 @@ def _same_state(one: _Run, other: _Run, ones: Column) -> bool:
     turns = set()
     shifts = set()
     for branch in one.branches:
-        match = next((b for b in left if b.columns == branch.columns), None)
+        match = next((b for b in left if b.columns == branch.columns and b.open == branch.open), None)
         if match is None:
             return False
         left.remove(match)
@@ -173,7 +190,7 @@ def _same_state(one: _Run, other: _Run, ones: Column) -> bool:
 
 
 def _final(run: _Run) -> Final:
-    if len(run.branches) != 1:
+    if len(run.branches) != 1 or run.branches[0].open:
         raise NotUniformError
     branch = run.branches[0]
     return Final(branch.columns, branch.phases, run.angle, run.record)

@@ -76,7 +76,7 @@ class _Decider:
         self.progress = progress
         started = (*(roles.outputs if roles.oracle == "bit" else ()), *roles.lent)
         self.proven: tuple[Qubit, ...] = ()
-        if function.inputs + len(started) > ENUMERATED_BITS:
+        if started and function.inputs + len(started) > ENUMERATED_BITS:
             self.proven = tuple(commuting(self.engines.steps, circuit.qubits, started))
         enumerated = [qubit for qubit in started if qubit not in self.proven]
         self.demand = Demand(roles, function, circuit.qubits, enumerated)
@@ -122,9 +122,6 @@ class _Decider:
     def _parts(self) -> Iterator[Part]:
         """All inputs, or some and a reason in `why_sampled`."""
         bits = self.demand.bits
-        if bits > LOOK_BITS and not self.engines.classical:
-            yield self.engines.run_chosen(self.demand.chosen(self._first_look()))
-            self.lanes = 0
         if bits > MOST_BITS:
             self.why_sampled = (
                 f"{len(self.demand.enumerated)} outputs or lent qubits may start in any state, and what "
@@ -133,18 +130,27 @@ class _Decider:
             yield from self._sample()
             return
         size = min(bits, BLOCK_BITS)
+        looked = bits <= LOOK_BITS
         for base in range(0, 1 << bits, 1 << size):
+            if base:
+                self.progress(f"verifying: {base} of {1 << bits} inputs")
+            part = self.engines.fast(self.demand.block(base, size))
+            if part is not None:
+                yield part
+                continue
+            if not looked:
+                yield self.engines.run_chosen(self.demand.chosen(self._first_look()))
+                self.lanes = base
+                looked = True
             left = (1 << bits) - base
-            if self.engines.slow and left * len(self.engines.steps) > MOST_STEPS:
+            if left * len(self.engines.steps) > MOST_STEPS:
                 self.why_sampled = (
                     f"{left} inputs through {len(self.engines.steps)} steps are too many for exact "
                     "simulation of superpositions"
                 )
                 yield from self._sample()
                 return
-            if base:
-                self.progress(f"verifying: {base} of {1 << bits} inputs")
-            yield from self.engines.run(self.demand, base, size)
+            yield from self.engines.run_slow(self.demand, base, size)
 
     def _first_look(self) -> list[int]:
         """Marked inputs and a spread of others."""

@@ -57,21 +57,19 @@ class Engines:
         """Whether the sparse engine is at work."""
         return self._use_sparse
 
-    @property
-    def classical(self) -> bool:
-        """Whether the circuit holds nothing but NOTs with controls and signs."""
-        return self._gates is not None
+    def fast(self, chunk: Chunk) -> Part | None:
+        """The final states through a fast engine; None, and slow from now on, where neither can follow."""
+        return None if self._use_sparse else self._fast(chunk)
 
-    def run(self, demand: Demand, base: int, bits: int) -> Iterator[Part]:
-        """The lanes base ... base + 2**bits - 1, in one part or several.
+    def run_chosen(self, chunk: Chunk) -> Part:
+        """The final states through whichever engine fits; raises TooLargeError."""
+        return self.fast(chunk) or self._sparse(chunk)
+
+    def run_slow(self, demand: Demand, base: int, bits: int) -> Iterator[Part]:
+        """The lanes base ... base + 2**bits - 1 in as many parts as memory asks for.
 
         Raises TooLargeError where even a single input is too much.
         """
-        if not self._use_sparse:
-            part = self._fast(demand.block(base, bits))
-            if part is not None:
-                yield part
-                return
         end = base + (1 << bits)
         while base < end:
             size = min(self._sparse_bits, bits)
@@ -85,13 +83,7 @@ class Engines:
             yield part
             base += 1 << size
 
-    def run_chosen(self, chunk: Chunk) -> Part:
-        """One set of lanes, through whichever engine fits; raises TooLargeError as `run` does."""
-        part = None if self._use_sparse else self._fast(chunk)
-        return part or self._sparse(chunk)
-
     def _fast(self, chunk: Chunk) -> Part | None:
-        """None, and sparse from now on, where the circuit is for neither of the fast engines."""
         if self._gates is not None:
             columns, sign = run_classical(self._gates, chunk.start, chunk.ones)
             self.name = "bit-parallel simulation of the gates"

@@ -71,7 +71,12 @@ class TooLargeError(Exception):
 
 def holds(condition: Condition, bits: Sequence[int]) -> bool:
     """Whether all guards of a condition hold for the classical bits."""
-    return all(
-        all(bits[literal >> 1] != literal & 1 for literal in guard.bits) == guard.expected
-        for guard in condition
-    )
+    for literals, expected in condition:
+        met = True
+        for literal in literals:
+            if bits[literal >> 1] == literal & 1:
+                met = False
+                break
+        if met != expected:
+            return False
+    return True

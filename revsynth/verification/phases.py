@@ -31,6 +31,22 @@ def turned(phases: Phases, where: Column, amount: int) -> Phases:
     return p0, p1, p2
 
 
+def added(phases: Phases, where: Column, other: Phases) -> Phases:
+    """Add `other` modulo 8 in the lanes of `where`."""
+    a0, a1, a2 = phases
+    b0 = other[0] & where
+    b1 = other[1] & where
+    carry = a0 & b0
+    half = a1 ^ b1
+    return a0 ^ b0, half ^ carry, a2 ^ (other[2] & where) ^ ((a1 & b1) | (half & carry))
+
+
+def negated(phases: Phases, where: Column) -> Phases:
+    """Minus the phase, modulo 8, in the lanes of `where`."""
+    p0, p1, p2 = phases
+    return p0, p1 ^ (p0 & where), p2 ^ ((p0 | p1) & where)
+
+
 def difference(later: Phases, earlier: Phases, ones: Column) -> Phases:
     """`later` - `earlier` modulo 8, lane by lane."""
     if later == earlier:

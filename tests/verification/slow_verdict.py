@@ -1,7 +1,7 @@
 """The verdict by definition, one input and one record of outcomes at a time, with the slow simulator.
 
-For every record of measurement and reset outcomes the (unnormalised) state of every input must be one constant
-times the sign wanted times the basis state wanted; what is free must depend on the input alone.
+For every record of measurement and reset outcomes the (unnormalised) state of every input must be one
+constant times the sign wanted times the basis state wanted; what is free must depend on the input alone.
 """
 
 from __future__ import annotations

@@ -1,15 +1,16 @@
 """Hand-written circuits of the textbooks, for the verifier to be tried on; nothing here comes from lowering.
 
-Toffoli from seven T gates: Nielsen, Chuang, "Quantum Computation and Quantum Information", 2000, figure 4.9.
-The relative-phase Toffoli from four T: Barenco and others, Phys. Rev. A 52, 1995, section VI.B, in its Clifford+T
-form by Selinger, Phys. Rev. A 87, 2013. AND by four T and its erasure by measurement: Jones, Phys. Rev. A 87, 2013.
+Toffoli from seven T gates: Nielsen, Chuang, "Quantum Computation and Quantum Information", 2000, figure 4.9
+(from memory; the tests check its matrix). The relative-phase Toffoli from four T: Barenco and others, Phys. Rev.
+A 52, 1995, section VI.B, in its Clifford+T form by Selinger, Phys. Rev. A 87, 2013. AND by four T and its erasure
+by measurement: Jones, Phys. Rev. A 87, 2013.
 """
 
 from __future__ import annotations
 
 from collections.abc import Sequence
 
-from revsynth.circuit.model import Circuit, CircuitBuilder, Guard, Kind
+from revsynth.circuit.model import Circuit, CircuitBuilder, Guard, Op
 
 
 def register_circuit(*registers: tuple[str, int], bits: int = 0) -> CircuitBuilder:
@@ -78,7 +79,7 @@ def erase_and(c: CircuitBuilder, a: int, b: int, t: int, bit: int) -> None:
     c.x(t, condition=condition)
 
 
-def with_steps(circuit: Circuit, change: Sequence[tuple[int, object]]) -> Circuit:
+def with_steps(circuit: Circuit, change: Sequence[tuple[int, Op | None]]) -> Circuit:
     """The circuit with operations replaced: (index, None to leave it out, or an Op)."""
     changes = dict(change)
     builder = CircuitBuilder()
@@ -90,11 +91,6 @@ def with_steps(circuit: Circuit, change: Sequence[tuple[int, object]]) -> Circui
         new = changes.get(index, op)
         if new is None:
             continue
-        condition = circuit.conditions[new.condition] if new.condition >= 0 else ()  # type: ignore[attr-defined]
-        builder.add(new.kind, new.targets, new.controls, new.angles, condition, new.bit)  # type: ignore[attr-defined]
+        condition = circuit.conditions[new.condition] if new.condition >= 0 else ()
+        builder.add(new.kind, new.targets, new.controls, new.angles, condition, new.bit)
     return builder.build()
-
-
-def measured(builder: CircuitBuilder) -> bool:
-    """Whether anything is measured."""
-    return any(op.kind is Kind.MEASURE for op in builder.build())
