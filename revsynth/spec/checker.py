@@ -64,6 +64,7 @@ class Checker:
         self.stored = 0
         self._times = 1
         self._constant_kinds: dict[str, Kind] = {}
+        self._kinds: dict[ast.expr, Kind] = {}
         self._calls = Calls(self)
         self._visits: dict[type[ast.expr], Callable[[Any, Names], Kind]] = {
             ast.Constant: self._literal,
@@ -82,10 +83,12 @@ class Checker:
 
     def kind(self, node: ast.expr, names: Names) -> Kind:
         """The kind of a part; raises ExpressionError where it is not allowed."""
-        visit = self._visits.get(type(node))
-        if visit is None:
-            raise self.refuse(node, _REFUSED.get(type(node), refusals.OTHER))
-        return visit(node, names)
+        if node not in self._kinds:  # each part stands in one place, so it is worked out once
+            visit = self._visits.get(type(node))
+            if visit is None:
+                raise self.refuse(node, _REFUSED.get(type(node), refusals.OTHER))
+            self._kinds[node] = visit(node, names)
+        return self._kinds[node]
 
     def number(self, node: ast.expr, names: Names) -> NumberKind:
         """The kind of a part that must be a number."""

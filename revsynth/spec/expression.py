@@ -9,6 +9,8 @@ from __future__ import annotations
 import ast
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from functools import partial
+from typing import Any
 
 from revsynth.errors import SpecError
 from revsynth.spec import refusals
@@ -53,13 +55,17 @@ class Expression:
     """
 
     text: str
-    tree: ast.expr
+    tree: ast.expr = field(compare=False)
     scope: Scope
     source: str
     place: str
     bounds: Interval = field(compare=False)
     widths: Mapping[ast.expr, Width] = field(repr=False, compare=False)
     stored: int = field(default=0, repr=False, compare=False)
+
+    def __reduce__(self) -> tuple[Any, ...]:
+        """Pickled as its text: a tree may be too deep for pickle."""
+        return partial(parse, source=self.source, place=self.place), (self.text, self.scope)
 
     @property
     def origin(self) -> Origin:

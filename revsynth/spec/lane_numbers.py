@@ -94,7 +94,8 @@ def truth(x: Number) -> bool | Mask:
         return mask
     if x.lo > 0 or x.hi < 0:
         return True
-    return np.not_equal(x.array, 0).astype(np.bool_, copy=False)
+    nonzero: Mask = np.not_equal(x.array, 0).astype(np.bool_, copy=False)
+    return nonzero
 
 
 def compare(op: type[ast.cmpop], x: Number, y: Number) -> bool | Mask:

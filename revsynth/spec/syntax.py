@@ -76,21 +76,24 @@ class Origin:
         line, offset = getattr(node, "lineno", 1), getattr(node, "col_offset", 1)
         return line, max(offset + (line > 1), 1)
 
-    def shown(self, node: ast.AST, last: ast.AST | None = None) -> str:
-        """The text from a node's begin to its end (or the end of `last`) on one line, cut short."""
+    def shown(self, node: ast.AST) -> str:
+        """The text of a node on one line, cut short."""
         lines = self.text.split("\n")
         first_line, first_column = self.position(node)
-        tail = last or node
-        last_line = getattr(tail, "end_lineno", None) or first_line
-        last_column = (getattr(tail, "end_col_offset", None) or 1) - (last_line == 1)
+        last_line = getattr(node, "end_lineno", None) or first_line
+        last_column = (getattr(node, "end_col_offset", None) or 1) - (last_line == 1)
         part = lines[first_line - 1 : last_line]
         if not part:
             return ""
         if last_line <= len(lines):
             part[-1] = part[-1][:last_column]
         part[0] = part[0][first_column - 1 :]
-        joined = " ".join(_code(line).strip() for line in part).strip()
-        return joined if len(joined) <= _SHOWN else joined[: _SHOWN - 3] + "..."
+        return shortened(" ".join(_code(line).strip() for line in part).strip())
+
+
+def shortened(text: str) -> str:
+    """A text as messages show it, cut where it is long."""
+    return text if len(text) <= _SHOWN else text[: _SHOWN - 3] + "..."
 
 
 def number(value: int) -> str:

@@ -8,6 +8,7 @@ It must agree with `reference` for every input, errors included.
 from __future__ import annotations
 
 import ast
+import contextlib
 from collections.abc import Iterator
 from typing import Any
 
@@ -24,6 +25,7 @@ from revsynth.spec.layout import decode
 from revsynth.spec.limits import MAX_INPUT_BITS
 from revsynth.spec.model import Word
 from revsynth.spec.reference import evaluate
+from revsynth.spec.syntax import shortened
 
 _CHUNK = 1 << 16
 _HELD = 1 << 25
@@ -163,11 +165,12 @@ def _functions(*parts: ast.expr) -> set[str]:
 
 
 def _warning(expression: Expression, key: tuple[ast.Compare, int], always: bool) -> str:
-    node = key[0]
-    left, op, right = pair(*key)
-    alone = len(node.ops) == 1
-    shown = expression.origin.shown(node) if alone else ast.unparse(ast.Compare(left, [op], [right]))
-    line, column = expression.origin.position(node if alone else left)
-    where = expression.origin.where(line, column)
-    text = f"{where}: '{shown}' is {'always' if always else 'never'} true over the domain"
+    node, origin = key[0], expression.origin
+    shown = origin.shown(node)
+    if len(node.ops) > 1:
+        left, op, right = pair(*key)
+        with contextlib.suppress(RecursionError):
+            shown = shortened(ast.unparse(ast.Compare(left, [op], [right])))
+    where, often = origin.where(*origin.position(node)), "always" if always else "never"
+    text = f"{where}: '{shown}' is {often} true over the domain"
     return ": ".join(part for part in (expression.source, expression.place, text) if part)

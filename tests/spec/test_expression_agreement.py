@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import re
+from collections.abc import Callable
+from typing import Any
 from unittest.mock import patch
 
 import numpy as np
@@ -11,12 +14,12 @@ from hypothesis import strategies as st
 
 from revsynth.errors import ExpressionError
 from revsynth.spec import lanes, vector
-from revsynth.spec.expression import parse
+from revsynth.spec.expression import Scope, parse
 from revsynth.spec.layout import decode
 from revsynth.spec.reference import evaluate
 from revsynth.spec.vector import evaluate_all
 from tests.spec.agreement import INPUTS, answers, check
-from tests.spec.random_expressions import SCOPE, WORDS, Text, expressions
+from tests.spec.random_expressions import CONSTANTS, SCOPE, WORDS, Text, expressions
 
 EVERY = np.ones(INPUTS, dtype=np.bool_)
 
@@ -40,6 +43,97 @@ def test_all_three_agree_however_inputs_are_packed(text: Text, packing: tuple[in
         patch.object(vector, "_CHUNK", chunk),
     ):
         check(text, EVERY)
+
+
+OPERANDS = (
+    "a",
+    "k",
+    "cell",
+    "edges",
+    "table",
+    "ragged",
+    "mixed",
+    "i1",
+    "0",
+    "-1",
+    "2**63",
+    "cell[0]",
+    "a[0]",
+    "[]",
+)
+OPERANDS += (
+    "[1, 2]",
+    "(a, k)",
+    "edges[0]",
+    "[k]",
+    "range(a)",
+    "[c for c in cell if c]",
+    "mixed[1]",
+    "sum",
+    "",
+)
+OPERATORS = (
+    "+",
+    "-",
+    "*",
+    "//",
+    "%",
+    "**",
+    "<<",
+    ">>",
+    "&",
+    "|",
+    "^",
+    "==",
+    "!=",
+    "<",
+    " in ",
+    " not in ",
+    " and ",
+    "/",
+)
+FUNCTIONS = (
+    "sum",
+    "min",
+    "max",
+    "any",
+    "all",
+    "len",
+    "range",
+    "popcount",
+    "parity",
+    "distinct",
+    "pow",
+    "abs",
+    "",
+)
+
+
+@st.composite
+def damaged(draw: Callable[..., Any]) -> str:
+    """An expression with some of its operands, operators and functions replaced."""
+    tokens = re.findall(r"\w+|\*\*|//|<<|>>|[<>=!]=|\S|\s+", draw(expressions(3))[0])
+    places = [place for place, token in enumerate(tokens) if re.match(r"[^\s()\[\],]", token)]
+    for place in draw(st.lists(st.sampled_from(places), min_size=1, max_size=3)):
+        token = tokens[place]
+        others = FUNCTIONS if token in FUNCTIONS else OPERANDS if re.match(r"\w", token) else OPERATORS
+        tokens[place] = draw(st.sampled_from(others))
+    return "".join(tokens)
+
+
+@given(damaged())
+def test_damaged_expressions_are_refused_or_evaluated_alike(text: str) -> None:
+    scope = Scope(SCOPE.words, {**CONSTANTS, "mixed": [2, [0, 1, 2]]})
+    try:
+        expression = parse(text, scope)
+    except ExpressionError:
+        return
+    own, failure = answers(lambda index: evaluate(expression, decode(WORDS, index)), EVERY)
+    if failure is None:
+        assert evaluate_all(expression).tolist() == own
+        return
+    with pytest.raises(ExpressionError, match=f"^{re.escape(str(failure[1]))}$"):
+        evaluate_all(expression)
 
 
 @pytest.mark.parametrize(

@@ -243,8 +243,11 @@ def test_deep_nesting_within_the_limit_works() -> None:
 
 def test_an_expression_can_be_pickled() -> None:
     """Builds in other processes take expressions along."""
-    expression = pickle.loads(pickle.dumps(parse("a[1] + popcount(a)", A4)))
-    assert evaluate_all(expression).tolist() == values("a[1] + popcount(a)")
+    for text in ("a[1] + popcount(a)", " + ".join(["a"] * 1001)):
+        expression = parse(text, A4, source="lamps.toml", place="[domain] where")
+        copy = pickle.loads(pickle.dumps(expression))
+        assert copy == expression
+        assert evaluate_all(copy).tolist() == values(text)
 
 
 def test_names_that_words_and_constants_may_have() -> None:
@@ -278,3 +281,11 @@ def test_loop_variables_end_with_their_comprehension() -> None:
     assert values("sum(i for i in range(3)) + sum(i for i in range(4)) + a")[0] == 9
     with pytest.raises(ExpressionError, match="there is no name 'i'"):
         parse("sum(i for i in range(3)) + i", A4)
+
+
+def test_checking_takes_no_time_that_grows_with_nesting() -> None:
+    """Items of mixed lists are looked at by their place, level in level."""
+    text = "a"
+    for _ in range(45):
+        text = f"[{text}, [1]][0]"
+    assert values(text) == list(range(16))

@@ -27,6 +27,14 @@ def warnings(text: str, needed: np.ndarray | None = None) -> tuple[str, ...]:
         ("~a == 5", ["column 1: '~a == 5' is never true over the domain"]),
         ("a >= 0 and k < 2", ["column 1: 'a >= 0' is always true over the domain"]),
         ("0 <= a < 9", ["column 1: '0 <= a' is always true over the domain"]),
+        ("(a + 1) * 2 < 99 > k", [
+            "column 1: '(a + 1) * 2 < 99' is always true over the domain",
+            "column 1: '99 > k' is always true over the domain",
+        ]),
+        ("(k) < (a + 20) < (a)", [
+            "column 1: 'k < a + 20' is always true over the domain",
+            "column 1: 'a + 20 < a' is never true over the domain",
+        ]),
         ("k < 2 and (a + 1) != 17", ["column 11: '(a + 1) != 17' is always true over the domain"]),
         ("a in [16, 17, 18]", ["column 1: 'a in [16, 17, 18]' is never true over the domain"]),
         ("all(c < 4 for c in cell)", ["column 5: 'c < 4' is always true over the domain"]),
