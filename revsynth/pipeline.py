@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import Literal
 
 from revsynth.cascade.price import cascade_t
@@ -21,7 +21,7 @@ from revsynth.options import BuildOptions, Oracle
 from revsynth.placement import describe_placement, placement_comments
 from revsynth.qasm import Program, prepare, read, write
 from revsynth.qasm.names import register_names
-from revsynth.reduction import reduce
+from revsynth.shortening import shorten
 from revsynth.spec.model import Spec
 from revsynth.spec.understand import Understanding, understand
 from revsynth.synthesis.interface import Block, Method, Task
@@ -186,8 +186,7 @@ def _synthesise(
         progress(f"{method.name}: synthesising")
         for block in method.synthesise(task, progress):
             progress(f"{block.method}: reducing {len(block.cascade)} gates")
-            shorter = reduce(block.cascade, controls=options.controls, uncompute=options.uncompute)
-            blocks.append(replace(block, cascade=shorter))
+            blocks.append(shorten(block, task.oracle, options))
             kept = keep_products(blocks[-1]) if task.oracle == "compute" else None
             if kept is not None:
                 blocks.append(kept)

@@ -6,7 +6,15 @@ from collections.abc import Mapping
 
 _ROWS = (
     ("qubits", (("qubits", "in all"), ("work", "scratch"))),
-    ("T", (("t", "T gates"), ("t_depth", "T layers"), ("rotations", "rotations"), ("other", "other gates beyond Clifford"))),
+    (
+        "T",
+        (
+            ("t", "T gates"),
+            ("t_depth", "T layers"),
+            ("rotations", "rotations"),
+            ("other", "other gates beyond Clifford"),
+        ),
+    ),
     (
         "gates",
         (("gates", "in all"), ("toffoli", "Toffoli"), ("cx", "CX"), ("cz", "CZ"), ("measured", "measured")),

@@ -19,7 +19,7 @@ from revsynth.lowering.scratch import check_budget
 from revsynth.lowering.sharing import order_units
 from revsynth.lowering.variants import cheapest
 from revsynth.options import Aim, GateSet, Oracle, Uncompute
-from revsynth.synthesis.interface import Block
+from revsynth.synthesis.interface import Block, known_lines
 
 SEEN_BITS = 1 << 16
 """Every measurement has a bit of its own up to this many; after that, bits are used again in turn."""
@@ -54,23 +54,10 @@ def lower(
     style = Style(gates, uncompute, aim)
     once = gates == "clifford+t" or aim != "gates"
     units = gather_units(lines, block.cascade) if once else units_of(block.cascade)
-    steps = steps_of(order_units(units, lines), lines, _known(block, oracle))
+    steps = steps_of(order_units(units, lines), lines, known_lines(block, oracle))
     best = cheapest(steps, lines, max_qubits, style)
     written = cancel_neighbours(expand(best.gates, style), lines + best.scratch)
     return _circuit(written, registers, block.work + best.scratch, best.minus)
-
-
-def _known(block: Block, oracle: Oracle) -> dict[int, int]:
-    """Lines that the oracle form promises to start in 0 (or, preset, in 1)."""
-    lines = block.cascade.lines
-    outputs = range(block.inputs, block.inputs + block.outputs)
-    keep = range(outputs.stop, outputs.stop + block.keep)
-    known = dict.fromkeys(range(lines - block.work, lines), 0)
-    if oracle in ("fresh", "compute"):
-        known |= dict.fromkeys((*outputs, *keep), 0)
-    if block.placement is not None:
-        known |= dict(block.placement.preset)
-    return known
 
 
 def _add_registers(builder: CircuitBuilder, registers: Sequence[tuple[str, int]], work: int) -> None:

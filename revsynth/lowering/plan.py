@@ -13,6 +13,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import NamedTuple
 
+from revsynth.cascade.line_values import LineValues
 from revsynth.circuit.model import Kind
 from revsynth.lowering.constructions import Choice, Style
 from revsynth.lowering.draft import Draft, Template, Tip
@@ -20,7 +21,6 @@ from revsynth.lowering.fan_out import Unit
 from revsynth.lowering.fold import Shape
 from revsynth.lowering.scratch import Demand
 from revsynth.lowering.sharing import arrange
-from revsynth.lowering.zero_lines import LineValues
 
 
 def _one(kind: Kind, qubits: int) -> Template:

@@ -77,6 +77,19 @@ class Block:
             raise ValueError(f"{self.method}: the roles do not add up to {self.cascade.lines} lines")
 
 
+def known_lines(block: Block, oracle: Oracle) -> dict[Line, int]:
+    """The lines that the oracle form promises to start in 0 (or, preset, in 1), with that value."""
+    lines = block.cascade.lines
+    outputs = range(block.inputs, block.inputs + block.outputs)
+    keep = range(outputs.stop, outputs.stop + block.keep)
+    known = dict.fromkeys(range(lines - block.work, lines), 0)
+    if oracle in ("fresh", "compute"):
+        known |= dict.fromkeys((*outputs, *keep), 0)
+    if block.placement is not None:
+        known |= dict(block.placement.preset)
+    return known
+
+
 class Method(Protocol):
     """One way of synthesis."""
 

@@ -42,7 +42,7 @@ class LineValues:
 
     def apply(self, controls: Sequence[int], targets: Sequence[int]) -> None:
         """XOR the product of the control literals into every target."""
-        product = self._product(controls)
+        product = self.product(controls)
         for target in targets:
             value = self.values[target] ^ product
             self.values[target] = value if len(value) <= LONGEST else self._atom()
@@ -51,7 +51,8 @@ class LineValues:
         self.next_atom += 1
         return frozenset((self.next_atom - 1,))
 
-    def _product(self, controls: Sequence[int]) -> Value:
+    def product(self, controls: Sequence[int]) -> Value:
+        """The value of the AND of the control literals now; the empty product is 1."""
         factors = {self.values[c >> 1] ^ (ONE if c & 1 else ZERO) for c in controls} - {ONE}
         if any(not factor or factor ^ ONE in factors for factor in factors):
             return ZERO

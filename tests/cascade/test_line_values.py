@@ -5,9 +5,8 @@ from __future__ import annotations
 from hypothesis import given
 from hypothesis import strategies as st
 
-from revsynth.cascade import Cascade, Gate
-from revsynth.lowering import zero_lines
-from revsynth.lowering.zero_lines import LineValues
+from revsynth.cascade import Cascade, Gate, line_values
+from revsynth.cascade.line_values import LineValues
 from tests.slow_simulator import run_cascade
 from tests.strategies import cascades
 
@@ -56,7 +55,7 @@ def test_constants_are_followed():
 
 
 def test_long_values_are_forgotten_not_guessed(monkeypatch):
-    monkeypatch.setattr(zero_lines, "LONGEST", 2)
+    monkeypatch.setattr(line_values, "LONGEST", 2)
     adds = [Gate(4, (2 * line,)) for line in range(4)]
     assert zeros_after(5, adds * 2, {4: 0}) == []
     assert zeros_after(5, adds[:2] * 2, {4: 0}) == [4]
