@@ -14,19 +14,21 @@ from revsynth.errors import BudgetError
 from revsynth.logic.annealing import anneal
 from revsynth.logic.completion import complete
 from revsynth.logic.cube_codes import CodeSpace, decode, encode, fits
-from revsynth.logic.cubes import ExclusiveSum
+from revsynth.logic.cubes import Cube, ExclusiveSum
 from revsynth.logic.decomposition import decompose
 from revsynth.logic.four_inputs import INPUTS as LEAF_INPUTS
+from revsynth.logic.four_inputs import five_input_cubes
 from revsynth.logic.free_cubes import FreeCubes
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import best_polarity, count_by_size
 from revsynth.logic.pair_rewriting import rewrite
 from revsynth.logic.random_words import Random
-from revsynth.logic.truth_table import Columns
+from revsynth.logic.truth_table import Columns, last_word_mask
 from revsynth.options import Effort
 
 _STEPS: dict[Effort, int] = {"low": 60, "normal": 220, "high": 400}
 _MOVES: dict[Effort, int] = {"low": 60_000, "normal": 300_000, "high": 3_000_000}
+_MOVES_A_CUBE = 40_000
 _ORDERS: dict[Effort, int] = {"low": 6, "normal": 24, "high": 120}
 
 WALKED_CUBES = 96
@@ -51,10 +53,20 @@ def minimise(
     if not fits(function.inputs, function.outputs):
         raise ValueError(f"{function.inputs} inputs and {function.outputs} outputs are too many for one sum")
     columns = complete(function, prices)
-    best = starting_sum(columns, function.inputs, prices, effort=effort, seed=seed)
-    if function.inputs <= LEAF_INPUTS and function.outputs <= 1:
-        return best  # already exact
+    if function.inputs <= LEAF_INPUTS and function.outputs == 1:
+        return starting_sum(columns, function.inputs, prices, effort="low")  # exact already
+    if function.inputs == LEAF_INPUTS + 1 and function.outputs == 1:
+        best = _five_inputs(columns, prices)
+        if np.all(function.care == last_word_mask(function.inputs)):
+            return best
+    else:
+        best = starting_sum(columns, function.inputs, prices, effort=effort, seed=seed)
     return shorten(best, prices, care=function.care, effort=effort, seed=seed)
+
+
+def _five_inputs(columns: Columns, prices: Sequence[int]) -> ExclusiveSum:
+    cubes = five_input_cubes(int(columns[0, 0]), tuple(prices))
+    return ExclusiveSum.of(5, 1, [Cube(care, value) for care, value in cubes]).in_order()
 
 
 def shorten(
@@ -75,7 +87,7 @@ def shorten(
         cubes = rewrite(cubes, prices, steps=_STEPS[effort], seed=seed, free=free)
         if effort != "high" or len(cubes) <= 3:
             return cubes
-    moves = _MOVES[effort]
+    moves = min(_MOVES[effort], _MOVES_A_CUBE * len(cubes))
     heat = 0.2 if moves > 5000 * len(cubes) else (0.12 if moves > 1500 * len(cubes) else 0.05)
     if free is None:
         return anneal(cubes, prices, moves=moves, heat=heat, seed=seed)
@@ -130,9 +142,6 @@ def _orders(inputs: int, effort: Effort, seed: int) -> Iterator[tuple[int, ...]]
     if inputs <= 3:
         return
     wanted = max(1, min(_ORDERS[effort], (_ORDERS[effort] << 12) // 3 ** min(inputs - 4, 16)))
-    if inputs == 5:
-        yield from (natural[i:] + natural[:i] for i in range(1, 5))
-        return
     if wanted > 1:
         yield natural[::-1]
     random = Random(seed)

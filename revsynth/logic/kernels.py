@@ -251,10 +251,13 @@ def anneal(codes, masks, table, state, inputs, prices, moves, heat, seed, best_c
     best_codes[:size] = codes[:size]
     best_masks[:size] = masks[:size]
     since = 0
+    idle = 0
     for move in range(moves):
-        if state[0] < 2:
+        # A sum without partners, as of a regular function, is found out soon.
+        if state[0] < 2 or idle > 50 * state[0] + 1000:
             break
         since += 1
+        idle += 1
         if state[1] < best and (since >= state[0] or move == moves - 1):
             best, size, since = state[1], state[0], 0
             best_codes[:size] = codes[:size]
@@ -283,6 +286,7 @@ def anneal(codes, masks, table, state, inputs, prices, moves, heat, seed, best_c
             chance = (random_word(seed) >> np.uint64(11)) / 9007199254740992.0
             if warm <= 0.0 or chance >= np.exp(-delta / warm):
                 continue
+        idle = 0
         remove(max(a, b), codes, masks, table, state, inputs, prices)
         remove(min(a, b), codes, masks, table, state, inputs, prices)
         for k in range(distance):

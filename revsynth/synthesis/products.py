@@ -101,6 +101,8 @@ def output_groups(function: Function) -> list[Function]:
 
 def _cheapest_t(part: Function, short: ExclusiveSum, prices: Sequence[int], task: Task) -> ExclusiveSum:
     """From the sum of few cubes, and, where the work is small or wanted, from a start of its own."""
+    if part.inputs <= 5 and part.outputs == 1:
+        return minimise(part, prices, effort=task.effort, seed=task.seed)
     found = [shorten(short, prices, care=part.care, effort=task.effort, seed=task.seed)]
     if part.inputs <= 6 or task.effort == "high":
         found.append(minimise(part, prices, effort=task.effort, seed=task.seed))

@@ -22,9 +22,7 @@ def function_of(inputs: int, values: list[list[int]], care: list[list[int]] | No
     """A function from tables of values and of what is fixed; the domain is every input."""
     care = [[1] * (1 << inputs) for _ in values] if care is None else care
     fixed = [[v & c for v, c in zip(row, mask, strict=True)] for row, mask in zip(values, care, strict=True)]
-    return Function(
-        inputs, len(values), columns_of(inputs, fixed), columns_of(inputs, care), ones(inputs)
-    )
+    return Function(inputs, len(values), columns_of(inputs, fixed), columns_of(inputs, care), ones(inputs))
 
 
 def from_rule(inputs: int, rule: Callable[[np.ndarray], np.ndarray]) -> Function:
@@ -73,7 +71,9 @@ def functions(draw: st.DrawFn, max_inputs: int = 6, max_outputs: int = 3) -> Fun
     outputs = draw(st.integers(0, max_outputs))
     size = 1 << inputs
     numbers = [draw(st.integers(0, (1 << size) - 1)) for _ in range(outputs)]
-    masks = [draw(st.one_of(st.just((1 << size) - 1), st.integers(0, (1 << size) - 1))) for _ in range(outputs)]
+    masks = [
+        draw(st.one_of(st.just((1 << size) - 1), st.integers(0, (1 << size) - 1))) for _ in range(outputs)
+    ]
     rows = [[[n >> x & 1 for x in range(size)] for n in group] for group in (numbers, masks)]
     return function_of(inputs, rows[0], rows[1])
 

@@ -37,7 +37,17 @@ def aes_s_box() -> list[int]:
     inverse = [0] + [next(b for b in range(256) if multiply(a, b) == 1) for a in range(1, 256)]
     return [
         sum(
-            ((b >> i ^ b >> (i + 4) % 8 ^ b >> (i + 5) % 8 ^ b >> (i + 6) % 8 ^ b >> (i + 7) % 8 ^ 0x63 >> i) & 1)
+            (
+                (
+                    b >> i
+                    ^ b >> (i + 4) % 8
+                    ^ b >> (i + 5) % 8
+                    ^ b >> (i + 6) % 8
+                    ^ b >> (i + 7) % 8
+                    ^ 0x63 >> i
+                )
+                & 1
+            )
             << i
             for i in range(8)
         )
@@ -118,7 +128,7 @@ def test_one_bit_words_and_arrays_have_plain_names() -> None:
 
 
 def test_the_present_s_box() -> None:
-    """Four ANDs are needed (published multiplicative complexity 4), and the bound by independent outputs says so."""
+    """Published: four ANDs are needed; the bound by independent outputs says so."""
     found = permutation(PRESENT)
     assert found.bijective is True
     assert found.degree == 3
@@ -130,7 +140,7 @@ def test_the_present_s_box() -> None:
 
 
 def test_the_aes_s_box() -> None:
-    """FIPS 197: S(0x53) = 0xed. Degree 7, no fixed point, cycles of 2, 27, 59, 81 and 87 (from memory, computed)."""
+    """FIPS 197: S(0x53) = 0xed. Degree 7, no fixed point, cycles of 2, 27, 59, 81, 87 (from memory)."""
     table = aes_s_box()
     assert table[0x53] == 0xED
     found = permutation(table)
@@ -196,7 +206,9 @@ def test_json_is_plain_and_complete() -> None:
 
 
 def test_an_upper_bound_of_the_degree_is_called_one() -> None:
-    found = inspect('inputs = { v = 12 }\n[domain]\nwhere = "v % 3 != 1"\n[predicate]\nwhere = "v % 5 == 2"\n')
+    found = inspect(
+        'inputs = { v = 12 }\n[domain]\nwhere = "v % 3 != 1"\n[predicate]\nwhere = "v % 5 == 2"\n'
+    )
     assert not found.facts[0].degree_exact
     assert f"at most {found.degree}, with free values chosen well" in describe(found)
     assert found.bound is not None

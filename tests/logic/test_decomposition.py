@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 
 from revsynth.logic import decomposition
 from revsynth.logic.decomposition import decompose
-from revsynth.logic.four_inputs import CUBES, FourInputSums, four_input_sums
+from revsynth.logic.four_inputs import CUBES, FourInputSums, five_input_cubes, four_input_sums
 from tests.logic.tables import columns_of, from_rule, random_column, tables
 
 
@@ -87,6 +87,23 @@ def test_three_inputs_are_exact() -> None:
         found = decompose(column, 3, [1, 1, 1, 1])
         assert found is not None
         assert len(found) == count
+
+
+@given(st.integers(0, (1 << 32) - 1))
+def test_five_inputs_are_the_function(function: int) -> None:
+    for prices in ((1, 1, 1, 1, 1, 1), (3, 5, 90, 200, 310, 420)):
+        cubes = five_input_cubes(function, prices)
+        assert [sum(x & care == value for care, value in cubes) % 2 for x in range(32)] == [
+            function >> x & 1 for x in range(32)
+        ]
+
+
+def test_five_inputs_take_the_published_mean() -> None:
+    """About 6.2 cubes on average (from memory), at most 9 (T. Sasao, 1990s, from memory)."""
+    seeds = np.random.Generator(np.random.PCG64(1)).integers(0, 1 << 32, size=300)
+    counts = [len(five_input_cubes(int(f), (1, 1, 1, 1, 1, 1))) for f in seeds]
+    assert 6.0 < sum(counts) / len(counts) < 6.35
+    assert max(counts) <= 9
 
 
 def test_equal_cubes_of_several_outputs_are_one_cube() -> None:

@@ -79,7 +79,9 @@ def test_small_functions_get_the_fewest_cubes_there_are(inputs: int) -> None:
         function = function_of(inputs, [[number >> x & 1 for x in range(1 << inputs)]])
         assert len(minimise(function, cube_prices(inputs))) == count
         minterms = ExclusiveSum.of(
-            inputs, 1, [((1 << inputs) - 1, x, 1) for x in range(1 << inputs) if number >> x & 1]  # type: ignore[misc]
+            inputs,
+            1,
+            [((1 << inputs) - 1, x, 1) for x in range(1 << inputs) if number >> x & 1],  # type: ignore[misc]
         )
         rewritten += len(shorten(minterms, cube_prices(inputs), effort="low")) - count
     assert rewritten == 0
@@ -129,7 +131,9 @@ def test_everything_free_takes_no_cube() -> None:
 
 def test_the_same_seed_gives_the_same_sum() -> None:
     function = random_function(7, seed=1, outputs=2, free=0.2)
-    assert list(minimise(function, cube_prices(7), seed=3)) == list(minimise(function, cube_prices(7), seed=3))
+    assert list(minimise(function, cube_prices(7), seed=3)) == list(
+        minimise(function, cube_prices(7), seed=3)
+    )
 
 
 def test_too_many_outputs_for_one_sum() -> None:
@@ -144,8 +148,9 @@ def test_sums_that_would_be_too_long_are_refused(monkeypatch: pytest.MonkeyPatch
         starting_sum(random_function(8, seed=1).values, 8, cube_prices(8))
 
 
-# Recorded figures: mean cubes of 20 random functions (seeds 0-19), which may fall and never rise. Exact sums have 3.66
-# cubes on average for n = 4 (Sasao, Besslich, IEEE Trans. Computers 39(2), 1990) and about 6.2 for n = 5 (from memory).
+# Recorded figures: mean cubes of 20 random functions (seeds 0-19), which may fall and never rise. Exact sums
+# have 3.66 cubes on average over all functions of n = 4 (Sasao, Besslich, IEEE Trans. Computers 39(2), 1990)
+# and about 6.2 for n = 5 (from memory).
 RECORDED = {4: 3.85, 5: 6.35, 6: 10.35, 7: 18.65, 8: 34.75}
 
 
@@ -179,9 +184,7 @@ def test_rewriting_shortens_fixed_polarity_forms_to_less_than_half() -> None:
     before, after = 0, 0
     for seed in range(5):
         values = random_function(8, seed).values
-        least = min(
-            (int(count_by_size(fixed_polarity(values, 8, p), 8).sum()), p) for p in range(0, 256, 5)
-        )
+        least = min((int(count_by_size(fixed_polarity(values, 8, p), 8).sum()), p) for p in range(0, 256, 5))
         start = ExclusiveSum.from_coefficients(fixed_polarity(values, 8, least[1]), 8, least[1])
         before += len(start)
         after += len(shorten(start, cube_prices(8)))

@@ -107,8 +107,8 @@ def test_turning_needs_a_contiguous_array() -> None:
         turn_variable(np.zeros((4, 4), dtype=np.uint64)[:, ::2], 6)
 
 
-# Facts of the trade (common practice): majority of three is ab + ac + bc; the degree of parity is 1; a function has
-# full degree exactly when it has an odd number of ones; a product of all n inputs has degree n.
+# Facts of the trade (common practice): majority of three is ab + ac + bc; the degree of parity is 1; a function
+# has full degree exactly when it has an odd number of ones; a product of all n inputs has degree n.
 
 
 def test_majority_of_three() -> None:
@@ -153,7 +153,7 @@ def test_essential_inputs_are_those_that_change_the_value(case: tuple[int, list[
 
 @pytest.mark.parametrize("inputs", [1, 2, 4, 6])
 def test_sympy_has_the_same_coefficients(inputs: int) -> None:
-    """SymPy (sympy.logic.boolalg.anf_coeffs) counts its variables from the most significant bit of the row."""
+    """SymPy (sympy.logic.boolalg.anf_coeffs): coefficients in the order of the table's rows."""
     from sympy.logic.boolalg import anf_coeffs
 
     table = unpack(random_column(inputs, seed=40 + inputs), inputs).tolist()
@@ -164,7 +164,7 @@ def test_sympy_has_the_same_coefficients(inputs: int) -> None:
 def test_sympy_reads_our_normal_form_as_the_same_function() -> None:
     """SymPy (ANFform) from the truth table, with the variables named from the most significant bit on."""
     from sympy import symbols
-    from sympy.logic.boolalg import ANFform, And, Xor, true
+    from sympy.logic.boolalg import And, ANFform, Xor, true
 
     names = symbols("x4 x3 x2 x1 x0")
     table = unpack(random_column(5, seed=5), 5).tolist()

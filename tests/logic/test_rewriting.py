@@ -67,9 +67,7 @@ def test_the_table_of_free_cubes_is_right(function: Function) -> None:
     n = function.inputs
     table = FreeCubes(function.care, n)
     care = [unpack(row, n) for row in function.care]
-    every = [
-        Cube(mask, value, 1) for mask in range(1 << n) for value in range(1 << n) if value & ~mask == 0
-    ]
+    every = [Cube(mask, value, 1) for mask in range(1 << n) for value in range(1 << n) if value & ~mask == 0]
     masks = table.outputs(encode(ExclusiveSum.of(n, 1, every)))
     for cube, mask in zip(every, masks.tolist(), strict=True):
         inside = [x for x in range(1 << n) if x & cube.care == cube.value]

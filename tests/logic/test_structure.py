@@ -155,7 +155,7 @@ def test_swap_invariance_of_long_columns(i: int, j: int, negated: bool) -> None:
 
 
 def test_groups_of_known_functions() -> None:
-    """Majority and weights are symmetric in all inputs; a sum in the bits of equal place (common practice)."""
+    """A majority is symmetric in all inputs, a sum in the bits of equal place (common practice)."""
     majority = from_rule(7, lambda x: np.bitwise_count(x) >= 4).values
     assert symmetric_groups(majority, 7) == [[(i, False) for i in range(7)]]
     total = from_rule(8, lambda x: (x & 15) + (x >> 4) == 9).values
