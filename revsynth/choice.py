@@ -15,7 +15,7 @@ from revsynth.cascade.model import Cascade
 from revsynth.cascade.price import cascade_t
 from revsynth.circuit.cost import Cost, measure
 from revsynth.circuit.model import Circuit
-from revsynth.options import Aim, BuildOptions, GateSet
+from revsynth.options import Aim, BuildOptions
 from revsynth.synthesis.interface import Block
 
 
@@ -84,17 +84,32 @@ def estimate(block: Block, options: BuildOptions) -> tuple[int, ...]:
     return keys[options.aim]
 
 
+def hopeless(block: Block, candidates: list[Candidate], options: BuildOptions) -> bool:
+    """Whether lowering the block cannot pay: its estimate in T is over twice what is at hand.
+
+    Sharing products saves a third of the estimate at most on what was measured, so half is a safe margin.
+    """
+    if options.aim != "t":
+        return False
+    t = cascade_t(block.cascade, options.uncompute)
+    return all(t > 2 * _t(candidate, options) + 20 for candidate in candidates)
+
+
 def cheapest(candidates: list[Candidate], options: BuildOptions) -> Candidate:
     """The first of the cheapest for the aim."""
-    return min(candidates, key=lambda candidate: _key(candidate, options.aim, options.gates, options))
+    return min(candidates, key=lambda candidate: _key(candidate, options))
 
 
-def _key(candidate: Candidate, aim: Aim, gates: GateSet, options: BuildOptions) -> tuple[int, ...]:
+def _t(candidate: Candidate, options: BuildOptions) -> int:
+    """T gates, those that Toffolis and whole cascade gates will take included."""
+    if options.gates == "cascade":
+        return cascade_t(candidate.block.cascade, options.uncompute)
+    return candidate.cost.t + candidate.cost.toffoli * (4 if options.uncompute == "measured" else 7)
+
+
+def _key(candidate: Candidate, options: BuildOptions) -> tuple[int, ...]:
     cost = candidate.cost
-    if gates == "cascade":
-        t = cascade_t(candidate.block.cascade, options.uncompute)
-    else:
-        t = cost.t + 4 * cost.toffoli
+    t = _t(candidate, options)
     two_qubit = cost.cx + cost.cz
     keys: dict[Aim, tuple[int, ...]] = {
         "t": (t, cost.qubits, two_qubit, cost.gates, cost.depth),
@@ -102,7 +117,7 @@ def _key(candidate: Candidate, aim: Aim, gates: GateSet, options: BuildOptions) 
         "depth": (cost.depth, t, cost.qubits, two_qubit, cost.gates),
         "gates": (cost.gates, t, cost.qubits, two_qubit, cost.depth),
     }
-    return keys[aim]
+    return keys[options.aim]
 
 
 def within(candidate: Candidate, options: BuildOptions) -> str | None:

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from typing import Literal
 
 from revsynth.cascade.price import cascade_t
-from revsynth.choice import Candidate, Trial, and_count, cheapest, estimate, within
+from revsynth.choice import Candidate, Trial, and_count, cheapest, estimate, hopeless, within
 from revsynth.circuit.model import Circuit
 from revsynth.errors import BudgetError, UndecidedError, UsageError
 from revsynth.header import header_lines
@@ -218,7 +218,7 @@ def _lower_the_cheapest(
     candidates: list[Candidate] = []
     misses: list[str] = []
     for block in ranked:
-        if candidates and len(block.cascade) > LARGE:
+        if candidates and (len(block.cascade) > LARGE or hopeless(block, candidates, options)):
             tried.append(Trial(block.method, t=cascade_t(block.cascade, options.uncompute), estimated=True))
             continue
         progress(f"{block.method}: lowering {len(block.cascade)} gates")
