@@ -171,11 +171,11 @@ def gain_of(code, mask, a, b, codes, masks, table, inputs, prices):  # type: ign
 
 @njit(cache=True)
 def partner_two(a, codes, masks, table, inputs, seed):  # type: ignore[no-untyped-def]  # pragma: no cover
-    """A cube at distance 2 from cube a (the outputs count as one place), from a random start; -1 for none."""
+    """A cube at distance 2 from cube a, from a random start, of at most 96 pairs of places; -1 for none."""
     code = codes[a]
     pairs = inputs * (inputs + 1) // 2
     start = random_below(seed, pairs)
-    for offset in range(pairs):
+    for offset in range(min(pairs, 96)):
         at = (start + offset) % pairs
         i = np.int64(0)
         while at >= inputs - i:

@@ -107,8 +107,8 @@ def test_turning_needs_a_contiguous_array() -> None:
         turn_variable(np.zeros((4, 4), dtype=np.uint64)[:, ::2], 6)
 
 
-# Facts of the trade (common practice): majority of three is ab + ac + bc; the degree of parity is 1; a function
-# has full degree exactly when it has an odd number of ones; a product of all n inputs has degree n.
+# Facts of the trade (common practice): majority of three is ab + ac + bc; the degree of parity is 1; a
+# function has full degree exactly when it has an odd number of ones; a product of all n inputs has degree n.
 
 
 def test_majority_of_three() -> None:
