@@ -32,22 +32,20 @@ class Change(NamedTuple):
 
 
 class Rewriter:
-    """The rules under one setting. Answers are kept in `known`: a search meets the same few gates again."""
+    """The rules under one setting. Answers are kept in `known`: a search meets the same few gates again.
+
+    may_turn: whether controls may become negative.
+    """
 
     def __init__(self, controls: Controls, uncompute: Uncompute) -> None:
-        self.controls = controls
         self.uncompute = uncompute
+        self.may_turn = controls == "mixed"
         self.known: dict[Masked, tuple[Change, ...]] = {}
 
-    @property
-    def may_turn(self) -> bool:
-        """Whether controls may become negative."""
-        return self.controls == "mixed"
-
     def changes(self, gates: Masked) -> tuple[Change, ...]:
-        """All that the rules of this size make of the gates, the cheapest first.
+        """All that the rules of this size make of the gates, the cheapest first, of either polarity.
 
-        Nothing with more gates or more T; with `positive` controls, nothing with more negative ones.
+        Nothing with more gates or more T.
         """
         found = self.known.get(gates)
         if found is None:
@@ -59,24 +57,26 @@ class Rewriter:
     def improvement(self, gates: Masked) -> Masked | None:
         """The cheapest that one rule makes of the gates, or None where no rule makes them cheaper."""
         for change in self.changes(gates):
-            if change.cheaper or change.literals < 0:
+            if (change.cheaper or change.literals < 0) and self.allows(change.gates, gates):
                 return change.gates
         return None
+
+    def allows(self, after: Masked, before: Masked) -> bool:
+        """Whether controls that wait for 0 are allowed, or no more of them than before."""
+        return self.may_turn or negatives(after) <= negatives(before)
 
     def _changes(self, gates: Masked) -> tuple[Change, ...]:
         results = dict.fromkeys(after for rewrite in _REWRITES[len(gates)] for after in rewrite(gates))
         if not results:
             return ()
         before = weigh(gates, self.uncompute)
-        limit = negatives(gates)
         found: list[tuple[Weight, Change]] = []
         for after in results:
             weight = weigh(after, self.uncompute)
             if weight.gates > before.gates or weight.t > before.t or after == gates:
                 continue
-            if self.may_turn or negatives(after) <= limit:
-                literals = weight.literals - before.literals
-                found.append((weight, Change(after, weight[:2] != before[:2], literals)))
+            literals = weight.literals - before.literals
+            found.append((weight, Change(after, weight[:2] != before[:2], literals)))
         found.sort(key=itemgetter(0))
         return tuple(change for _, change in found)
 

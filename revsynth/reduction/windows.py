@@ -8,9 +8,10 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from heapq import heappop, heappush
 from itertools import combinations
 
-from revsynth.reduction.masks import Masked, Masks, apart, commute
+from revsynth.reduction.masks import Masked, Masks, apart, commute, negatives
 from revsynth.reduction.reel import Reel
 from revsynth.reduction.rewriting import SIZES, Rewriter
 from revsynth.reduction.rules import MOST_APART
@@ -104,12 +105,16 @@ def cheaper_form(window: Masked, forms: int, rewriter: Rewriter) -> Masked | Non
 
 
 def _cheaper_sequence(window: Masked, forms: int, rewriter: Rewriter) -> Masked | None:
-    """Of two changes that do not touch, only the left one is tried first: both orders end in one form."""
-    seen = {window: (0, 0)}
-    queue = [window]
+    """Of two changes that do not touch, only the left one is tried first: both orders end in one form.
+
+    Where negative controls are not allowed the way may still lead through them: forms with fewest come first.
+    """
+    seen = {window: (0, 0, False)}
+    queue = [(0, 0, window)]
     known = rewriter.known.get
-    for form in queue:
-        extra, place = seen[form]
+    while queue:
+        _, _, form = heappop(queue)
+        extra, place, gained = seen[form]
         for size in SIZES:
             for index in range(max(place - size + 1, 0), len(form) - size + 1):
                 part = form[index : index + size]
@@ -118,13 +123,15 @@ def _cheaper_sequence(window: Masked, forms: int, rewriter: Rewriter) -> Masked 
                     found = rewriter.changes(part)
                 for gates, cheaper, literals in found:
                     literals += extra
+                    cheaper = cheaper or gained
                     after = form[:index] + gates + form[index + size :]
-                    if cheaper or literals < 0:
+                    if (cheaper or literals < 0) and rewriter.allows(after, window):
                         return after
                     if after not in seen:
-                        seen[after] = literals, index
-                        queue.append(after)
-        if len(queue) > forms:
+                        rank = 0 if rewriter.may_turn else negatives(after)
+                        heappush(queue, (rank, len(seen), after))
+                        seen[after] = literals, index, cheaper
+        if len(seen) > forms:
             return None
     return None
 
@@ -143,7 +150,7 @@ def _cheaper_sum(window: Masked, forms: int, rewriter: Rewriter) -> Masked | Non
             for gates, cheaper, literals in rewriter.changes((form[left], form[right])):
                 literals += extra
                 after = tuple(sorted(rest + gates))
-                if cheaper or literals < 0:
+                if (cheaper or literals < 0) and rewriter.allows(after, window):
                     return after
                 if after not in seen:
                     seen[after] = literals

@@ -55,16 +55,16 @@ def test_all_functions_of_three_lines() -> None:
     assert round(t, 4) <= 14.7358, f"recorded 14.7358 T, now {t:.4f}"
 
 
-def test_positive_controls_on_a_seventh_of_the_functions_of_three_lines() -> None:
+def test_positive_controls_on_every_35th_function_of_three_lines() -> None:
     """Optimum with positive controls 5.8655: Shende, Prasad, Markov, Hayes, IEEE TCAD 22(6), 2003."""
-    some = ALL[::7]
+    some = ALL[::35]
     lists = transform_many(some, directions="both", controls="published")
     reduced = [reduce(lists.cascade(index), controls="positive") for index in range(len(lists))]
     assert np.array_equal(images(reduced), some)
     assert not any(np.any(cascade.control & 1) for cascade in reduced)
     gates = float(np.mean([len(cascade) for cascade in reduced]))
     assert gates >= 5.8
-    assert round(gates, 4) <= 6.7212, f"recorded 6.7212 gates, now {gates:.4f}"
+    assert round(gates, 4) <= 6.1780, f"recorded 6.1780 gates, now {gates:.4f}"
 
 
 @pytest.mark.parametrize(
