@@ -13,7 +13,7 @@ from typing import Any, TypeAlias
 import numpy as np
 from numpy.typing import NDArray
 
-from revsynth.verification.outcome import TooLargeError
+from revsynth.verification.outcome import OutgrownError
 
 Rows: TypeAlias = NDArray[Any]
 """Shape (rows, 4) int64 for Exact, (rows,) complex128 for Floating."""
@@ -56,7 +56,7 @@ class Exact:
         """Divide by sqrt(2): count it, then cancel what all rows have in common.
 
         x / sqrt(2) = x (omega - omega**3) / 2 is in the ring where a, c have the same parity, and b, d.
-        Raises TooLargeError where a coefficient outgrows its limit.
+        Raises OutgrownError where a coefficient outgrows its limit.
         """
         halves += 1
         while halves > 0:
@@ -66,7 +66,7 @@ class Exact:
             amplitudes = np.stack(((b - d) >> 1, (a + c) >> 1, (b + d) >> 1, (c - a) >> 1), axis=1)
             halves -= 1
         if amplitudes.size and int(np.abs(amplitudes).max()) > LARGEST:
-            raise TooLargeError("amplitudes outgrow exact 64-bit arithmetic")
+            raise OutgrownError("amplitudes outgrow exact 64-bit arithmetic")
         return amplitudes, halves
 
     @staticmethod
@@ -80,7 +80,7 @@ class Exact:
         largest = int(np.abs(amplitudes).max()) if amplitudes.size else 0
         most = int(np.bincount(lane, minlength=1).max()) if lane.size else 0
         if 4 * largest * largest * most >= 1 << 62:
-            raise TooLargeError("amplitudes outgrow exact 64-bit arithmetic")
+            raise OutgrownError("amplitudes outgrow exact 64-bit arithmetic")
         a, b, c, d = amplitudes.T
         found = np.zeros((lanes, 2), dtype=np.int64)
         np.add.at(found[:, 0], lane, a * a + b * b + c * c + d * d)

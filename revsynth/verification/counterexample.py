@@ -124,8 +124,9 @@ class Teller:
     def _undefined(self, fault: Fault, chunk: Chunk) -> tuple[dict[str, Any], dict[str, Any], str]:
         names = self._list([self._name(qubit) for qubit in fault.qubits])
         if not fault.depends:
-            return {}, {}, f"{names} end in a superposition of basis states instead of a value"
-        what = f"{names}, free here," if fault.qubits else "the sign, free here,"
+            end = "ends" if len(fault.qubits) == 1 else "end"
+            return {}, {}, f"{names} {end} in a superposition of basis states instead of a value"
+        what = f"{names or 'the sign'}, free here,"
         on = {
             "outcome": "the outcomes of measurements",
             "start": "the starting value of the outputs or lent qubits",

@@ -16,7 +16,7 @@ from revsynth.verification.classical import compile_gates, run_classical
 from revsynth.verification.elementary import MEASURE, RESET, elementary, has_angles, is_classical
 from revsynth.verification.forms import Chunk, Demand
 from revsynth.verification.order import close_early
-from revsynth.verification.outcome import Final, Finals, RevealsError, TooLargeError
+from revsynth.verification.outcome import Final, Finals, OutgrownError, RevealsError, TooLargeError
 from revsynth.verification.plan import plan
 
 FEW = 8
@@ -116,10 +116,18 @@ class Engines:
         self._ordered = True
 
     def _sparse(self, chunk: Chunk) -> Part:
-        from revsynth.verification.sparse import run_sparse
-
+        """Exactly, or with complex numbers from where exact integers outgrow their words."""
         if not self._ordered:
             self._reorder()
+        try:
+            return self._simulated(chunk)
+        except OutgrownError:
+            self._exact = False
+            return self._simulated(chunk)
+
+    def _simulated(self, chunk: Chunk) -> Part:
+        from revsynth.verification.sparse import run_sparse
+
         accuracy = "in exact integers" if self._exact else "to 1e-9"
         self.name = f"sparse simulation of basis states, amplitudes {accuracy}"
         try:

@@ -69,6 +69,10 @@ class TooLargeError(Exception):
     """An engine would need more than its limits allow; the text says what."""
 
 
+class OutgrownError(TooLargeError):
+    """Exact amplitudes outgrow 64-bit integers; complex numbers may still do."""
+
+
 def holds(condition: Condition, bits: Sequence[int]) -> bool:
     """Whether all guards of a condition hold for the classical bits."""
     for literals, expected in condition:

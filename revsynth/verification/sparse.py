@@ -41,9 +41,7 @@ class _Run:
     angle: float = 0.0
 
 
-def run_sparse(
-    plan: Plan, start: Sequence[Column], lanes: int, *, exact: bool, most_rows: int = MOST_ROWS
-) -> Finals:
+def run_sparse(plan: Plan, start: Sequence[Column], lanes: int, *, exact: bool) -> Finals:
     """The final states of all records.
 
     start: one column a qubit over `lanes` lanes, the last one the reference input. Raises TooLargeError at
@@ -69,16 +67,16 @@ def run_sparse(
         runs = after
         if len(runs) > 1 and index in plan.live:
             runs = _merge(runs, plan.live[index], arithmetic)
-        _check_limits(runs, most_rows)
+        _check_limits(runs)
     return Finals([_final(run, len(start), lanes, arithmetic) for run in runs], random)
 
 
-def _check_limits(runs: Sequence[_Run], most_rows: int) -> None:
+def _check_limits(runs: Sequence[_Run]) -> None:
     if len(runs) > MOST_RUNS:
         raise TooLargeError(f"more than {MOST_RUNS} records of measurement outcomes differ at one time")
     rows = sum(len(run.lane) for run in runs)
-    if rows > most_rows:
-        raise TooLargeError(f"more than {most_rows} basis states at one time")
+    if rows > MOST_ROWS:
+        raise TooLargeError(f"more than {MOST_ROWS} basis states at one time")
 
 
 def _keys(start: Sequence[Column], lanes: int) -> NDArray[np.uint64]:

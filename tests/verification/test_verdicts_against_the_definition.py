@@ -2,13 +2,19 @@
 
 from __future__ import annotations
 
+import contextlib
+from unittest.mock import patch
+
 import numpy as np
+import pytest
 from hypothesis import event, given
 from hypothesis import strategies as st
 
 from revsynth.circuit.model import Circuit, CircuitBuilder, Guard, Kind, Op
 from revsynth.logic.function import Function
 from revsynth.logic.truth_table import pack, words_for
+from revsynth.verification import engines
+from revsynth.verification.branches import NotUniformError
 from revsynth.verification.decide import decide
 from revsynth.verification.matching import Roles
 from tests.slow_simulator import run_circuit
@@ -124,15 +130,28 @@ def mutated(draw: st.DrawFn, circuit: Circuit) -> Circuit:
     return with_steps(circuit, [(index, change)])
 
 
-@given(st.data())
-def test_the_verdict_is_that_of_the_definition(data: st.DataObject) -> None:
+def engine(mode: str) -> contextlib.AbstractContextManager[object]:
+    """Forces an engine: the general one, its complex arithmetic, or the changed order of steps."""
+    if mode == "sparse":
+        return patch.object(engines.Engines, "_bitsliced", side_effect=NotUniformError)
+    if mode == "floating":
+        return patch.object(engines, "has_angles", return_value=True)
+    if mode == "reordered":
+        return patch.object(engines, "FEW", 0)
+    return contextlib.nullcontext()
+
+
+@pytest.mark.parametrize("mode", ["as it comes", "sparse", "floating", "reordered"])
+@given(data=st.data())
+def test_the_verdict_is_that_of_the_definition(mode: str, data: st.DataObject) -> None:
     draw = data.draw
     roles = draw(st.sampled_from(FORMS))
     circuit = draw(circuits(draw(st.booleans())))
     function = function_of(draw, circuit, roles)
     if draw(st.booleans()):
         circuit = mutated(draw, circuit)
-    decision = decide(circuit, roles, function, lambda _: None)
+    with engine(mode):
+        decision = decide(circuit, roles, function, lambda _: None)
     expected = slow_verdict(circuit, roles, function)
     event(f"{roles.oracle} {expected}")
     assert decision.holds is expected

@@ -1,9 +1,9 @@
 """Hand-written circuits of the textbooks, for the verifier to be tried on; nothing here comes from lowering.
 
 Toffoli from seven T gates: Nielsen, Chuang, "Quantum Computation and Quantum Information", 2000, figure 4.9
-(from memory; the tests check its matrix). The relative-phase Toffoli from four T: Barenco and others, Phys. Rev.
-A 52, 1995, section VI.B, in its Clifford+T form by Selinger, Phys. Rev. A 87, 2013. AND by four T and its erasure
-by measurement: Jones, Phys. Rev. A 87, 2013.
+(from memory; the tests check its matrix). The relative-phase Toffoli from four T: Barenco and others, Phys.
+Rev. A 52, 1995, section VI.B, in its Clifford+T form by Selinger, Phys. Rev. A 87, 2013. AND by four T and
+its erasure by measurement: Jones, Phys. Rev. A 87, 2013.
 """
 
 from __future__ import annotations
