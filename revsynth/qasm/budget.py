@@ -6,7 +6,7 @@ from revsynth.qasm.lexer import Source
 
 MAX_QUBITS = 1 << 20
 """Qubits of a file, and bits, all registers together."""
-MAX_EXPANDED = 8_000_000
+MAX_EXPANDED = 4_000_000
 """Operations (counted with their controls) that gate definitions, powers, loops and whole registers add."""
 MAX_ITERATIONS = 200_000
 """Rounds of all loops together."""

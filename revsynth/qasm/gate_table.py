@@ -11,7 +11,7 @@ from typing import Literal
 from revsynth.errors import CircuitFileError
 from revsynth.qasm.body_check import check_body
 from revsynth.qasm.budget import Budget
-from revsynth.qasm.lexer import Source
+from revsynth.qasm.lexer import Source, shown
 from revsynth.qasm.scope import Scope, with_value
 from revsynth.qasm.standard_gates import BUILT_IN, GPHASE, PUBLISHED, all_gates, standard_gate
 from revsynth.qasm.syntax import (
@@ -79,7 +79,7 @@ class GateTable:
         """Bring the gates of a standard include file; any other file is refused."""
         if file not in PUBLISHED:
             raise self._source.error(
-                f"{file!r} is not read: only the standard 'stdgates.inc' and 'qelib1.inc' are known here",
+                f"{shown(file)} is not read: only the standard 'stdgates.inc' and 'qelib1.inc' are known",
                 position,
             )
         for gate in all_gates(self._scope.version):

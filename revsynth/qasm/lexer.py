@@ -22,6 +22,7 @@ _TOKEN = re.compile(
     r"|(?P<pragma>\#\w+)"
     r"|(?P<symbol>->|\+\+|\*\*|==|!=|<=|>=|&&|\|\||<<|>>|[-+*/%^~!&|<>=@;:,.()\[\]{}])"
 )
+_LONGEST_NAME = 100
 _BLANK = re.compile(r"[ \t\n]*")
 
 
@@ -133,6 +134,8 @@ class Lexer:
             raise self._no_token(start)
         self._end = found.end()
         kind = found.lastgroup or ""
+        if kind == "name" and self._end - start > _LONGEST_NAME:
+            raise self.source.error(f"a name of {self._end - start} characters is too long", start)
         if kind in ("int", "float") and self._end < len(self.text):
             following = self.text[self._end]
             if following == "_" or following.isalnum():

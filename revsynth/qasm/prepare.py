@@ -83,13 +83,14 @@ def _with_canonical_conditions(circuit: Circuit) -> Circuit:
         return circuit
     used = np.array([form is not None for form in forms] + [True], dtype=bool)
     if used[circuit.condition].all():
+        said = np.array([bool(form) for form in forms] + [False], dtype=bool)
         return Circuit(
             circuit.registers,
             circuit.bit_registers,
             circuit.kind,
             circuit.offset,
             circuit.operand,
-            circuit.condition,
+            np.where(said[circuit.condition], circuit.condition, np.int32(-1)),
             circuit.bit,
             circuit.angles,
             [form or () for form in forms],
@@ -186,6 +187,7 @@ _REWRITES: dict[tuple[Kind, int], Rewrite] = {
     (Kind.SX, 1): lambda op, _: _around(Kind.H, Kind.H, op, Kind.S),
     (Kind.SXDG, 1): lambda op, _: _around(Kind.H, Kind.H, op, Kind.SDG),
     (Kind.Y, 2): lambda op, _: _around(Kind.SDG, Kind.S, op, Kind.X),
+    (Kind.Y, 0): lambda op, _: _around(Kind.SDG, Kind.S, op, Kind.X),
     (Kind.Y, 1): lambda op, _: _around(Kind.SDG, Kind.S, op, Kind.X),
     (Kind.S, 1): lambda op, _: _controlled_turn(op, math.pi / 2),
     (Kind.SDG, 1): lambda op, _: _controlled_turn(op, -math.pi / 2),
