@@ -1,0 +1,67 @@
+"""One body for every method in the list: its blocks do what the task says, also when shortened."""
+
+from __future__ import annotations
+
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from revsynth.options import BuildOptions, Controls, Oracle
+from revsynth.shortening import shorten
+from revsynth.synthesis.interface import Method, Task
+from revsynth.synthesis.methods import METHODS
+from tests.synthesis.checks import check_block, from_table
+
+ORACLES: tuple[Oracle, ...] = ("phase", "bit", "fresh", "compute", "inplace", "embedded")
+
+
+@st.composite
+def tasks(draw: st.DrawFn, oracle: Oracle) -> Task:
+    """A task on at most 4 inputs, with free values, affine about half the time."""
+    inputs = draw(st.integers(1, 4))
+    outputs = 1 if oracle == "phase" else inputs if oracle == "inplace" else draw(st.integers(1, 3))
+    size, full = 1 << inputs, (1 << outputs) - 1
+    if draw(st.booleans()):
+        rows = [draw(st.integers(0, full)) for _ in range(inputs)]
+        constant = draw(st.integers(0, full))
+        values: list[int | None] = []
+        for x in range(size):
+            value = constant
+            for bit, row in enumerate(rows):
+                value ^= row * ((x >> bit) & 1)
+            values.append(value)
+    elif oracle == "inplace":
+        values = list(draw(st.permutations(range(size))))
+    else:
+        values = [draw(st.integers(0, full)) for _ in range(size)]
+    for x in draw(st.lists(st.integers(0, size - 1), max_size=4)):
+        values[x] = None
+    controls: Controls = draw(st.sampled_from(["mixed", "positive"]))
+    function = from_table(inputs, outputs, values)
+    return Task(function, oracle, controls=controls, aim=draw(st.sampled_from(["t", "gates", "qubits"])))
+
+
+@pytest.mark.parametrize("method", METHODS, ids=lambda method: method.name)
+@pytest.mark.parametrize("oracle", ORACLES)
+@given(data=st.data())
+def test_what_a_method_gives_does_what_the_task_says(
+    method: Method, oracle: Oracle, data: st.DataObject
+) -> None:
+    task = data.draw(tasks(oracle))
+    if method.unfit(task) is not None:
+        return
+    blocks = method.synthesise(task)
+    assert blocks
+    again = method.synthesise(task)
+    options = BuildOptions(controls=task.controls)
+    for block, second in zip(blocks, again, strict=True):
+        assert block.cascade == second.cascade
+        check_block(task, block)
+        check_block(task, shorten(block, oracle, options))
+
+
+@pytest.mark.parametrize("oracle", ORACLES)
+def test_some_method_serves_every_oracle(oracle: Oracle) -> None:
+    values = [2, 0, 3, 1] if oracle != "phase" else [0, 1, 1, 0]
+    task = Task(from_table(2, 1 if oracle == "phase" else 2, values), oracle)
+    assert any(method.unfit(task) is None for method in METHODS)
