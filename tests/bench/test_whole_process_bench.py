@@ -1,4 +1,4 @@
-"""Whole processes as a user waits for them: help, builds of 8 and 16 inputs, verification. Asserts no time."""
+"""Whole processes as a user waits for them: help, inspection, builds of 8 and 16 inputs. Asserts no time."""
 
 from __future__ import annotations
 
