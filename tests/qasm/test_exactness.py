@@ -93,8 +93,8 @@ def test_a_state_vector_simulator_of_general_purpose_agrees() -> None:
     state.set_Haar_random_state(3)
     before = state.get_vector()
     matrices = {
-        "x": qulacs.gate.X, "z": qulacs.gate.Z, "h": qulacs.gate.H, "s": qulacs.gate.S, "sdg": qulacs.gate.Sdag,
-        "t": qulacs.gate.T, "tdg": qulacs.gate.Tdag,
+        "x": qulacs.gate.X, "z": qulacs.gate.Z, "h": qulacs.gate.H, "s": qulacs.gate.S,
+        "sdg": qulacs.gate.Sdag, "t": qulacs.gate.T, "tdg": qulacs.gate.Tdag,
     }  # fmt: skip
     for line in text.splitlines()[4:]:
         *modifiers, gate = line.rstrip(";").split(" @ ")

@@ -3,8 +3,12 @@
 from __future__ import annotations
 
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 
+from revsynth.errors import CircuitFileError
 from revsynth.qasm import read
+from revsynth.qasm.fast_path import FastPath
 from revsynth.qasm.parser import Parser
 from tests.qasm.circuits import H2, H3
 
@@ -86,3 +90,58 @@ def test_version_2_lines(monkeypatch: pytest.MonkeyPatch) -> None:
         f"{H2}qreg a[3];\ncreg m[2];\n" + "cx a[0],a[1];\nmeasure a[0] -> m[1];\nu3(pi/2,0,-pi) a[2];\n" * 30
     )
     assert statements_parsed(text, monkeypatch) <= 4
+
+
+def outcome(text: str) -> tuple[object, ...]:
+    """What reading gives: operations and comments, or the complaint."""
+    try:
+        program = read(text)
+    except CircuitFileError as error:
+        return ("refused", str(error))
+    conditions = program.circuit.conditions
+    operations = [
+        (op[:4], conditions[op.condition] if op.condition >= 0 else (), op.bit) for op in program.circuit
+    ]
+    return (program.circuit.registers, operations, program.comments)
+
+
+LINES = [
+    *LINES_3,
+    "h a;",
+    "id a[0];",
+    "x a[3];",
+    "cx a[1], a[1];",
+    "foo a[0];",
+    "else { x a[1]; }",
+    "if (m[1]) x a[0];",
+    "/* open",
+    "close */",
+    "// note",
+    "",
+    "x",
+    "a[1];",
+    "gate f q { x q; }",
+    "f a[2];",
+    "qubit b;",
+    "x b;",
+    "x a[0]; x a[1];",
+    "if (m == 2) { x a[0]; }",
+    "m[1] = measure b;",
+    "let d = a[1:2];",
+    "h d[0];",
+    "}",
+    "barrier a;",
+    "gate rzz(t_) q, r { h q; }",
+    "rzz(1) a[0], a[1];",
+    "if (m[0]) { m[0] = measure a[1]; }",
+]
+
+
+@given(st.lists(st.sampled_from(LINES), max_size=12), st.booleans())
+def test_reading_without_the_fast_path_gives_the_same(lines: list[str], version_2: bool) -> None:
+    header = f"{H2}qreg a[3];\ncreg m[2];\n" if version_2 else f"{H3}qubit[3] a;\nbit[2] m;\n"
+    text = header + "gate mine q, r { cx q, r; h q; }\n" + "\n".join(lines)
+    fast = outcome(text)
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(FastPath, "run", lambda _: None)
+        assert outcome(text) == fast
