@@ -38,7 +38,7 @@ def anneal(
     codes, masks = np.zeros(capacity, dtype=np.uint64), np.zeros(capacity, dtype=np.uint64)
     best_codes, best_masks = np.zeros_like(codes), np.zeros_like(masks)
     table = np.zeros(1 << (2 * capacity).bit_length(), dtype=np.int64)
-    state = np.zeros(3, dtype=np.int64)
+    state = np.zeros(2, dtype=np.int64)
     weights = np.asarray(prices, dtype=np.int64)
     random = Random(seed).words(1) | np.uint64(1)
     kernels.add_all(start, cubes.feeds, codes, masks, table, state, cubes.inputs, weights, random)

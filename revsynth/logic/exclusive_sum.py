@@ -33,6 +33,8 @@ _ORDERS: dict[Effort, int] = {"low": 6, "normal": 24, "high": 120}
 
 WALKED_CUBES = 96
 """Sums of at most so many cubes are shortened without numba, which costs half a second to start."""
+SECOND_START = 2.15
+"""A fixed-polarity form at most so many times dearer than the best start is tried as well."""
 MAX_CUBES = 1 << 18
 """Longer sums are not made: a function that needs more is no case for products."""
 
@@ -54,14 +56,20 @@ def minimise(
         raise ValueError(f"{function.inputs} inputs and {function.outputs} outputs are too many for one sum")
     columns = complete(function, prices)
     if function.inputs <= LEAF_INPUTS and function.outputs == 1:
-        return starting_sum(columns, function.inputs, prices, effort="low")  # exact already
+        return starting_sums(columns, function.inputs, prices, effort="low")[0]  # exact already
     if function.inputs == LEAF_INPUTS + 1 and function.outputs == 1:
-        best = _five_inputs(columns, prices)
+        starts = [_five_inputs(columns, prices)]
         if np.all(function.care == last_word_mask(function.inputs)):
-            return best
+            return starts[0]
     else:
-        best = starting_sum(columns, function.inputs, prices, effort=effort, seed=seed)
-    return shorten(best, prices, care=function.care, effort=effort, seed=seed)
+        starts = starting_sums(columns, function.inputs, prices, effort=effort, seed=seed)
+    if len(starts) == 1 or (effort != "high" and len(starts[1]) > WALKED_CUBES):
+        return shorten(starts[0], prices, care=function.care, effort=effort, seed=seed)
+    found = [
+        shorten(start, prices, care=function.care, effort=effort, seed=seed, share=share)
+        for start, share in zip(starts, (0.7, 0.5), strict=True)
+    ]
+    return min(found, key=lambda cubes: cubes.price(prices))
 
 
 def _five_inputs(columns: Columns, prices: Sequence[int]) -> ExclusiveSum:
@@ -76,18 +84,19 @@ def shorten(
     care: Columns | None = None,
     effort: Effort = "normal",
     seed: int = 0,
+    share: float = 1.0,
 ) -> ExclusiveSum:
     """Rewrite a sum to one that is no dearer, for the same function, or wherever `care` is 1.
 
     care: shape (outputs, words); None where all values are fixed. Free values are made use of up to
-    `free_cubes.MAX_INPUTS` inputs.
+    `free_cubes.MAX_INPUTS` inputs. share: the part of the work of `effort` that is spent.
     """
     free = None if care is None else FreeCubes.of(care, cubes.inputs)
     if len(cubes) <= WALKED_CUBES:
-        cubes = rewrite(cubes, prices, steps=_STEPS[effort], seed=seed, free=free)
+        cubes = rewrite(cubes, prices, steps=int(share * _STEPS[effort]), seed=seed, free=free)
         if effort != "high" or len(cubes) <= 3:
             return cubes
-    moves = min(_MOVES[effort], _MOVES_A_CUBE * len(cubes))
+    moves = int(share * min(_MOVES[effort], _MOVES_A_CUBE * len(cubes)))
     heat = 0.2 if moves > 5000 * len(cubes) else (0.12 if moves > 1500 * len(cubes) else 0.05)
     if free is None:
         return anneal(cubes, prices, moves=moves, heat=heat, seed=seed)
@@ -98,19 +107,21 @@ def shorten(
     return cubes
 
 
-def starting_sum(
+def starting_sums(
     columns: Columns, inputs: int, prices: Sequence[int], *, effort: Effort = "normal", seed: int = 0
-) -> ExclusiveSum:
-    """The cheapest of the starting sums: best common polarity, best polarity a row, decompositions.
+) -> list[ExclusiveSum]:
+    """The cheapest of: best common polarity, best polarity a row, decompositions.
 
-    columns: values, shape (outputs, words). Raises BudgetError where each has more than MAX_CUBES.
+    A form of one polarity that is not much dearer comes second: regular functions often shorten better
+    from it. columns: values, shape (outputs, words). Raises BudgetError where each has more than MAX_CUBES.
     """
-    starts = []
+    starts: list[ExclusiveSum] = []
     polarity, coefficients = best_polarity(columns, inputs, prices)
     if int(count_by_size(coefficients, inputs).sum()) <= MAX_CUBES:
         starts.append(ExclusiveSum.from_coefficients(coefficients, inputs, polarity))
         if columns.shape[0] > 1:
             starts.append(_row_by_row(columns, inputs, prices))
+    forms = len(starts)
     for order in _orders(inputs, effort, seed):
         found = decompose(columns, inputs, prices, order)
         if found is None:
@@ -121,7 +132,11 @@ def starting_sum(
         raise BudgetError(
             f"products: the exclusive sum would have more than {MAX_CUBES} cubes: use another method"
         )
-    return min(starts, key=lambda start: start.price(prices))
+    cost = [start.price(prices) for start in starts]
+    best = cost.index(min(cost))
+    if forms and best and cost[0] <= SECOND_START * cost[best]:
+        return [starts[best], starts[0]]
+    return [starts[best]]
 
 
 def _row_by_row(columns: Columns, inputs: int, prices: Sequence[int]) -> ExclusiveSum:

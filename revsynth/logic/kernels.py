@@ -1,9 +1,11 @@
-"""Numba kernels of the pair rewriting for sums too long for the numpy walk; called by `annealing` only.
+"""Numba kernels: pair rewriting of sums too long for the numpy walk, and walking long permutations.
+
+Called by `annealing` and `permutation`, which check what goes in.
 
 A sum under rewriting is: codes (capacity,) uint64, two bits an input as in `pair_rewriting`, without outputs,
 all different; masks (capacity,) uint64, the outputs each cube feeds; table (a power of two) int64, an
-open-addressing hash table of index + 1 by code, 0 where empty; state (3,) int64: number of cubes, price of
-the sum, spare.
+open-addressing hash table of index + 1 by code, 0 where empty; state (2,) int64: number of cubes, price of
+the sum.
 """
 
 from __future__ import annotations

@@ -49,7 +49,7 @@ class Store:
         self.codes = np.zeros(32, dtype=np.uint64)
         self.masks = np.zeros(32, dtype=np.uint64)
         self.table = np.zeros(128, dtype=np.int64)
-        self.state = np.zeros(3, dtype=np.int64)
+        self.state = np.zeros(2, dtype=np.int64)
         for code, mask in zip(codes, masks, strict=True):
             kernels.insert(np.uint64(code), np.uint64(mask), *self.arrays)
 
