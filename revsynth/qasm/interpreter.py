@@ -40,6 +40,8 @@ from revsynth.qasm.syntax import (
 )
 from revsynth.qasm.template import Template
 
+_WIDEST = 4096
+
 
 @dataclass
 class _Held:
@@ -127,13 +129,8 @@ class Interpreter:
                 statement.position,
             )
         value = self.scope.number(statement.value, self.scope.constants)
-        if statement.type in ("int", "uint") and (
-            value
-            != int(
-                self.scope.angle(statement.value, self.scope.constants) if isinstance(value, float) else value
-            )
-            or (statement.type == "uint" and value < 0)
-        ):
+        broken = isinstance(value, float) and not value.is_integer()
+        if (statement.type in ("int", "uint") and broken) or (statement.type == "uint" and value < 0):
             raise self.source.error(
                 f"'{statement.name}' is declared as {statement.type}, and its value is {value!r}",
                 statement.value.position,
@@ -150,12 +147,16 @@ class Interpreter:
     def _check_width(self, statement: ConstantDeclaration, value: Number) -> None:
         assert statement.width is not None
         width = self.scope.integer(statement.width, self.scope.constants, "the width of a type")
-        if statement.type == "int" and not -(2 ** min(width - 1, 9999)) <= value < 2 ** min(
-            max(width - 1, 0), 9999
-        ):
-            raise self.source.error(f"this value does not fit int[{width}]", statement.value.position)
-        if statement.type == "uint" and value >= 2 ** min(max(width, 0), 9999):
-            raise self.source.error(f"this value does not fit uint[{width}]", statement.value.position)
+        if not 1 <= width <= _WIDEST:
+            raise self.source.error(f"a width must be 1 ... {_WIDEST}", statement.width.position)
+        bounds = {"int": (-(1 << (width - 1)), 1 << (width - 1)), "uint": (0, 1 << width)}
+        if statement.type not in bounds:
+            return
+        lowest, end = bounds[statement.type]
+        if not lowest <= value < end:
+            raise self.source.error(
+                f"this value does not fit {statement.type}[{width}]", statement.value.position
+            )
 
     def _declare_alias(self, statement: Alias) -> None:
         quantum = statement.parts[0].name in self.scope.qubits
