@@ -22,7 +22,17 @@ from revsynth.verification.branches import (
 )
 from revsynth.verification.classical import Column
 from revsynth.verification.elementary import ANGLE, FLIP, HADAMARD, MEASURE, RESET, TURN, Step
-from revsynth.verification.outcome import Final, Finals, Outcome, Record, RevealsError, holds
+from revsynth.verification.outcome import (
+    Bits,
+    Final,
+    Finals,
+    Outcome,
+    Record,
+    RevealsError,
+    holds,
+    same_bits,
+    with_bit,
+)
 from revsynth.verification.phases import chosen, constant, difference
 from revsynth.verification.plan import Plan
 
@@ -36,7 +46,7 @@ class _Run:
 
     __slots__ = ("angle", "bits", "branches", "record")
 
-    def __init__(self, branches: list[Branch], bits: list[int], angle: float, record: Record) -> None:
+    def __init__(self, branches: list[Branch], bits: Bits, angle: float, record: Record) -> None:
         self.branches = branches
         self.bits = bits
         self.angle = angle
@@ -51,7 +61,7 @@ def run_bitsliced(
     start: one column a qubit; ones: the column with 1 in every lane. Raises NotUniformError and
     CrowdedError where this engine cannot follow, RevealsError where an outcome depends on the input.
     """
-    runs = [_Run([Branch(list(start))], [0] * plan.bits, 0.0, ())]
+    runs = [_Run([Branch(list(start))], 0, 0.0, ())]
     random = False
     for index, step in enumerate(plan.steps):
         if step.condition < 0 and step.act < MEASURE:
@@ -145,8 +155,7 @@ def _with_outcome(
 ) -> _Run:
     bits = run.bits
     if step.act == MEASURE:
-        bits = list(run.bits)
-        bits[step.bit] = value
+        bits = with_bit(bits, step.bit, value)
     elif value:
         flip(branches, step.target, (), ones)
     record = run.record if certain else (*run.record, Outcome(step.source, value))
@@ -157,9 +166,8 @@ def _merge(runs: list[_Run], live: Sequence[int], ones: Column) -> list[_Run]:
     """Make runs one that agree in the bits still read and, up to a constant phase, in the state."""
     kept: list[_Run] = []
     for run in runs:
-        bits = [run.bits[bit] for bit in live]
         for other in kept:
-            if [other.bits[bit] for bit in live] == bits and _same_state(run, other, ones):
+            if same_bits(run.bits, other.bits, live) and _same_state(run, other, ones):
                 _join(other, run)
                 break
         else:

@@ -45,7 +45,7 @@ class Engines:
         self._circuit = circuit
         self._exact = not has_angles(self.steps)
         self._gates = compile_gates(self.steps) if is_classical(self.steps) else None
-        self._plan = plan(self.steps, circuit.conditions, circuit.bits)
+        self._plan = plan(self.steps, circuit.conditions)
         self._limit = FEW
         self._use_sparse = not self._exact
         self._sparse_bits = SPARSE_BITS
@@ -111,7 +111,7 @@ class Engines:
     def _reorder(self) -> None:
         circuit = self._circuit
         steps = close_early(self.steps, circuit.qubits, circuit.conditions)
-        self._plan = plan(steps, circuit.conditions, circuit.bits)
+        self._plan = plan(steps, circuit.conditions)
         self._limit = MANY
         self._ordered = True
 

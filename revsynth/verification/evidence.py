@@ -9,6 +9,10 @@ Level = Literal["exhaustive", "proved", "sampled", "none"]
 FaultKind = Literal["output", "input", "scratch", "phase", "undefined"]
 
 
+LARGEST_NUMBER = 1 << 53
+"""Integers from here on are decimal strings in JSON."""
+
+
 @dataclass(frozen=True)
 class Evidence:
     """How a verdict was reached. The level is that of the weakest link; `sampled` is not a proof."""
@@ -41,10 +45,10 @@ class Counterexample:
     def to_json(self) -> dict[str, Any]:
         """The JSON object of the contract."""
         return {
-            "inputs": self.inputs,
+            "inputs": _as_json(self.inputs),
             "kind": self.kind,
-            "expected": self.expected,
-            "got": self.got,
+            "expected": _as_json(self.expected),
+            "got": _as_json(self.got),
             "why": self.why,
         }
 
@@ -66,3 +70,14 @@ class Verdict:
             "global_phase": self.global_phase,
             "counterexample": None if self.counterexample is None else self.counterexample.to_json(),
         }
+
+
+def _as_json(value: Any) -> Any:
+    """Words as JSON takes them without loss: integers of more than 53 bits as decimal strings."""
+    if isinstance(value, dict):
+        return {name: _as_json(part) for name, part in value.items()}
+    if isinstance(value, list):
+        return [_as_json(part) for part in value]
+    if isinstance(value, int) and abs(value) >= LARGEST_NUMBER:
+        return str(value)
+    return value

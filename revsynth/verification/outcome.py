@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
-from typing import NamedTuple
+from typing import NamedTuple, TypeAlias
 
 from revsynth.circuit.model import Condition
 from revsynth.verification.classical import Column
@@ -73,12 +73,27 @@ class OutgrownError(TooLargeError):
     """Exact amplitudes outgrow 64-bit integers; complex numbers may still do."""
 
 
-def holds(condition: Condition, bits: Sequence[int]) -> bool:
+Bits: TypeAlias = int
+"""The classical bits: bit b of the integer is classical bit b, so that copies are cheap."""
+
+
+def with_bit(bits: Bits, bit: int, value: int) -> Bits:
+    """The bits after one is written."""
+    return bits | (1 << bit) if value else bits & ~(1 << bit)
+
+
+def same_bits(some: Bits, others: Bits, which: Sequence[int]) -> bool:
+    """Whether two runs agree in the given bits."""
+    different = some ^ others
+    return not different or not any(different >> bit & 1 for bit in which)
+
+
+def holds(condition: Condition, bits: Bits) -> bool:
     """Whether all guards of a condition hold for the classical bits."""
     for literals, expected in condition:
         met = True
         for literal in literals:
-            if bits[literal >> 1] == literal & 1:
+            if bits >> (literal >> 1) & 1 == literal & 1:
                 met = False
                 break
         if met != expected:

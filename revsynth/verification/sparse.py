@@ -17,7 +17,18 @@ from numpy.typing import NDArray
 from revsynth.verification.amplitudes import Exact, Floating, Rows
 from revsynth.verification.classical import Column
 from revsynth.verification.elementary import ANGLE, FLIP, HADAMARD, MEASURE, RESET, TURN, Step
-from revsynth.verification.outcome import Final, Finals, Outcome, Record, RevealsError, TooLargeError, holds
+from revsynth.verification.outcome import (
+    Bits,
+    Final,
+    Finals,
+    Outcome,
+    Record,
+    RevealsError,
+    TooLargeError,
+    holds,
+    same_bits,
+    with_bit,
+)
 from revsynth.verification.plan import Plan
 
 MOST_ROWS = 1 << 21
@@ -36,7 +47,7 @@ class _Run:
     key: NDArray[np.uint64]
     amplitude: Rows
     halves: int
-    bits: tuple[int, ...]
+    bits: Bits
     record: Record = ()
     angle: float = 0.0
 
@@ -48,9 +59,7 @@ def run_sparse(plan: Plan, start: Sequence[Column], lanes: int, *, exact: bool) 
     the limits and RevealsError where the chance of an outcome depends on the input.
     """
     arithmetic: Arithmetic = Exact if exact else Floating
-    first = _Run(
-        np.arange(lanes, dtype=np.int64), _keys(start, lanes), arithmetic.ones(lanes), 0, (0,) * plan.bits
-    )
+    first = _Run(np.arange(lanes, dtype=np.int64), _keys(start, lanes), arithmetic.ones(lanes), 0, 0)
     runs = [first]
     random = False
     for index, step in enumerate(plan.steps):
@@ -183,7 +192,7 @@ def _part(
 ) -> _Run:
     key, bits = run.key[chosen], run.bits
     if step.act == MEASURE:
-        bits = (*bits[: step.bit], outcome, *bits[step.bit + 1 :])
+        bits = with_bit(bits, step.bit, outcome)
     elif outcome:
         key[:, step.target >> 6] ^= np.uint64(1 << (step.target & 63))
     record = run.record if certain else (*run.record, Outcome(step.source, outcome))
@@ -195,8 +204,7 @@ def _merge(runs: Sequence[_Run], live: Sequence[int], arithmetic: Arithmetic) ->
     kept: list[_Run] = []
     for run in map(_in_order, runs):
         for index, other in enumerate(kept):
-            same_bits = all(run.bits[bit] == other.bits[bit] for bit in live)
-            if same_bits and _same_state(run, other, arithmetic):
+            if same_bits(run.bits, other.bits, live) and _same_state(run, other, arithmetic):
                 common = tuple(a for a, b in zip(run.record, other.record, strict=False) if a == b)
                 kept[index] = replace(other, record=common)
                 break

@@ -81,9 +81,8 @@ def _links(decision: Decision, roles: Roles, circuit: Circuit) -> list[str]:
             f"measurements: {decision.measurements}, {outcomes}, their chances the same for all inputs"
         )
     enumerated = len(decision.demand.enumerated)
-    if enumerated:
-        what = "an output" if roles.oracle == "bit" and not roles.lent else "an output or lent qubit"
-        links.append(f"starts: every value of {enumerated} qubits that are {what} was run")
+    if enumerated and decision.level == "exhaustive":
+        links.append(f"starts: {enumerated} outputs or lent qubits, all {1 << enumerated} values run")
     if decision.proven:
         links.append(
             f"starts: the circuit commutes with X on {len(decision.proven)} outputs or lent qubits, carried "

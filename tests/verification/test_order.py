@@ -57,7 +57,7 @@ def side_by_side(pairs: int) -> Circuit:
 
 
 def run(steps: list[Step], circuit: Circuit, most: int) -> None:
-    made = plan(steps, circuit.conditions, circuit.bits)
+    made = plan(steps, circuit.conditions)
     half = circuit.qubits // 2
     run_bitsliced(made, [0b01] * half + [0] * half, 0b11, most_branches=most, most_runs=most)
 
