@@ -213,9 +213,8 @@ def evaluate(
             if isinstance(error, CircuitFileError):
                 raise
             raise source.error(_reason(error), step.position) from None
-    if len(stack) != 1:
-        raise source.error("this expression is not complete", expression.position)
-    return stack[0]
+    (value,) = stack
+    return value
 
 
 def _reason(error: Exception) -> str:

@@ -129,10 +129,6 @@ class GateTable:
                 )
         self._gates[name] = gate
 
-    def known(self, name: str) -> Gate | None:
-        """The gate of that name, if any."""
-        return self._gates.get(name)
-
     def find(self, call: GateCall) -> Gate:
         """The gate of a call, the number of its parameters checked."""
         gate = self._gates.get(call.name)

@@ -115,7 +115,7 @@ class Parser:
                 return self._loop()
             if word in _REFUSED:
                 raise self.source.error(_REFUSED[word], token.position)
-            if word in _TOP_LEVEL_ONLY:
+            if word in _TOP_LEVEL_ONLY and word != "opaque":
                 raise self.source.error(
                     f"'{word}' must stand at the top level, outside blocks", token.position
                 )

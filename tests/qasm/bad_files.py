@@ -6,6 +6,12 @@ REGISTERS_3 = 'OPENQASM 3.0;\ninclude "stdgates.inc";\nqubit[3] a; qubit c; bit[
 REGISTERS_2 = 'OPENQASM 2.0;\ninclude "qelib1.inc";\nqreg a[3]; creg m[2];\n'
 
 BAD_3 = [
+    ("line 4, column 1: 'tau' is a built-in constant", "qubit tau;"),
+    ("line 4, column 10: found ';' where '=' after the bits", "opaque[0];"),
+    ("line 4, column 17: this value is too large", "const float n = 10**500;"),
+    ("line 4, column 13: this value is too large", "p(1 << 4000 << 4000) c;"),
+    ("line 4, column 17: 'm' holds bits where", "let d = a[0] ++ m[0];"),
+    ("line 4, column 10: a bit string of more than 4096 bits", f'if (m == "{"0" * 5000}") x c;'),
     ("line 4, column 1: the character '?' has no meaning here", "?"),
     ("line 4, column 4: the character '\\x00' has no meaning here", "x \t\x00c;"),
     ("line 4, column 4: the character '\\xa0' has no meaning here", "x c\xa0;"),

@@ -68,6 +68,8 @@ def test_phases_by_eighths_of_a_turn_need_clifford_and_t_alone(eighth: int, form
     builder.add_register("a", 2)
     builder.add(Kind.GPHASE, (), (), (eighth * np.pi / 4,))
     builder.add(Kind.SX, (1,))
+    if format == "plain":
+        builder.add(Kind.P, (1,), (), (eighth * np.pi / 4,))
     circuit = builder.build()
     prepared = prepare(circuit, format)
     assert close(unitary(prepared), unitary(circuit))

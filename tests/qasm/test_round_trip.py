@@ -200,6 +200,10 @@ def test_what_a_format_cannot_hold_is_refused(
 def test_conditions_that_openqasm2_cannot_say_are_refused() -> None:
     builder = small_circuit()
     builder.x(0, condition=(Guard((0,)),))
+    several = small_circuit()
+    several.x(0, condition=(Guard((0, 2, 4), False), Guard((2,))))
+    with pytest.raises(UsageError, match="operation 1 has a condition that format"):
+        prepare(several.build(), "openqasm2")
     for format in ("openqasm2", "plain"):
         with pytest.raises(UsageError, match="operation 1 has a condition that format"):
             prepare(builder.build(), format)
@@ -234,6 +238,17 @@ def test_register_names_that_readers_trip_over_are_refused(name: str, format: st
     builder.add_register("a", 1)
     with pytest.raises(UsageError, match=f"cannot have a register called '{name if name != 'a' else 'a'}'"):
         write(builder.build(), format=format)
+
+
+def test_empty_registers_are_refused() -> None:
+    builder = CircuitBuilder()
+    builder.add_register("a", 1)
+    builder.add_bits("seen", 0)
+    with pytest.raises(UsageError, match="no register of bits may be empty"):
+        write(builder.build())
+    builder.add_register("work", 0)
+    with pytest.raises(UsageError, match="no register may be empty"):
+        write(builder.build())
 
 
 def test_a_circuit_without_qubits_is_refused() -> None:

@@ -158,6 +158,8 @@ CONDITIONS = [
     ("!(m == 2 || w) && true", lambda m, w: m != 2 and w == 0),
     ("m[0] < m[1:2]", lambda m, w: (m & 1) < m >> 1),
     ("false || m[0]", lambda m, w: m & 1 == 1),
+    ("m == 4.0", lambda m, w: m == 4),
+    ("m[0] == bool(1)", lambda m, w: m & 1 == 1),
     ("m == (1 << 2) + 1", lambda m, w: m == 5),
 ]
 
