@@ -184,7 +184,12 @@ def _synthesise(
         if blocks and options.time_limit is not None and time.monotonic() - started > options.time_limit:
             return blocks, tried, True
         progress(f"{method.name}: synthesising")
-        for block in method.synthesise(task, progress):
+        try:
+            found = method.synthesise(task, progress)
+        except BudgetError as error:
+            tried.append(Trial(method.name, failed=str(error)))
+            continue
+        for block in found:
             progress(f"{block.method}: reducing {len(block.cascade)} gates")
             blocks.append(shorten(block, task.oracle, options))
             kept = keep_products(blocks[-1]) if task.oracle == "compute" else None
