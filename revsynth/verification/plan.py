@@ -9,7 +9,6 @@ from revsynth.circuit.model import Condition
 from revsynth.verification.elementary import HADAMARD, MEASURE, RESET, Step
 from revsynth.verification.order import bits_read
 
-
 MOST_LIVE = 256
 """With more bits still to be read, runs are not compared: they would hardly agree in all of them."""
 
