@@ -11,7 +11,7 @@ from typing import Any
 from revsynth.cascade.model import Cascade
 from revsynth.circuit.model import Circuit
 from revsynth.errors import BudgetError, RevsynthError, UndecidedError, UsageError
-from revsynth.files import write_whole
+from revsynth.files import is_regular, write_whole
 from revsynth.logic.truth_table import count_ones
 from revsynth.options import BuildOptions, Format, Oracle
 from revsynth.pipeline import Built, Progress
@@ -215,12 +215,14 @@ class Build:
     def write(self, path: str | Path) -> None:
         """Write the file whole or not at all; the bytes on disk are compared with what was verified.
 
-        The format `plain` also writes PATH.json with the map from registers to qubits.
+        The format `plain` also writes PATH.json with the map from registers to qubits, and for an embedded
+        block its placement, unless PATH is a device or a pipe.
         """
         data = self._built.text.encode()
-        if self._built.options.format == "plain":
-            side = json.dumps({"qubits": self.qubit_map()}, indent=2) + "\n"
-            write_whole(f"{path}.json", side.encode())
+        if self._built.options.format == "plain" and str(path) and is_regular(path):
+            placement = describe_placement(self._built.block, self._built.understanding)
+            side = {"qubits": self.qubit_map()} | ({} if placement is None else {"placement": placement})
+            write_whole(f"{path}.json", (json.dumps(side, indent=2) + "\n").encode())
         write_whole(path, data, self._compare)
 
     def _compare(self, data: bytes) -> None:

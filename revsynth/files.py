@@ -21,17 +21,29 @@ def write_whole(path: str | Path, data: bytes, check: Callable[[bytes], None] | 
     A symbolic link keeps pointing where it did: the file behind it is replaced. Raises UsageError with the
     reason where the place cannot be written; nothing is left behind then, and an old file stays as it was.
     """
-    place = Path(os.path.realpath(path))
+    if not str(path):
+        raise UsageError("the name of the file to write is empty")
     try:
-        if place.exists() and not stat.S_ISREG(place.stat().st_mode):
-            if place.is_dir():
-                raise UsageError(f"{path}: is a folder; name a file to write")
-            with place.open("wb") as stream:
-                stream.write(data)
+        if is_regular(path):
+            _write_beside(Path(os.path.realpath(path)), data, check)
             return
-        _write_beside(place, data, check)
+        if os.path.isdir(path):
+            raise UsageError(f"{path}: is a folder; name a file to write")
+        with open(path, "wb") as stream:
+            stream.write(data)
     except OSError as error:
         raise UsageError(f"{path}: cannot be written: {error.strerror or error}") from None
+
+
+def is_regular(path: str | Path) -> bool:
+    """Whether a regular file is there or would be made there: no folder, device or pipe.
+
+    Raises OSError where the place cannot be looked at.
+    """
+    try:
+        return stat.S_ISREG(os.stat(path).st_mode)
+    except FileNotFoundError:
+        return True
 
 
 def _write_beside(place: Path, data: bytes, check: Callable[[bytes], None] | None) -> None:

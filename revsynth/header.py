@@ -38,7 +38,8 @@ def canonical_options(spec: Spec, oracle: Oracle, options: BuildOptions) -> str:
 def _spec_words(spec: Spec) -> list[str]:
     """What stands for the spec on the command line: its base name, or the options that spell it out."""
     if spec.source != COMMAND_LINE or not isinstance(spec.body, Predicate) or spec.body.where is None:
-        return ["-" if spec.source == "standard input" else shlex.quote(spec.source)]
+        named = [] if spec.from_format is None else [f"--from {spec.from_format}"]
+        return ["-" if spec.source == "standard input" else shlex.quote(spec.source), *named]
     words = ["--where", shlex.quote(spec.body.where)]
     for word in spec.inputs:
         count = "" if word.count is None else f"x{word.count}"

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
+from numbers import Integral
 from typing import Literal, get_args
 
 from revsynth.errors import UsageError
@@ -55,10 +57,12 @@ class BuildOptions:
                 raise UsageError(f"{name} {value!r} is not one of {', '.join(allowed)}")
         for name in ("qubits", "t", "depth"):
             value = getattr(self, name)
-            if value is not None and value < 0:
-                raise UsageError(f"{name} {value} is negative: a budget is a number from 0 up")
-        if self.time_limit is not None and self.time_limit <= 0:
-            raise UsageError(f"time_limit {self.time_limit} must be a positive number of seconds")
+            if value is not None and not _is_count(value):
+                raise UsageError(f"{name} {value!r}: a budget is a whole number from 0 on")
+        if not _is_count(self.seed):
+            raise UsageError(f"seed {self.seed!r}: a seed is a whole number from 0 on")
+        if self.time_limit is not None and not _is_duration(self.time_limit):
+            raise UsageError(f"time limit {self.time_limit!r}: a number of seconds above 0 is wanted")
         if self.format != "openqasm3":
             if self.gates == "cascade":
                 raise UsageError(
@@ -68,5 +72,11 @@ class BuildOptions:
                 raise UsageError("uncompute 'measured' needs format 'openqasm3'")
         if self.format == "plain" and self.gates != "clifford+t":
             raise UsageError("format 'plain' holds Clifford+T gates only: use gates 'clifford+t'")
-        if self.gates == "cascade" and self.uncompute == "measured":
-            raise UsageError("gates 'cascade' has no scratch to erase: leave uncompute at 'unitary'")
+
+
+def _is_count(value: object) -> bool:
+    return isinstance(value, Integral) and not isinstance(value, bool) and int(value) >= 0
+
+
+def _is_duration(value: object) -> bool:
+    return isinstance(value, (int, float)) and not isinstance(value, bool) and 0 < value < math.inf

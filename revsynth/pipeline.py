@@ -150,7 +150,9 @@ def register_layout(understanding: Understanding, oracle: Oracle, options: Build
     outputs: list[tuple[str, int]] = []
     if oracle in ("bit", "fresh", "compute") and understanding.spec.kind == "outputs":
         outputs = [element for word in understanding.outputs for element in word.elements()]
-    names = register_names([name for name, _ in (*inputs, *outputs)], version=version)
+    names = register_names(
+        [name for name, _ in (*inputs, *outputs)], version=version, source=understanding.spec.source
+    )
     if oracle == "embedded":
         return Layout((("line", -1),), ())
     registers = [(names[name], bits) for name, bits in (*inputs, *outputs)]

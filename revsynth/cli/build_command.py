@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from revsynth.cli.common import F, clear_progress, echo_json, load_spec, progress_line, spec_options, warn
+from revsynth.one_line import one_line
 from revsynth.options import CHOICES, BuildOptions
 
 if TYPE_CHECKING:
@@ -69,7 +70,7 @@ def COMMAND(  # noqa: N802
     built = build(wanted, options=options, progress=progress_line())
     clear_progress()
     warn(built.warnings)
-    to_stdout = output in (None, "-")
+    to_stdout = output in (None, "-", "/dev/stdout")
     if output is not None and not to_stdout:
         built.write(output)
     if as_json:
@@ -83,7 +84,7 @@ def COMMAND(  # noqa: N802
 def _summary(built: Build, output: str | None) -> str:
     from revsynth.cli.tables import cost_lines
 
-    lines = [built.spec.title or built.spec.source]
+    lines = [one_line(built.spec.title or built.spec.source)]
     function = built.counts
     if function["marked"] is not None:
         lines.append(f"  marked     {function['marked']} of {function['domain']} inputs")
@@ -91,6 +92,16 @@ def _summary(built: Build, output: str | None) -> str:
     lines.extend(cost_lines(built.cost))
     evidence = built.evidence
     lines.append(f"  evidence   {evidence.level}: {evidence.detail or f'{evidence.inputs_checked} inputs'}")
+    if built.options.format == "plain":
+        lines.append(f"  in q       {_places(built.qubit_map())}")
     if output is not None:
         lines.append(f"  written    {output}")
     return "\n".join(lines)
+
+
+def _places(qubits: dict[str, list[int]]) -> str:
+    """Where each register is in the one register of the format `plain`: `a 0-3, work 4`."""
+    return ", ".join(
+        f"{name} {places[0]}" + (f"-{places[-1]}" if len(places) > 1 else "")
+        for name, places in qubits.items()
+    )

@@ -36,15 +36,24 @@ class LazyGroup(click.Group):
             formatter.write_dl(list(COMMANDS.items()))
 
 
-@click.command(cls=LazyGroup, context_settings={"help_option_names": ["-h", "--help"]})
+@click.command(
+    cls=LazyGroup,
+    invoke_without_command=True,
+    subcommand_metavar="COMMAND [ARGS]...",
+    context_settings={"help_option_names": ["-h", "--help"]},
+)
 @click.version_option(package_name="revsynth", message="%(prog)s %(version)s")
-def cli() -> None:
+@click.pass_context
+def cli(ctx: click.Context) -> None:
     """Reversible circuits from conditions and subroutines: built, counted, verified.
 
     Start with `revsynth build SPEC -o FILE`. Results go to standard output, progress and warnings to
     standard error. Exit status: 0 done, 1 the answer is no, 2 bad input or usage, 3 undecided,
     130 interrupted.
     """
+    if ctx.invoked_subcommand is None:
+        click.echo(ctx.get_help(), err=True)
+        ctx.exit(2)
 
 
 def main(arguments: list[str] | None = None) -> int:
@@ -53,26 +62,43 @@ def main(arguments: list[str] | None = None) -> int:
 
     try:
         status: Any = cli.main(args=arguments, prog_name="revsynth", standalone_mode=False)
+        sys.stdout.flush()
     except click.exceptions.Exit as stop:
         return stop.exit_code
     except click.UsageError as error:
         hint = f" (try: {error.ctx.command_path} --help)" if error.ctx else ""
-        click.echo(f"revsynth: {error.format_message()}{hint}", err=True)
+        _complain(f"{error.format_message()}{hint}")
         return 2
     except click.ClickException as error:
-        click.echo(f"revsynth: {error.format_message()}", err=True)
+        _complain(error.format_message())
         return 2
     except RevsynthError as error:
-        click.echo(f"revsynth: {error}", err=True)
+        _complain(str(error))
         return error.exit_status
     except (KeyboardInterrupt, click.Abort):
-        click.echo("revsynth: interrupted, nothing was written", err=True)
+        _complain("interrupted, nothing was written")
         return 130
     except BrokenPipeError:
         # The reader of our output has left (head, less): that is its good right.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        _give_up_output()
         return 0
+    except OSError as error:
+        _give_up_output()
+        _complain(f"{error.filename or 'standard output'}: {error.strerror or error}")
+        return 2
     return status if isinstance(status, int) else 0
+
+
+def _complain(message: str) -> None:
+    """An error is one line, whatever names and texts it quotes."""
+    from revsynth.one_line import one_line
+
+    click.echo(f"revsynth: {one_line(message)}", err=True)
+
+
+def _give_up_output() -> None:
+    """Let what is still buffered for standard output go nowhere, so that Python's exit does not try again."""
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
 
 
 def run() -> None:

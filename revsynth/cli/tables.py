@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
 
 _ROWS = (
@@ -24,12 +25,17 @@ _ROWS = (
 )
 
 
+def _counted(count: int | None, unit: str) -> str:
+    """`2 cascade gates`, `1 cascade gate`."""
+    return f"{count:,} " + (re.sub(r"s\b", "", unit, count=1) if count == 1 else unit)
+
+
 def cost_lines(cost: Mapping[str, int | None]) -> list[str]:
     """The counts in words, zeros left out except where they are the point."""
     lines = []
     for label, entries in _ROWS:
         shown = [
-            f"{cost[key]:,} {unit}"
+            _counted(cost[key], unit)
             for key, unit in entries
             if cost.get(key) is not None and (cost[key] or key in ("qubits", "t", "gates", "depth"))
         ]

@@ -12,11 +12,12 @@ from revsynth.qasm.vocabulary import OURS, RESERVED
 _ELEMENT = re.compile(r"\[([0-9]+)\]")
 
 
-def register_names(names: Sequence[str], *, version: Literal[2, 3]) -> dict[str, str]:
+def register_names(names: Sequence[str], *, version: Literal[2, 3], source: str = "") -> dict[str, str]:
     """The register for each word or array element, in the order given.
 
     `cell[0]` becomes `cell_0`; a name that either version of OpenQASM reserves gets an underscore behind it
-    (`x` becomes `x_`); for OpenQASM 2 a capital first letter gets `r_` before it.
+    (`x` becomes `x_`); for OpenQASM 2 a capital first letter gets `r_` before it. `source` names the spec in
+    messages.
 
     Raises:
         SpecError: where a word takes a name that revsynth gives a meaning (`work`, `mark`, ...), or where two
@@ -29,12 +30,14 @@ def register_names(names: Sequence[str], *, version: Literal[2, 3]) -> dict[str,
         if register in OURS:
             raise SpecError(
                 f"the word '{name}' would be the register '{register}', which revsynth keeps for itself "
-                f"({', '.join(OURS)}): rename the word"
+                f"({', '.join(OURS)}): rename the word",
+                source=source,
             )
         if register in owner:
             raise SpecError(
                 f"the words '{owner[register]}' and '{name}' would both be the register '{register}': "
-                "rename one of them"
+                "rename one of them",
+                source=source,
             )
         owner[register] = name
         registers[name] = register

@@ -14,6 +14,7 @@ from functools import lru_cache
 
 from revsynth.circuit.model import TARGETS, Circuit, Condition, Kind
 from revsynth.errors import UsageError
+from revsynth.one_line import one_line
 from revsynth.options import Format
 from revsynth.qasm.dialects import NAMES, GateNames, misfit, whole_register
 from revsynth.qasm.formula import canonical
@@ -58,10 +59,7 @@ def write(circuit: Circuit, *, format: Format = "openqasm3", header: Sequence[st
 
 def comment_line(text: str) -> str:
     """One comment line of printable characters: white space becomes blanks, what cannot be shown `?`."""
-    shown = "".join(
-        character if character.isprintable() else " " if character.isspace() else "?" for character in text
-    )
-    return f"// {shown}".rstrip()
+    return f"// {one_line(text)}".rstrip()
 
 
 def _check_registers(circuit: Circuit, format: Format) -> None:

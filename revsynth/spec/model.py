@@ -114,6 +114,8 @@ class Spec:
     constants: Mapping[str, Constant] = field(default_factory=dict)
     domain: str | None = None
     source: str = "spec"
+    from_format: str | None = None
+    """The format that `--from` named, where the name of the file does not tell it."""
     labels: Mapping[str, str] = field(default_factory=dict)
     """Names that a file gives to single bits, by ours: `{"v[0]": "lamp"}` (from a PLA's .ilb and .ob)."""
 

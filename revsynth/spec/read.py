@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import sys
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from revsynth.errors import SpecError
@@ -46,7 +46,8 @@ def read_spec(path: str, *, from_format: str | None = None) -> Spec:
     source = "standard input" if from_stdin else _one_line(Path(path).name)
     reader = _reader(path, from_format)
     text = _decode(_bytes(path), source if from_stdin else _one_line(path), reader.strict)
-    return reader.parse(text, source)
+    told_by_name = reader is READERS[0] if from_stdin else Path(path).suffix.lower() in reader.endings
+    return replace(reader.parse(text, source), from_format=None if told_by_name else reader.name)
 
 
 def _one_line(path: str) -> str:
@@ -55,6 +56,8 @@ def _one_line(path: str) -> str:
 
 
 def _reader(path: str, from_format: str | None) -> Reader:
+    if not path:
+        raise SpecError("the name of the spec file is empty ('-' is standard input)")
     if from_format is not None:
         for reader in READERS:
             if reader.name == from_format.lower():

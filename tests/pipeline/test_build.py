@@ -149,7 +149,7 @@ def test_budgets_are_kept_or_refused_in_one_line() -> None:
         ({"uncompute": "measured", "format": "plain"}, "needs format 'openqasm3'"),
         ({"gates": "toffoli", "format": "plain"}, "Clifford"),
         ({"method": "magic"}, "not one of auto"),
-        ({"qubits": -1}, "is negative"),
+        ({"qubits": -1}, "a budget is a whole number"),
         ({"colour": 1}, "colour"),
     ],
 )
