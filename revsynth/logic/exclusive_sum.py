@@ -23,7 +23,7 @@ from revsynth.logic.function import Function
 from revsynth.logic.normal_form import best_polarity, count_by_size
 from revsynth.logic.pair_rewriting import rewrite
 from revsynth.logic.random_words import Random
-from revsynth.logic.truth_table import Columns, last_word_mask
+from revsynth.logic.truth_table import Columns, count_ones, first_inputs, last_word_mask
 from revsynth.options import Effort
 
 _STEPS: dict[Effort, int] = {"low": 60, "normal": 220, "high": 400}
@@ -110,7 +110,7 @@ def shorten(
 def starting_sums(
     columns: Columns, inputs: int, prices: Sequence[int], *, effort: Effort = "normal", seed: int = 0
 ) -> list[ExclusiveSum]:
-    """The cheapest of: best common polarity, best polarity a row, decompositions.
+    """The cheapest of: best common polarity, best polarity a row, decompositions; else a cube an input.
 
     A form of one polarity that is not much dearer comes second: regular functions often shorten better
     from it. columns: values, shape (outputs, words). Raises BudgetError where each has more than MAX_CUBES.
@@ -129,14 +129,26 @@ def starting_sums(
         if len(found) <= MAX_CUBES:
             starts.append(found)
     if not starts:
-        raise BudgetError(
-            f"products: the exclusive sum would have more than {MAX_CUBES} cubes: use another method"
-        )
+        starts.append(_input_by_input(columns, inputs))
     cost = [start.price(prices) for start in starts]
     best = cost.index(min(cost))
     if forms and best and cost[0] <= SECOND_START * cost[best]:
         return [starts[best], starts[0]]
     return [starts[best]]
+
+
+def _input_by_input(columns: Columns, inputs: int) -> ExclusiveSum:
+    """A cube for every input at which some row is 1: what is left for large functions with few of them."""
+    some = np.bitwise_or.reduce(columns, axis=0)
+    if count_ones(some) > MAX_CUBES:
+        raise BudgetError(f"the exclusive sum would have more than {MAX_CUBES:,} products")
+    points = np.array(first_inputs(some, MAX_CUBES), dtype=np.uint64)
+    word, bit = (points >> np.uint64(6)).astype(np.int64), points & np.uint64(63)
+    feeds = np.zeros(len(points), dtype=np.uint64)
+    for row, column in enumerate(columns):
+        feeds |= ((column[word] >> bit) & np.uint64(1)) << np.uint64(row)
+    care = np.full(len(points), (1 << inputs) - 1, dtype=np.uint64)
+    return ExclusiveSum(inputs, columns.shape[0], care, points, feeds).in_order()
 
 
 def _row_by_row(columns: Columns, inputs: int, prices: Sequence[int]) -> ExclusiveSum:

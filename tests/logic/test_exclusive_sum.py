@@ -18,7 +18,7 @@ from revsynth.logic.four_inputs import four_input_sums
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import count_by_size, fixed_polarity
 from revsynth.logic.structure import least_degree
-from revsynth.logic.truth_table import ones
+from revsynth.logic.truth_table import ones, pack
 from tests.logic.tables import from_rule, function_of, functions, random_function
 
 
@@ -144,7 +144,7 @@ def test_too_many_outputs_for_one_sum() -> None:
 
 def test_sums_that_would_be_too_long_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(exclusive_sum, "MAX_CUBES", 10)
-    with pytest.raises(BudgetError, match="more than 10 cubes: use another method"):
+    with pytest.raises(BudgetError, match="more than 10 products"):
         starting_sums(random_function(8, seed=1).values, 8, cube_prices(8))
 
 
@@ -189,3 +189,13 @@ def test_rewriting_shortens_fixed_polarity_forms_to_less_than_half() -> None:
         before += len(start)
         after += len(shorten(start, cube_prices(8)))
     assert after <= 0.4 * before, f"{before} cubes before, {after} after"
+
+
+def test_a_large_function_with_few_ones_gets_a_cube_an_input() -> None:
+    marks = np.zeros((2, 1 << 8), dtype=np.uint8)
+    marks[0, [3, 77, 200]] = 1
+    marks[1, [4, 77]] = 1
+    columns = np.stack([pack(row) for row in marks])
+    sums = exclusive_sum._input_by_input(columns, 8)
+    assert np.array_equal(sums.evaluate(), columns)
+    assert len(sums) == 4
