@@ -15,6 +15,9 @@ if TYPE_CHECKING:
         Build,
         Verdict,
         build,
+        cost,
+        draw,
+        inspect,
         outputs,
         permutation,
         predicate,
@@ -32,6 +35,9 @@ __all__ = [
     "UndecidedError",
     "Verdict",
     "build",
+    "cost",
+    "draw",
+    "inspect",
     "outputs",
     "permutation",
     "predicate",
@@ -45,3 +51,7 @@ def __getattr__(name: str) -> Any:
     if name in __all__:
         return getattr(import_module("revsynth.api"), name)
     raise AttributeError(f"module 'revsynth' has no attribute {name!r}")
+
+
+def __dir__() -> list[str]:
+    return sorted({*globals(), *__all__})

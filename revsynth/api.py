@@ -9,18 +9,21 @@ from pathlib import Path
 from typing import Any
 
 from revsynth.cascade.model import Cascade
+from revsynth.circuit.cost import measure
 from revsynth.circuit.model import Circuit
 from revsynth.errors import BudgetError, RevsynthError, UndecidedError, UsageError
 from revsynth.files import is_regular, write_whole
+from revsynth.logic.analysis import Analysis, analyse
 from revsynth.logic.truth_table import count_ones
 from revsynth.options import BuildOptions, Format, Oracle
 from revsynth.pipeline import Built, Progress
 from revsynth.pipeline import build as run_pipeline
 from revsynth.placement import describe_placement
-from revsynth.qasm import read, read_file
+from revsynth.qasm import Program, read, read_file
 from revsynth.spec.model import Constant, Spec, Word
 from revsynth.spec.read import read_spec as _read_spec
 from revsynth.spec.toml_reader import spec_from_document
+from revsynth.spec.understand import understand
 from revsynth.verification import verify_program
 from revsynth.verification.evidence import Counterexample, Evidence, Verdict
 
@@ -33,6 +36,9 @@ __all__ = [
     "UndecidedError",
     "Verdict",
     "build",
+    "cost",
+    "draw",
+    "inspect",
     "outputs",
     "permutation",
     "predicate",
@@ -84,9 +90,7 @@ def outputs(
 
     `{"total": "a + b"}` is short for `{"total": {"value": "a + b"}}`.
     """
-    body = {
-        name: {"value": value} if isinstance(value, str) else dict(value) for name, value in values.items()
-    }
+    body = {name: {"value": value} if isinstance(value, str) else value for name, value in values.items()}
     return _from_sections("outputs", body, inputs, constants, domain, title)
 
 
@@ -110,7 +114,7 @@ def permutation(
     """
     if (values is None) == (map is None):
         raise UsageError("permutation: give either values or map=, not both")
-    body: dict[str, Any] = {"values": list(values)} if values is not None else {"map": dict(map or {})}
+    body: dict[str, Any] = {"values": values} if values is not None else {"map": map}
     return _from_sections("permutation", body, inputs, constants, domain, title)
 
 
@@ -123,23 +127,35 @@ def _from_sections(
     title: str,
 ) -> Spec:
     """The same way as a TOML file, so that the same checks and errors hold."""
-    document: dict[str, Any] = {section: dict(body)}
+    document: dict[str, Any] = {section: body}
     if title:
         document["title"] = title
     if inputs is not None:
+        if not isinstance(inputs, Mapping):
+            raise UsageError("inputs: words by name are wanted, such as {'a': 4}")
         document["inputs"] = {name: _width(width) for name, width in inputs.items()}
     if constants:
-        document["constants"] = dict(constants)
+        document["constants"] = constants
     if domain is not None:
         document["domain"] = {"where": domain}
-    return spec_from_document(document, source="spec")
+    plain: dict[str, Any] = _plain(document)
+    return spec_from_document(plain, source="spec")
+
+
+def _plain(value: Any) -> Any:
+    """The value as a TOML reader would give it: NumPy arrays and integers, tuples and mappings made plain."""
+    if isinstance(value, Mapping):
+        return {name: _plain(part) for name, part in value.items()}
+    if hasattr(value, "tolist"):
+        value = value.tolist()
+    return [_plain(part) for part in value] if isinstance(value, (list, tuple, range)) else value
 
 
 def _width(width: int | Mapping[str, Any] | Word) -> Any:
     if isinstance(width, Word):
         count = {} if width.count is None else {"count": width.count}
         return {"bits": width.bits, "signed": width.signed, **count}
-    return dict(width) if isinstance(width, Mapping) else width
+    return width
 
 
 class Build:
@@ -284,6 +300,7 @@ def build(
 
     Raises UsageError, BudgetError, UndecidedError, SpecError: all RevsynthError.
     """
+    _check_spec(spec)
     if options is None:
         try:
             options = BuildOptions(**words)
@@ -307,13 +324,46 @@ def verify(
 
     Raises CircuitFileError for what the reader does not understand, UsageError for missing registers.
     """
-    if (path is None) == (text is None):
-        raise UsageError("verify: give either a file or text=, not both")
-    if path is not None:
-        program = read_file(str(path), negctrl=negctrl)
-    else:
-        program = read(text or "", source="text", negctrl=negctrl)
+    _check_spec(spec)
+    program = _program(path, text, negctrl)
     return verify_program(spec, program, oracle=oracle, exact_phase=exact_phase)
+
+
+def inspect(spec: Spec) -> Analysis:
+    """What the function of a spec is: `describe(...)` shows it in words, `to_json()` as plain data."""
+    _check_spec(spec)
+    return analyse(understand(spec))
+
+
+def cost(
+    path: str | Path | None = None, *, text: str | None = None, negctrl: Any = None
+) -> dict[str, int | None]:
+    """What an OpenQASM file (or text) costs, by the names of `Build.cost`; gate definitions expanded."""
+    return measure(_program(path, text, negctrl).circuit).to_json(ands=None, cascade=None)
+
+
+def draw(
+    path: str | Path | None = None, *, text: str | None = None, title: str = "", negctrl: Any = None
+) -> str:
+    """The circuit of an OpenQASM file (or text) as an SVG picture."""
+    from revsynth.report.circuit_svg import draw_svg
+
+    return draw_svg(_program(path, text, negctrl).circuit, title=title)
+
+
+def _program(path: str | Path | None, text: str | None, negctrl: Any) -> Program:
+    if (path is None) == (text is None):
+        raise UsageError("give either a circuit file or text=, not both")
+    if path is not None:
+        return read_file(str(path), negctrl=negctrl)
+    return read(text or "", source="text", negctrl=negctrl)
+
+
+def _check_spec(spec: Spec) -> None:
+    if not isinstance(spec, Spec):
+        raise UsageError(
+            "a spec is wanted, from revsynth.read_spec, predicate, outputs, truth_table or permutation"
+        )
 
 
 def _word_json(word: Word) -> dict[str, Any]:

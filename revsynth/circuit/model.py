@@ -205,6 +205,12 @@ class Circuit:
     def __repr__(self) -> str:
         return f"<Circuit of {len(self)} operations on {self.qubits} qubits>"
 
+    def _repr_svg_(self) -> str:
+        """The drawing that a notebook shows; nothing else here knows of another room."""
+        from revsynth.report.circuit_svg import draw_svg
+
+        return draw_svg(self)
+
 
 _KINDS = tuple(Kind)
 _TARGET_COUNT = tuple(TARGETS[kind] for kind in Kind)
