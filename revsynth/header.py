@@ -68,6 +68,7 @@ def header_lines(
     lines.append(f"oracle: {oracle}, {_ACTIONS[oracle]}")
     lines.append("registers: index 0 is the least significant bit")
     lines.extend(f"word {name} is in register {register}" for name, register in renamed if name != register)
+    lines.extend(f"bit {bit} is {name}" for bit, name in spec.labels.items())
     lines.extend(placement)
     shown = ("qubits", "work", "t", "toffoli", "cx", "cz", "depth", "t_depth", "measured", "gates")
     lines.append("cost: " + ", ".join(f"{name} {cost[name]}" for name in shown))

@@ -24,18 +24,23 @@ def _choice(name: str, text: str, show_default: bool = True) -> Callable[[F], F]
 
 @click.command("build")
 @click.argument("spec", required=False)
-@click.option("-o", "output", metavar="FILE", help="Where to write; standard output without it.")
+@click.option("-o", "output", metavar="FILE", help="Where to write. Default: standard output ('-').")
 @_choice("oracle", "Form of the block. Default: phase, bit or inplace by the spec.", show_default=False)
 @_choice("gates", "Gate set of the file.")
-@_choice("uncompute", "How scratch is erased; 'measured' needs OpenQASM 3.")
-@click.option("--qubits", type=int, metavar="N", help="The most qubits the file may use.")
-@click.option("--t", type=int, metavar="N", help="The most T gates.")
-@click.option("--depth", type=int, metavar="N", help="The most layers.")
+@_choice("uncompute", "How scratch is erased; 'measured' costs no T and needs OpenQASM 3.")
+@click.option("--qubits", type=int, metavar="N", help="The most qubits the file may use. Default: no limit.")
+@click.option("--t", type=int, metavar="N", help="The most T gates. Default: no limit.")
+@click.option("--depth", type=int, metavar="N", help="The most layers. Default: no limit.")
 @_choice("aim", "What to make small first within the budget.")
 @_choice("method", "Method of synthesis; 'auto' keeps the cheapest for the aim.")
-@_choice("effort", "A fixed amount of work.")
-@click.option("--time-limit", type=float, metavar="SECONDS", help="Stop earlier with the best so far.")
-@_choice("format", "Format of the file.")
+@_choice("effort", "How much work to do, a fixed amount, not a time.")
+@click.option(
+    "--time-limit",
+    type=float,
+    metavar="SECONDS",
+    help="Stop earlier with the best so far. Default: no limit.",
+)
+@_choice("format", "Format of the file; 'plain' is OpenQASM 2 with one register, and a map in FILE.json.")
 @_choice("controls", "Whether cascades may use negative controls.")
 @click.option("--seed", type=int, metavar="N", help="Seed of random choices. Default: 0.")
 @click.option("--unverified", is_flag=True, help="Write even where verification could not finish.")
@@ -56,6 +61,15 @@ def COMMAND(  # noqa: N802
 
     Nothing is written unless the circuit was verified. Without -o the circuit goes to standard output and
     the summary to standard error.
+
+    \b
+    Forms, for inputs x:
+      phase     the sign (-1)^f(x), of a predicate
+      bit       y becomes y XOR f(x)
+      fresh     the outputs start in 0, which is cheaper
+      compute   as fresh, and what undoes it stays in the register keep
+      inplace   x becomes p(x), of a permutation or one-to-one outputs
+      embedded  the fewest lines: outputs in place of inputs, garbage left
 
     \b
     Example:

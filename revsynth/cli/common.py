@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any, TypeVar
 import click
 
 from revsynth.errors import UsageError
+from revsynth.one_line import one_line
 from revsynth.spec.model import Spec
 
 if TYPE_CHECKING:
@@ -24,9 +25,20 @@ SAFE_INTEGER = (1 << 53) - 1
 def spec_options(command: F) -> F:
     """The options that stand in for a spec file, and `--from`."""
     for option in (
-        click.option("--from", "from_format", metavar="FORMAT", help="Format of SPEC: toml, cnf, pla."),
-        click.option("--domain", metavar="EXPR", help="With --where: the inputs that matter."),
-        click.option("--constant", "constants", multiple=True, metavar="NAME=JSON", help="With --where."),
+        click.option(
+            "--from",
+            "from_format",
+            metavar="FORMAT",
+            help="Format of SPEC: toml, cnf, pla. Default: by the ending; toml for '-'.",
+        ),
+        click.option("--domain", metavar="EXPR", help="With --where: the inputs that matter. Default: all."),
+        click.option(
+            "--constant",
+            "constants",
+            multiple=True,
+            metavar="NAME=JSON",
+            help="With --where: a constant, such as edges=[[0,1],[1,2]].",
+        ),
         click.option(
             "--input",
             "inputs",
@@ -74,6 +86,11 @@ def load_program(file: str, negctrl: Any) -> Program:
             sys.stdin.buffer.read().decode("utf-8", "replace"), source="standard input", negctrl=negctrl
         )
     return read_file(file, negctrl=negctrl)
+
+
+def shown_file(file: str) -> str:
+    """The name of a file as results show it."""
+    return "standard input" if file == "-" else one_line(file)
 
 
 def progress_line() -> Callable[[str], None]:

@@ -6,7 +6,7 @@ from typing import Any
 
 import click
 
-from revsynth.cli.common import echo_json, load_program
+from revsynth.cli.common import echo_json, load_program, shown_file
 
 
 @click.command("cost")
@@ -31,4 +31,4 @@ def COMMAND(file: str, negctrl: Any, as_json: bool) -> None:  # noqa: N802
     if as_json:
         echo_json(cost)
     else:
-        click.echo("\n".join([file, *cost_lines(cost)]))
+        click.echo("\n".join([shown_file(file), *cost_lines(cost)]))

@@ -13,10 +13,12 @@ from revsynth.cli.common import (
     load_program,
     load_spec,
     progress_line,
+    shown_file,
     spec_options,
     warn,
 )
 from revsynth.errors import UsageError
+from revsynth.one_line import one_line
 from revsynth.options import CHOICES
 
 if TYPE_CHECKING:
@@ -26,9 +28,12 @@ if TYPE_CHECKING:
 @click.command("verify")
 @click.argument("paths", nargs=-1, metavar="[SPEC] FILE")
 @click.option(
-    "--oracle", type=click.Choice(CHOICES["oracle"]), help="The form; found by the registers without it."
+    "--oracle",
+    type=click.Choice(CHOICES["oracle"]),
+    help="The form. Default: by the registers: mark or outputs mean bit, line means embedded, else phase or "
+    "inplace.",
 )
-@click.option("--exact-phase", is_flag=True, help="Let no constant phase pass.")
+@click.option("--exact-phase", is_flag=True, help="Let no constant phase pass. Default: one may.")
 @click.option(
     "--negctrl",
     type=click.Choice(["all-zero", "as-published"]),
@@ -71,11 +76,11 @@ def COMMAND(  # noqa: N802
     if as_json:
         echo_json(verdict.to_json())
     else:
-        click.echo(_in_words(verdict, paths[-1]))
+        click.echo(_in_words(verdict, shown_file(paths[-1]), form_named=oracle is not None))
     return {True: 0, False: 1, None: 3}[verdict.holds]
 
 
-def _in_words(verdict: Verdict, file: str) -> str:
+def _in_words(verdict: Verdict, file: str, form_named: bool) -> str:
     evidence = verdict.evidence
     if verdict.holds:
         lines = [f"{file}: does what the spec says"]
@@ -83,9 +88,13 @@ def _in_words(verdict: Verdict, file: str) -> str:
         lines = [f"{file}: undecided: {evidence.detail}"]
     else:
         lines = [f"{file}: does not do what the spec says"]
+        if not form_named:
+            lines.append(f"  form       {verdict.oracle}, by its registers (--oracle names another)")
     found = verdict.counterexample
     if found is not None:
         lines.append(f"  at         {_words(found.inputs)}")
+        if found.bits:
+            lines.append(f"  that is    {one_line(_words(found.bits))}")
         lines.append(f"  fault      {found.kind}: {found.why}")
         if found.expected:
             lines.append(f"  expected   {_words(found.expected)}")

@@ -6,7 +6,7 @@ words.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
@@ -139,7 +139,10 @@ class Bound:
 
 @dataclass(frozen=True)
 class Analysis:
-    """Everything `inspect` shows. `marked_first` lists the first marked inputs in words (predicates only)."""
+    """Everything `inspect` shows. `marked_first` lists the first marked inputs in words (predicates only).
+
+    labels: the names that the spec's file gives to single bits, by ours.
+    """
 
     title: str
     source: str
@@ -161,6 +164,7 @@ class Analysis:
     permutation: PermutationFacts | None
     bound: Bound | None
     warnings: tuple[str, ...] = field(default=())
+    labels: Mapping[str, str] = field(default_factory=dict)
 
     @property
     def affine(self) -> bool:
@@ -195,6 +199,7 @@ class Analysis:
             "permutation": None if self.permutation is None else self.permutation.to_json(),
             "lower_bound": None if self.bound is None else {"ands": self.bound.ands, "why": self.bound.why},
             "bits": [fact.to_json() for fact in self.facts],
+            "labels": dict(self.labels),
             "warnings": list(self.warnings),
         }
 
@@ -256,6 +261,7 @@ def analyse(understanding: Understanding) -> Analysis:
         permutation=permutation,
         bound=_lower_bound(function, facts, full),
         warnings=understanding.warnings,
+        labels=spec.labels,
     )
 
 

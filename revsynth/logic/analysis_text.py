@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 import textwrap
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from typing import Any
 
 from revsynth.logic.analysis import SHOWN_CYCLES, Analysis, OutputFacts, PermutationFacts
+from revsynth.one_line import one_line
 from revsynth.spec.model import Word
 
 WIDTH = 100
@@ -14,18 +15,17 @@ _LABEL = 20
 
 
 def text(analysis: Analysis) -> str:
-    """All sections, a blank line between them."""
+    """All sections, a blank line between them; warnings are left to whoever shows it."""
     sections = [
         _heading(analysis),
-        _words("Inputs", analysis.inputs),
-        _words("Outputs", analysis.outputs),
+        _words("Inputs", analysis.inputs, analysis.labels),
+        _words("Outputs", analysis.outputs, analysis.labels),
         _domain(analysis),
         _marked(analysis),
         _function(analysis),
         _bits(analysis),
         _permutation(analysis),
         _embedding(analysis),
-        [f"warning: {warning}" for warning in analysis.warnings],
     ]
     return "\n\n".join("\n".join(section) for section in map(list, sections) if section)
 
@@ -60,16 +60,21 @@ def _heading(analysis: Analysis) -> Iterator[str]:
         "permutation": f"a permutation of {_plural(1 << analysis.input_bits, 'value')}, "
         f"in place on {_plural(analysis.input_bits, 'bit')}",
     }
-    yield f"{analysis.title or analysis.source}: {kinds[analysis.kind]}"
+    yield f"{one_line(analysis.title or analysis.source)}: {kinds[analysis.kind]}"
 
 
-def _words(label: str, words: tuple[Word, ...]) -> Iterator[str]:
+def _words(label: str, words: tuple[Word, ...], labels: Mapping[str, str]) -> Iterator[str]:
     if not words:
         return
     yield label
     for word in words:
         size = _plural(word.bits, "bit") + (", signed" if word.signed else "")
         yield _row(word.name, size if word.count is None else f"{_plural(word.count, 'word')} of {size}")
+        named = [
+            f"{bit} is {one_line(name)}" for bit, name in labels.items() if bit.startswith(f"{word.name}[")
+        ]
+        if named:
+            yield _row("", ", ".join(named))
 
 
 def _domain(analysis: Analysis) -> Iterator[str]:
@@ -78,7 +83,7 @@ def _domain(analysis: Analysis) -> Iterator[str]:
     if analysis.condition is None:
         yield _row("every input", f"{total:,}")
     else:
-        yield _row("where", analysis.condition)
+        yield _row("where", one_line(analysis.condition))
         yield _row("inputs", _share(analysis.domain, total))
     if analysis.free:
         yield _row("free values", f"at {_plural(analysis.free, 'input')} of the domain")

@@ -8,11 +8,12 @@ from dataclasses import dataclass
 from typing import Any
 
 from revsynth.circuit.model import Circuit, Kind, Qubit
+from revsynth.one_line import one_line
 from revsynth.spec.layout import decode, describe
 from revsynth.spec.model import Predicate, Word
 from revsynth.spec.understand import Understanding
 from revsynth.verification.decide import Found
-from revsynth.verification.evidence import Counterexample
+from revsynth.verification.evidence import Counterexample, FaultKind
 from revsynth.verification.forms import Chunk, Demand
 from revsynth.verification.judge import Fault, misfit, phase_at
 from revsynth.verification.outcome import Record, RevealsError
@@ -42,14 +43,22 @@ class Teller:
         got = _phase(radians + (math.pi if marked else 0.0))
         reference = self.demand.reference or 0
         why = f"every phase is off by the constant {_phase(radians)}, and the phase is to be exact"
-        return Counterexample(self._inputs(reference), "phase", {"phase": wanted}, {"phase": got}, why)
+        return self._counterexample(reference, "phase", {"phase": wanted}, {"phase": got}, why)
+
+    def _counterexample(
+        self, number: int, kind: FaultKind, expected: dict[str, Any], got: dict[str, Any], why: str
+    ) -> Counterexample:
+        labels = self.understanding.spec.labels
+        names = [name for word in self.understanding.spec.inputs for name in _bit_names(word)]
+        bits = {labels[name]: number >> bit & 1 for bit, name in enumerate(names) if name in labels}
+        return Counterexample(self._inputs(number), kind, expected, got, why, bits)
 
     def _faulty(self, fault: Fault, chunk: Chunk) -> Counterexample:
         number = self._number(chunk, fault.lane)
         ends = {"undefined": self._undefined, "phase": self._wrong_phase}.get(fault.kind, self._wrong_qubits)
         expected, got, why = ends(fault, chunk)
         why += self._start_in_words(number) + self._record_in_words(fault.final.record)
-        return Counterexample(self._inputs(number), fault.kind, expected, got, why)
+        return self._counterexample(number, fault.kind, expected, got, why)
 
     def _number(self, chunk: Chunk, lane: int) -> int:
         return (self.demand.reference or 0) if lane == chunk.lanes else int(chunk.numbers[lane])
@@ -141,7 +150,7 @@ class Teller:
         differs = "comes out differently" if reveals.certain else "comes out with different chances"
         why = f"{op} {differs} here than for {other}: inputs in superposition would collapse"
         why += self._start_in_words(number) + self._record_in_words(reveals.record)
-        return Counterexample(self._inputs(number), "undefined", {}, {}, why)
+        return self._counterexample(number, "undefined", {}, {}, why)
 
     def _operation(self, source: int) -> str:
         """A measurement or reset in words."""
@@ -167,7 +176,9 @@ class Teller:
 
     def _name(self, qubit: Qubit) -> str:
         register = next(r for r in self.circuit.registers if qubit in r.members)
-        return f"{register.name}[{qubit - register.start}]"
+        name = f"{register.name}[{qubit - register.start}]"
+        label = self.understanding.spec.labels.get(name)
+        return name if label is None else f"{name} ({one_line(label)})"
 
     @staticmethod
     def _list(names: Sequence[str]) -> str:
@@ -178,6 +189,11 @@ class Teller:
 
 def _words(words: Sequence[Word], bits: Sequence[int]) -> dict[str, Any]:
     return dict(decode(words, sum(bit << place for place, bit in enumerate(bits))))
+
+
+def _bit_names(word: Word) -> list[str]:
+    """The names of a word's bits as the labels of a spec have them, the lowest first."""
+    return [f"{name}[{bit}]" for name, bits in word.elements() for bit in range(bits)]
 
 
 def _phase(radians: float) -> int | float:

@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Any, Literal
+
+from revsynth.options import Oracle
 
 Level = Literal["exhaustive", "proved", "sampled", "none"]
 FaultKind = Literal["output", "input", "scratch", "phase", "undefined"]
@@ -34,38 +36,45 @@ class Evidence:
 
 @dataclass(frozen=True)
 class Counterexample:
-    """One input at which the circuit does not do what the spec says; words as (lists of) integers."""
+    """One input at which the circuit does not do what the spec says; words as (lists of) integers.
+
+    bits: the same input by the names that the spec's file gives to single bits, where it does.
+    """
 
     inputs: dict[str, Any] | list[int]
     kind: FaultKind
     expected: dict[str, Any]
     got: dict[str, Any]
     why: str
+    bits: dict[str, int] = field(default_factory=dict)
 
     def to_json(self) -> dict[str, Any]:
         """The JSON object of the contract."""
-        return {
+        found = {
             "inputs": _as_json(self.inputs),
             "kind": self.kind,
             "expected": _as_json(self.expected),
             "got": _as_json(self.got),
             "why": self.why,
         }
+        return found | ({"bits": dict(self.bits)} if self.bits else {})
 
 
 @dataclass(frozen=True)
 class Verdict:
-    """`holds` is None where verification could not finish; `global_phase` in radians."""
+    """`holds` is None where verification could not finish; `global_phase` in radians; `oracle`: the form."""
 
     holds: bool | None
     evidence: Evidence
     global_phase: float = 0.0
     counterexample: Counterexample | None = None
+    oracle: Oracle | None = None
 
     def to_json(self) -> dict[str, Any]:
         """The JSON object of the contract."""
         return {
             "holds": self.holds,
+            "oracle": self.oracle,
             "evidence": self.evidence.to_json(),
             "global_phase": self.global_phase,
             "counterexample": None if self.counterexample is None else self.counterexample.to_json(),

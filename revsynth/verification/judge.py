@@ -140,4 +140,6 @@ def misfit(final: Final, chunk: Chunk, lane: int) -> float:
     radians = math.remainder(final.angle + reference + phase_at(final, chunk, lane) - wanted, 2 * math.pi)
     if not chunk.sign_care >> lane & 1:
         radians = math.remainder(radians, math.pi)
-    return 0.0 if abs(radians) < 1e-12 else radians
+    if abs(radians) < 1e-12:
+        return 0.0
+    return math.pi if radians < 1e-12 - math.pi else radians

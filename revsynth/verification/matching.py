@@ -79,7 +79,9 @@ class _Matcher:
         spec = understanding.spec
         self.inputs = _elements(spec.inputs)
         self.outputs = _elements(understanding.outputs) if spec.kind == "outputs" else []
-        self.names = register_names([name for name, _ in (*self.inputs, *self.outputs)], version=version, source=spec.source)
+        self.names = register_names(
+            [name for name, _ in (*self.inputs, *self.outputs)], version=version, source=spec.source
+        )
 
     def error(self, message: str) -> UsageError:
         return UsageError(f"{self.understanding.spec.source}: {message}")

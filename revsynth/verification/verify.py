@@ -57,7 +57,7 @@ def verify_program(
     if counterexample is not None and decision.level == "sampled":
         decision = replace(decision, detail="stopped at the first input that fails")
     evidence = Evidence(decision.level, decision.inputs, links, decision.detail)
-    return Verdict(holds, evidence, decision.global_phase, counterexample)
+    return Verdict(holds, evidence, decision.global_phase, counterexample, roles.oracle)
 
 
 def _marked(understanding: Understanding, decision: Decision, roles: Roles) -> bool:

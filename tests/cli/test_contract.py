@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 import json
+import math
 import os
 import subprocess
 import sys
@@ -174,3 +175,77 @@ def test_names_of_standard_output_hold_the_circuit_alone() -> None:
 def test_counts_of_one_are_in_the_singular(capsys: Capture) -> None:
     _, _, error = run(capsys, "build", "--where", "a == 3", "--input", "a=2")
     assert "  depth      1 layer\n  plan       1 cascade gate, 1 AND\n" in error
+
+
+def build(capsys: Capture, folder: Path, *words: str | Path) -> Path:
+    out = folder / "built.qasm"
+    assert run(capsys, "build", *words, "-o", out)[0] == 0
+    return out
+
+
+PLA = ".i 2\n.o 2\n.ilb door lamp\n.ob bell horn\n11 01\n-1 10\n.e\n"
+
+
+def test_names_in_a_pla_label_bits_wherever_they_are_shown(capsys: Capture, tmp_path: Path) -> None:
+    spec = write_spec(tmp_path, PLA, "rules.pla")
+    out = build(capsys, tmp_path, spec)
+    assert "// bit v[0] is door\n// bit v[1] is lamp\n// bit f[0] is bell\n" in out.read_text()
+    assert "v[0] is door, v[1] is lamp" in run(capsys, "inspect", spec)[1]
+    described = json.loads(run(capsys, "inspect", spec, "--json")[1])
+    assert described["labels"] == {"v[0]": "door", "v[1]": "lamp", "f[0]": "bell", "f[1]": "horn"}
+    out.write_text(out.read_text() + "cx v[0], f[1];\n")
+    found = json.loads(run(capsys, "verify", spec, out, "--json")[1])["counterexample"]
+    assert found["inputs"]["v"] & 1
+    assert found["bits"] == {"door": 1, "lamp": found["inputs"]["v"] >> 1}
+    assert found["why"].startswith("f[1] (horn) ends in ")
+    assert "  that is    door = 1, lamp = " in run(capsys, "verify", spec, out)[1]
+
+
+def test_a_warning_of_inspect_is_on_standard_error_alone(capsys: Capture) -> None:
+    _, out, error = run(capsys, "inspect", "--where", "~a == 1", "--input", "a=2")
+    assert "never true" not in out
+    assert error.startswith("warning: command line: [predicate] where: column 1: '~a == 1' is never true")
+
+
+def test_a_failing_file_is_told_which_form_was_taken_for_granted(capsys: Capture, tmp_path: Path) -> None:
+    spec = write_spec(tmp_path, '[inputs]\na = 3\n[outputs]\nf = { value = "a * a % 8" }\n')
+    out = build(capsys, tmp_path, spec, "--oracle", "compute", "--method", "transform")
+    text = out.read_text().replace("keep", "k")
+    out.write_text(text + ("" if " k;" in text else "qubit k;\ncx a[0], k;\n"))
+    status, shown, _ = run(capsys, "verify", spec, out)
+    assert status == 1
+    assert "  form       bit, by its registers (--oracle names another)\n" in shown
+    assert json.loads(run(capsys, "verify", spec, out, "--json")[1])["oracle"] == "bit"
+    assert "--oracle names another" not in run(capsys, "verify", spec, out, "--oracle", "fresh")[1]
+
+
+def test_standard_input_is_called_so(
+    capsys: Capture, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    text = build(capsys, tmp_path, *SMALL).read_text()
+    for words, start in (
+        (["verify", *SMALL, "-"], "standard input: does what the spec says\n"),
+        (["cost", "-"], "standard input\n  qubits "),
+    ):
+        on_standard_input(monkeypatch, text)
+        assert run(capsys, *words)[1].startswith(start)
+
+
+def test_draw_has_json_and_refuses_what_only_the_terminal_has(capsys: Capture, tmp_path: Path) -> None:
+    circuit = build(capsys, tmp_path, *SMALL, "--gates", "cascade")
+    found = json.loads(run(capsys, "draw", circuit, "--json", "--title", "Pairs")[1])
+    assert (found["circuit"], found["drawing"], found["qubits"]) == (str(circuit), None, 5)
+    assert found["text"][0] == "Pairs"
+    picture = tmp_path / "p.svg"
+    found = json.loads(run(capsys, "draw", circuit, "--json", "-o", picture)[1])
+    assert (found["drawing"], found["text"]) == (str(picture), None)
+    assert "are for the terminal" in refused(capsys, "draw", circuit, "--ascii", "-o", picture)
+
+
+def test_one_constant_phase_of_minus_one_is_plus_pi(capsys: Capture, tmp_path: Path) -> None:
+    circuit = tmp_path / "x.qasm"
+    for where, gates in (("True", ""), ("False", "gphase(pi);"), ("False", "gphase(-pi);")):
+        circuit.write_text(f"OPENQASM 3.0;\nqubit[1] a;\n{gates}\n")
+        words = ["--where", where, "--input", "a=1", circuit, "--json"]
+        assert json.loads(run(capsys, "verify", *words)[1])["global_phase"] == pytest.approx(math.pi)
+        assert run(capsys, "verify", *words, "--exact-phase")[0] == 1

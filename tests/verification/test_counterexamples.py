@@ -139,5 +139,5 @@ def test_the_file_of_a_verdict_is_plain_json(tmp_path: Path) -> None:
     path = tmp_path / "verdict.json"
     path.write_text(json.dumps(verdict.to_json()))
     read = json.loads(path.read_text())
-    assert set(read) == {"holds", "evidence", "global_phase", "counterexample"}
+    assert set(read) == {"holds", "oracle", "evidence", "global_phase", "counterexample"}
     assert read["counterexample"]["inputs"] == {"v": 3}
