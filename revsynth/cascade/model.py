@@ -148,6 +148,12 @@ class Cascade:
     def __repr__(self) -> str:
         return f"<Cascade of {len(self)} gates on {self.lines} lines>"
 
+    def _repr_svg_(self) -> str:
+        """The picture that notebooks show; drawing is loaded only then."""
+        from revsynth.report.cascade_svg import draw_cascade
+
+        return draw_cascade(self)
+
     def __add__(self, other: Cascade) -> Cascade:
         """This cascade, then the other (on as many lines)."""
         if self.lines != other.lines:

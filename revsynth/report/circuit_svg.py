@@ -6,6 +6,7 @@ distinguished target (common practice). Bit 0 of a word is the first line of its
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from html import escape
 
@@ -232,19 +233,25 @@ class _Picture:
 
 def _legend_entries(circuit: Circuit) -> Iterator[tuple[str, str]]:
     controls = [op for op in circuit if op.controls]
-    if any(not control & 1 for op in controls if op.kind is not Kind.Z for control in op.controls):
+    targeted = [op for op in controls if op.kind is not Kind.Z and not _is_sign(op)]
+    if any(not control & 1 for op in targeted for control in op.controls):
         yield "dot", "waits for 1"
     if any(control & 1 for op in controls for control in op.controls):
         yield "ring", "waits for 0"
     if any(op.kind is Kind.X for op in circuit):
         yield "not", "NOT"
-    if any(op.kind is Kind.Z for op in controls):
-        yield "cz", "turns the sign where all dots are 1"
+    if any(op.kind is Kind.Z or _is_sign(op) for op in controls):
+        yield "cz", "turns the sign where all hold"
     if any(register.name in ("work", "keep") for register in circuit.registers):
         yield "scratch", "scratch, starts in 0"
     if circuit.bits:
         yield "wrote", "bit measured"
         yield "read", "only if this bit is 1"
+
+
+def _is_sign(op: Op) -> bool:
+    """A controlled constant phase of -1, drawn like a controlled Z."""
+    return op.kind is Kind.GPHASE and math.isclose(op.angles[0], math.pi)
 
 
 def _line_heights(circuit: Circuit) -> Iterator[int]:

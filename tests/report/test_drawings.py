@@ -10,7 +10,9 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from revsynth.cascade import PHASE, Cascade, Gate
 from revsynth.circuit.model import Circuit, CircuitBuilder, Guard, Kind
+from revsynth.report.cascade_svg import draw_cascade
 from revsynth.report.circuit_svg import draw_svg
 from revsynth.report.columns import angle_text, pack, wrap
 from revsynth.report.export import svg_to_pdf, svg_to_png
@@ -156,3 +158,11 @@ def test_png_and_pdf_carry_their_signatures_and_are_deterministic() -> None:
 )
 def test_angles_are_shown_as_fractions_of_pi_where_they_are(angle: float, text: str) -> None:
     assert angle_text(angle) == text
+
+
+def test_notebooks_show_circuits_and_cascades_as_pictures() -> None:
+    cascade = Cascade.from_gates(3, [Gate(2, (0, 3)), Gate(PHASE, (0, 3, 4)), Gate(PHASE, ())])
+    assert cascade._repr_svg_() == draw_cascade(cascade)
+    assert "turns the sign" in cascade._repr_svg_()
+    assert example()._repr_svg_() == draw_svg(example())
+    assert Cascade.from_gates(0, [])._repr_svg_().startswith("<svg")
