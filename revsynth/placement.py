@@ -35,7 +35,7 @@ def placement_comments(block: Block, understanding: Understanding) -> list[str]:
     comments = []
     for line in range(block.inputs):
         start = before.get(line, f"{described['preset'].get(str(line), 0)}")
-        comments.append(f"line {line}: {start} before, {after.get(line, 'leftover')} after")
+        comments.append(f"line {line}: {start} before, {after.get(line, '(leftover)')} after")
     return comments
 
 

@@ -1,7 +1,8 @@
 """Which line of an `embedded` block holds what: from the JSON key `placement`, or from comment lines.
 
 Lines are listed least significant bit first, under the spec's own names. The comment lines read
-`line 3: a[1] before, total[0] after`, with 0 or 1 before where the line is preset, `leftover` after.
+`line 3: a[1] before, total[0] after`, with 0 or 1 before where the line is preset, and `(leftover)` after for
+garbage, in brackets because an output word may be called so.
 """
 
 from __future__ import annotations

@@ -249,3 +249,11 @@ def test_one_constant_phase_of_minus_one_is_plus_pi(capsys: Capture, tmp_path: P
         words = ["--where", where, "--input", "a=1", circuit, "--json"]
         assert json.loads(run(capsys, "verify", *words)[1])["global_phase"] == pytest.approx(math.pi)
         assert run(capsys, "verify", *words, "--exact-phase")[0] == 1
+
+
+def test_an_output_word_may_be_called_leftover(capsys: Capture, tmp_path: Path) -> None:
+    text = '[inputs]\na = 2\n[outputs]\nleftover = { value = "a == 3" }\n'
+    spec = write_spec(tmp_path, text)
+    out = build(capsys, tmp_path, spec, "--oracle", "embedded")
+    assert out.read_text().count("(leftover) after") == 2
+    assert run(capsys, "verify", spec, out)[0] == 0
