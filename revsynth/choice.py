@@ -32,10 +32,10 @@ class Trial:
     failed: str | None = None
 
     @classmethod
-    def of(cls, candidate: Candidate, failed: str | None) -> Trial:
+    def of(cls, candidate: Candidate) -> Trial:
         """The record of a lowered candidate."""
         cost = candidate.cost
-        return cls(candidate.block.method, cost.t, cost.qubits, cost.gates, cost.depth, failed=failed)
+        return cls(candidate.block.method, cost.t, cost.qubits, cost.gates, cost.depth)
 
     def to_json(self) -> dict[str, Any]:
         """Only what is known."""

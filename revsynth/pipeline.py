@@ -11,15 +11,14 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Literal
 
-from revsynth.cascade.price import cascade_t
-from revsynth.choice import Candidate, Trial, and_count, cheapest, estimate, hopeless, within
+from revsynth.budgeted import lower_the_cheapest
+from revsynth.choice import Trial, and_count
 from revsynth.circuit.model import Circuit
 from revsynth.errors import BudgetError, UndecidedError, UsageError
 from revsynth.header import header_lines
-from revsynth.lowering import lower
 from revsynth.options import BuildOptions, Oracle
 from revsynth.placement import describe_placement, placement_comments
-from revsynth.qasm import Program, prepare, read, write
+from revsynth.qasm import Program, read, write
 from revsynth.qasm.names import register_names
 from revsynth.shortening import shorten
 from revsynth.spec.model import Spec
@@ -31,9 +30,6 @@ from revsynth.verification import verify_program
 from revsynth.verification.evidence import Evidence, Verdict
 
 Progress = Callable[[str], None]
-
-LARGE = 20_000
-"""Cascades of more gates are compared by their estimated price, and only the cheapest is lowered."""
 
 
 @dataclass(frozen=True)
@@ -79,14 +75,16 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
         lines=options.qubits,
     )
     layout = register_layout(understanding, oracle, options)
-    blocks, missed, early = _synthesise(task, options, progress, clock.started)
+    blocks, unfit, early = _synthesise(task, options, progress, clock.started)
     clock.lap("synthesise")
-    best, tried = _lower_the_cheapest(blocks, missed, layout, oracle, options, progress)
+    best, tried = lower_the_cheapest(
+        blocks, lambda block: _registers_for(block, layout), oracle, options, progress
+    )
     clock.lap("lower")
 
     progress("verifying")
     circuit = best.circuit
-    verdict = _verify_text(understanding, oracle, best.block, circuit, options)
+    verdict = _verify_text(understanding, oracle, best.block, circuit, options, progress)
     evidence = _accept(verdict, options)
     clock.lap("verify")
     cost = best.cost.to_json(ands=and_count(best.block.cascade), cascade=len(best.block.cascade))
@@ -107,7 +105,7 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
     clock.lap("write")
     return Built(
         spec, understanding, options, oracle, best.block, circuit, text, dict(layout.names), cost, evidence,
-        tried, early, clock.seconds(),
+        (*unfit, *tried), early, clock.seconds(),
     )  # fmt: skip
 
 
@@ -176,6 +174,7 @@ def _synthesise(
     """Run every method that is asked for and fits; reduce what they give."""
     blocks: list[Block] = []
     tried: list[Trial] = []
+    too_large = False
     for method in METHODS:
         if not _asked_for(method, options):
             continue
@@ -190,6 +189,7 @@ def _synthesise(
             found = method.synthesise(task, progress)
         except BudgetError as error:
             tried.append(Trial(method.name, failed=str(error)))
+            too_large = True
             continue
         for block in found:
             progress(f"{block.method}: reducing {len(block.cascade)} gates")
@@ -201,7 +201,8 @@ def _synthesise(
             break
     if not blocks:
         reasons = "; ".join(f"{trial.method}: {trial.failed}" for trial in tried)
-        raise UsageError(f"no method serves this spec with oracle '{task.oracle}': {reasons}")
+        text = f"no method serves this spec with oracle '{task.oracle}': {reasons}"
+        raise BudgetError(text) if too_large else UsageError(text)
     return blocks, tried, False
 
 
@@ -212,51 +213,13 @@ def _asked_for(method: Method, options: BuildOptions) -> bool:
     )
 
 
-def _lower_the_cheapest(
-    blocks: list[Block],
-    tried: list[Trial],
-    layout: Layout,
+def _verify_text(
+    understanding: Understanding,
     oracle: Oracle,
+    block: Block,
+    circuit: Circuit,
     options: BuildOptions,
     progress: Progress,
-) -> tuple[Candidate, tuple[Trial, ...]]:
-    """Lower the blocks, small ones all, of large ones the cheapest by estimate; keep the best for the aim."""
-    ranked = sorted(blocks, key=lambda block: estimate(block, options))
-    candidates: list[Candidate] = []
-    misses: list[str] = []
-    for block in ranked:
-        if candidates and (len(block.cascade) > LARGE or hopeless(block, candidates, options)):
-            tried.append(Trial(block.method, t=cascade_t(block.cascade, options.uncompute), estimated=True))
-            continue
-        progress(f"{block.method}: lowering {len(block.cascade)} gates")
-        try:
-            lowered = lower(
-                block,
-                _registers_for(block, layout),
-                oracle=oracle,
-                gates=options.gates,
-                uncompute=options.uncompute,
-                max_qubits=options.qubits,
-                aim=options.aim,
-            )
-        except BudgetError as error:
-            misses.append(f"{block.method}: {error}")
-            tried.append(Trial(block.method, failed=str(error)))
-            continue
-        candidate = Candidate.of(block, prepare(lowered, options.format))
-        miss = within(candidate, options)
-        tried.append(Trial.of(candidate, failed=miss))
-        if miss is None:
-            candidates.append(candidate)
-        else:
-            misses.append(f"{block.method}: {miss}")
-    if not candidates:
-        raise BudgetError("nothing fits the budget: " + "; ".join(dict.fromkeys(misses)))
-    return cheapest(candidates, options), tuple(tried)
-
-
-def _verify_text(
-    understanding: Understanding, oracle: Oracle, block: Block, circuit: Circuit, options: BuildOptions
 ) -> Verdict:
     """Verify what a reader of the file would see. `plain` loses the registers: they are put back first."""
     bare = write(circuit, format=options.format, header=())

@@ -210,3 +210,18 @@ def test_json_has_the_keys_of_the_contract() -> None:
     assert found["inputs"] == {"a": {"bits": 2}, "b": {"bits": 2}}
     assert found["marked"] == sum(map(marked, range(16)))
     assert all("method" in trial for trial in found["tried"])
+
+
+def test_a_budget_for_t_or_depth_outranks_the_aim_and_the_aim_holds_within_it() -> None:
+    spec = revsynth.predicate("v == 200", inputs={"v": 8})
+    narrow = revsynth.build(spec, uncompute="measured", aim="qubits")
+    wide = revsynth.build(spec, uncompute="measured", aim="t")
+    between = (narrow.cost["t"] + wide.cost["t"]) // 2
+    found = revsynth.build(spec, uncompute="measured", aim="qubits", t=between)
+    assert found.cost["t"] <= between < narrow.cost["t"]
+    assert narrow.cost["qubits"] < found.cost["qubits"] < wide.cost["qubits"]
+    fewer = found.cost["qubits"] - 1
+    with pytest.raises(BudgetError, match="T gates"):
+        revsynth.build(spec, uncompute="measured", qubits=fewer, t=between)
+    shallow = revsynth.build(spec, aim="t", depth=wide.cost["depth"] - 1, uncompute="measured")
+    assert shallow.cost["depth"] < wide.cost["depth"]
