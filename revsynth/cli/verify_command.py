@@ -76,7 +76,11 @@ def COMMAND(  # noqa: N802
     if as_json:
         echo_json(verdict.to_json())
     else:
-        click.echo(_in_words(verdict, shown_file(paths[-1]), form_named=oracle is not None))
+        click.echo(
+            _in_words(
+                verdict, shown_file(paths[-1]), form_named=oracle is not None or spec.kind == "permutation"
+            )
+        )
     return {True: 0, False: 1, None: 3}[verdict.holds]
 
 
@@ -100,7 +104,11 @@ def _in_words(verdict: Verdict, file: str, form_named: bool) -> str:
             lines.append(f"  expected   {_words(found.expected)}")
         if found.got:
             lines.append(f"  got        {_words(found.got)}")
-    level = "sampled, not a proof" if evidence.level == "sampled" else evidence.level
+    level: str = evidence.level
+    if verdict.holds is False:
+        level = "one input decides"
+    elif level == "sampled":
+        level = "sampled, not a proof"
     lines.append(f"  evidence   {level}: {evidence.inputs_checked} inputs checked")
     lines.extend(f"             {link}" for link in evidence.links)
     if verdict.holds and verdict.global_phase:
