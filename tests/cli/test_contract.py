@@ -8,12 +8,15 @@ import math
 import os
 import subprocess
 import sys
+from importlib import import_module
 from pathlib import Path
 
+import click
 import pytest
 
 import revsynth
-from revsynth.cli.main import main
+from revsynth.cli.main import COMMANDS, main
+from revsynth.verification.evidence import Evidence, Level, Verdict
 
 SMALL = ["--where", "a * b == 6", "--input", "a=3", "--input", "b=2"]
 
@@ -257,3 +260,53 @@ def test_an_output_word_may_be_called_leftover(capsys: Capture, tmp_path: Path) 
     out = build(capsys, tmp_path, spec, "--oracle", "embedded")
     assert out.read_text().count("(leftover) after") == 2
     assert run(capsys, "verify", spec, out)[0] == 0
+
+
+@pytest.mark.parametrize("level", ["none", "sampled"])
+def test_what_could_not_be_verified_is_not_written_unless_asked_for(
+    capsys: Capture, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, level: Level
+) -> None:
+    from revsynth import pipeline
+
+    undecided = Verdict(None, Evidence(level, 3, (), "out of reach"))
+    monkeypatch.setattr(pipeline, "verify_program", lambda *_, **__: undecided)
+    out = tmp_path / "x.qasm"
+    error = refused(capsys, "build", *SMALL, "-o", out, status=3)
+    assert "verification could not finish: out of reach; nothing was written" in error
+    assert not out.exists()
+    status, shown, _ = run(capsys, "build", *SMALL, "-o", out, "--unverified", "--json")
+    assert (status, json.loads(shown)["evidence"]["level"]) == (0, level)
+    said = {"none": "evidence: not verified", "sampled": "evidence: 3 inputs sampled: not a proof"}[level]
+    assert f"// {said}\n" in out.read_text()
+    assert made_by(out.read_text()).endswith("--unverified")
+
+
+@pytest.mark.parametrize("name", list(COMMANDS))
+def test_every_option_of_every_command_is_explained(capsys: Capture, name: str) -> None:
+    command = import_module(f"revsynth.cli.{name}_command").COMMAND
+    for parameter in command.params:
+        if isinstance(parameter, click.Option):
+            assert parameter.help, parameter.name
+            one_of_some = isinstance(parameter.type, click.Choice) and parameter.name != "negctrl"
+            assert not one_of_some or "Default: " in parameter.help, parameter.name
+    assert f"  revsynth {name} " in run(capsys, name, "--help")[1]
+
+
+LATER = {
+    "build": [
+        "--borrow 1", "--outputs-any-order", "--controlled", "--inverse", "--wrap f", "--angle pi/8",
+        "--free-inputs", "--gates cx+rz", "--method decompose", "--method network", "--method optimal",
+    ],
+    "verify": [
+        "--same", "--inverse", "--controlled", "--wrapped f", "--map a=q", "--clean q", "--msb-first",
+        "--evidence f", "--against f", "--proof f",
+    ],
+}  # fmt: skip
+
+
+@pytest.mark.parametrize(("command", "words"), [(c, words) for c, found in LATER.items() for words in found])
+def test_what_is_not_there_yet_is_refused_by_name(capsys: Capture, command: str, words: str) -> None:
+    option, _, value = words.partition(" ")
+    refusal = refused(capsys, command, *SMALL, *words.split())
+    assert option in refusal
+    assert value in refusal or "No such option" in refusal
