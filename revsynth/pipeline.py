@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 from revsynth.budgeted import lower_the_cheapest
@@ -62,6 +62,7 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
     understanding = understand(spec)
     oracle = options.oracle or natural_oracle(spec)
     check_oracle(spec, oracle)
+    _check_widths(understanding, oracle)
     clock.lap("read")
 
     task = Task(
@@ -127,6 +128,15 @@ def check_oracle(spec: Spec, oracle: Oracle) -> None:
         raise UsageError(
             f"{spec.source}: oracle '{oracle}' does not go with {article}{spec.kind}: "
             f"use {', '.join(allowed[spec.kind])}"
+        )
+
+
+def _check_widths(understanding: Understanding, oracle: Oracle) -> None:
+    function = understanding.function
+    if oracle == "inplace" and function.inputs != function.outputs:
+        raise UsageError(
+            f"{understanding.spec.source}: oracle 'inplace' needs as many output bits as input bits, "
+            f"not {function.outputs} and {function.inputs}: use bit, fresh, compute or embedded"
         )
 
 
@@ -200,10 +210,22 @@ def _synthesise(
         if method.name == "linear" and blocks:
             break
     if not blocks:
-        reasons = "; ".join(f"{trial.method}: {trial.failed}" for trial in tried)
-        text = f"no method serves this spec with oracle '{task.oracle}': {reasons}"
-        raise BudgetError(text) if too_large else UsageError(text)
+        raise _nothing_serves(task, options, tried, too_large)
     return blocks, tried, False
+
+
+def _nothing_serves(
+    task: Task, options: BuildOptions, tried: list[Trial], too_large: bool
+) -> BudgetError | UsageError:
+    """A budget that is too small where more qubits would do, else options that do not go with the spec."""
+    roomy = replace(task, lines=None)
+    short = {method.name for method in METHODS if _asked_for(method, options) and not method.unfit(roomy)}
+    if short and not too_large:
+        misses = (f"{trial.method}: {trial.failed}" for trial in tried if trial.method in short)
+        return BudgetError("nothing fits the budget: " + "; ".join(misses))
+    reasons = "; ".join(f"{trial.method}: {trial.failed}" for trial in tried)
+    text = f"no method serves this spec with oracle '{task.oracle}': {reasons}"
+    return BudgetError(text) if too_large else UsageError(text)
 
 
 def _asked_for(method: Method, options: BuildOptions) -> bool:

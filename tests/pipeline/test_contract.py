@@ -80,3 +80,21 @@ def test_every_format_of_a_build_is_the_same_circuit() -> None:
     for format in ("openqasm3", "openqasm2"):
         assert revsynth.verify(A, text=built.text(format)).holds
     assert built.to_json()["qubits"] == {"a": [0, 1]}
+
+
+@pytest.mark.parametrize("qubits", [0, 2, 4])
+@pytest.mark.parametrize("method", ["auto", "products", "transform"])
+def test_too_few_qubits_are_a_budget_that_nothing_fits(qubits: int, method: str) -> None:
+    spec = revsynth.predicate("a * b == 6", inputs={"a": 3, "b": 2})
+    with pytest.raises(revsynth.BudgetError, match=f"nothing fits the budget: .*{qubits} allowed") as caught:
+        revsynth.build(spec, qubits=qubits, method=method)
+    assert "linear" not in str(caught.value)
+
+
+def test_in_place_needs_as_many_output_bits_as_input_bits() -> None:
+    spec = revsynth.outputs({"f": "a // 2"}, inputs={"a": 3})
+    with pytest.raises(UsageError, match="not 2 and 3: use bit, fresh, compute or embedded"):
+        revsynth.build(spec, oracle="inplace")
+    same = revsynth.outputs({"f": {"value": "a // 2", "bits": 3}}, inputs={"a": 3})
+    with pytest.raises(UsageError, match="inputs 0 and 1 have the same image 0"):
+        revsynth.build(same, oracle="inplace", qubits=9)
