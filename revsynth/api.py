@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any
 
 from revsynth.cascade.model import Cascade
+from revsynth.choice import by_name
 from revsynth.circuit.cost import measure
 from revsynth.circuit.model import Circuit
 from revsynth.errors import BudgetError, RevsynthError, UndecidedError, UsageError
@@ -176,8 +177,13 @@ class Build:
 
     @property
     def method(self) -> str:
-        """The method (and variant) that gave the circuit."""
-        return self._built.block.method
+        """The name of the method that gave the circuit."""
+        return by_name(self._built.block.method)["method"]
+
+    @property
+    def variant(self) -> str:
+        """Which of the method's results it is, in words; empty where there is but one."""
+        return by_name(self._built.block.method).get("variant", "")
 
     @property
     def evidence(self) -> Evidence:
@@ -259,7 +265,7 @@ class Build:
             "title": self.spec.title,
             "oracle": built.oracle,
             "gates": built.options.gates,
-            "method": self.method,
+            **by_name(self._built.block.method),
             "inputs": {word.name: _word_json(word) for word in self.spec.inputs},
             "registers": built.registers,
             **self.counts,

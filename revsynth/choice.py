@@ -19,6 +19,12 @@ from revsynth.options import Aim, BuildOptions
 from revsynth.synthesis.interface import Block
 
 
+def by_name(method: str) -> dict[str, str]:
+    """`products, fewest T` as JSON has it: the method's name alone, and the variant."""
+    name, _, variant = method.partition(", ")
+    return {"method": name} | ({"variant": variant} if variant else {})
+
+
 @dataclass(frozen=True)
 class Trial:
     """What one method (or variant) gave, for the JSON key `tried`."""
@@ -40,7 +46,7 @@ class Trial:
     def to_json(self) -> dict[str, Any]:
         """Only what is known."""
         known = {
-            "method": self.method,
+            **by_name(self.method),
             "t": self.t,
             "qubits": self.qubits,
             "gates": self.gates,

@@ -102,7 +102,8 @@ def _summary(built: Build, output: str | None) -> str:
     function = built.counts
     if function["marked"] is not None:
         lines.append(f"  marked     {function['marked']} of {function['domain']} inputs")
-    lines.append(f"  oracle     {built.oracle}, {built.options.gates}, by {built.method}")
+    how = ", ".join(filter(None, [built.method, built.variant]))
+    lines.append(f"  oracle     {built.oracle}, {built.options.gates}, by {how}")
     lines.extend(cost_lines(built.cost))
     evidence = built.evidence
     lines.append(f"  evidence   {evidence.level}: {evidence.detail or f'{evidence.inputs_checked} inputs'}")

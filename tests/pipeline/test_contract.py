@@ -98,3 +98,13 @@ def test_in_place_needs_as_many_output_bits_as_input_bits() -> None:
     same = revsynth.outputs({"f": {"value": "a // 2", "bits": 3}}, inputs={"a": 3})
     with pytest.raises(UsageError, match="inputs 0 and 1 have the same image 0"):
         revsynth.build(same, oracle="inplace", qubits=9)
+
+
+def test_methods_go_by_their_names_alone_and_variants_stand_apart() -> None:
+    built = revsynth.build(revsynth.predicate("a * b == 6", inputs={"a": 3, "b": 2}))
+    found = built.to_json()
+    assert found["method"] == built.method
+    assert found["variant"] == built.variant
+    names = {"linear", "products", "transform"}
+    assert {found["method"], *(trial["method"] for trial in found["tried"])} <= names
+    assert f"// method: {built.method}, {built.variant}\n" in built.text()
