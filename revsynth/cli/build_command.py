@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import sys
 from collections.abc import Callable
 from typing import TYPE_CHECKING, Any
@@ -9,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from revsynth.cli.common import F, clear_progress, echo_json, load_spec, progress_line, spec_options, warn
+from revsynth.errors import UsageError
 from revsynth.one_line import one_line
 from revsynth.options import CHOICES, BuildOptions
 
@@ -78,6 +80,8 @@ def COMMAND(  # noqa: N802
       revsynth build --where "a * b == 35" --input a=4 --input b=4
     """
     options = BuildOptions(**{name: value for name, value in words.items() if value is not None})
+    if spec is not None and output is not None and _same_file(spec, output):
+        raise UsageError(f"{output}: this is the spec itself: name another file to write")
     wanted = load_spec(spec, where, inputs, constants, domain, from_format)
     from revsynth.api import build
 
@@ -93,6 +97,10 @@ def COMMAND(  # noqa: N802
     if to_stdout:
         sys.stdout.write(built.text())
     click.echo(_summary(built, None if to_stdout else output), err=to_stdout)
+
+
+def _same_file(one: str, other: str) -> bool:
+    return os.path.isfile(one) and os.path.exists(other) and os.path.samefile(one, other)
 
 
 def _summary(built: Build, output: str | None) -> str:

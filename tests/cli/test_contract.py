@@ -310,3 +310,13 @@ def test_what_is_not_there_yet_is_refused_by_name(capsys: Capture, command: str,
     refusal = refused(capsys, command, *SMALL, *words.split())
     assert option in refusal
     assert value in refusal or "No such option" in refusal
+
+
+def test_a_build_does_not_write_over_its_own_spec(capsys: Capture, tmp_path: Path) -> None:
+    text = '[inputs]\na = 2\n[predicate]\nwhere = "a == 3"\n'
+    spec = write_spec(tmp_path, text)
+    link = tmp_path / "link.toml"
+    link.symlink_to(spec)
+    for output in (spec, link):
+        assert "this is the spec itself" in refused(capsys, "build", spec, "-o", output)
+    assert spec.read_text() == text
