@@ -23,6 +23,7 @@ def keep_products(block: Block) -> Block | None:
     first_keep = block.inputs + block.outputs + block.keep
     kept: list[Gate] = []
     known: dict[tuple[int, int], int] = {}
+    made_of: dict[int, list[tuple[int, int]]] = {}
     written = [line < block.inputs for line in range(block.cascade.lines)]
     new_lines = 0
 
@@ -38,12 +39,15 @@ def keep_products(block: Block) -> Block | None:
                 line = block.cascade.lines + new_lines
                 new_lines += 1
                 known[pair] = 2 * line
+                for control in pair:
+                    made_of.setdefault(control >> 1, []).append(pair)
                 kept.append(Gate(line, pair))
             literals = [known[pair], *literals[2:]]
         kept.append(Gate(gate.target, tuple(sorted(literals))))
         written[gate.target] = True
         # A product of a line that has changed is no longer the product of what stands there now.
-        known = {pair: line for pair, line in known.items() if all(c >> 1 != gate.target for c in pair)}
+        for pair in made_of.pop(gate.target, ()):
+            known.pop(pair, None)
     if not new_lines:
         return None
 
