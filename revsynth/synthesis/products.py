@@ -61,8 +61,8 @@ class Products:
             by_t.append(_cheapest_t(part, short, least_t, task))
         found = {"fewest cubes": by_cubes, "fewest T": by_t}
         if task.controls == "positive":
-            plain = [_all_positive(part) for part in groups]
-            if all(len(form) <= 4 * len(short) + 16 for form, short in zip(plain, by_cubes, strict=True)):
+            plain = positive_forms(groups, [4 * len(short) + 16 for short in by_cubes])
+            if plain is not None:
                 found["positive polarity"] = plain
         return _blocks(found, task)
 
@@ -109,13 +109,15 @@ def _cheapest_t(part: Function, short: ExclusiveSum, prices: Sequence[int], task
     return min(found, key=lambda cubes: cubes.price(prices))
 
 
-def _all_positive(part: Function) -> ExclusiveSum:
-    """The algebraic normal form (free values 0); cut short where it is too long to be of use."""
-    coefficients = algebraic_normal_form(part.values, part.inputs)
-    if int(count_by_size(coefficients, part.inputs).sum()) > 1 << 16:
-        everything = np.arange(1 << 16, dtype=np.uint64)
-        return ExclusiveSum(part.inputs, part.outputs, everything, everything, everything)
-    return ExclusiveSum.from_coefficients(coefficients, part.inputs, 0)
+def positive_forms(parts: Sequence[Function], most: Sequence[int]) -> list[ExclusiveSum] | None:
+    """The algebraic normal form of each part, free values 0; None where one has more than `most` products."""
+    found: list[ExclusiveSum] = []
+    for part, limit in zip(parts, most, strict=True):
+        coefficients = algebraic_normal_form(part.values, part.inputs)
+        if int(count_by_size(coefficients, part.inputs).sum()) > limit:
+            return None
+        found.append(ExclusiveSum.from_coefficients(coefficients, part.inputs, 0))
+    return found
 
 
 def _blocks(found: dict[str, list[ExclusiveSum]], task: Task) -> list[Block]:

@@ -11,9 +11,11 @@ from revsynth.cascade import PHASE, Gate
 from revsynth.cascade.price import cascade_t, gate_t
 from revsynth.logic.cubes import Cube, ExclusiveSum
 from revsynth.logic.function import Function
+from revsynth.logic.normal_form import algebraic_normal_form, count_by_size
+from revsynth.logic.truth_table import ALL_ONES, ones
 from revsynth.options import Controls, Oracle
 from revsynth.synthesis.interface import Task
-from revsynth.synthesis.products import PRODUCTS, output_groups, t_prices, to_gates
+from revsynth.synthesis.products import PRODUCTS, output_groups, positive_forms, t_prices, to_gates
 from tests.logic.tables import from_rule, function_of, functions, random_function
 from tests.synthesis.checks import check_block, from_table
 
@@ -68,6 +70,19 @@ def test_a_product_for_two_outputs_is_computed_once() -> None:
         Gate(3, (4,)),
         Gate(3, (0,)),
     ]
+
+
+def test_a_normal_form_is_offered_whole_or_not_at_all() -> None:
+    coefficients = np.full((1, 1 << 11), ALL_ONES ^ np.uint64(1 << 63))
+    values = algebraic_normal_form(coefficients, 17)
+    part = Function(17, 1, values, ones(17)[None], ones(17))
+    products = int(count_by_size(coefficients, 17).sum())
+    assert products > 1 << 16
+    whole = positive_forms([part], [products])
+    assert whole is not None
+    assert len(whole[0]) == products
+    assert np.all(whole[0].feeds == 1)
+    assert positive_forms([part], [products - 1]) is None
 
 
 def test_positive_controls_turn_lines_and_turn_them_back_once() -> None:
