@@ -146,15 +146,19 @@ def _satisfies(clauses: Clauses, index: int) -> bool:
 def _cover_rule(cover: Cover) -> Rule:
     """Look through the rows: on and off outrank free; what no row says is free where 0 means off."""
     unlisted = None if "r" in cover.kind else 0
+    rows = [(_literals(inputs, "01"), _literals(inputs, "1"), outputs) for inputs, outputs in cover.rows]
 
     def rule(index: int, values: Mapping[str, Value]) -> Bits:
-        seen: list[str] = ["" for _ in range(cover.outputs)]
-        for inputs, outputs in cover.rows:
-            if all(c == "-" or int(c) == index >> bit & 1 for bit, c in enumerate(inputs)):
-                seen = [before + character for before, character in zip(seen, outputs, strict=True)]
+        covering = [outputs for care, value, outputs in rows if index & care == value]
+        seen = map("".join, zip(*covering, strict=True)) if covering else [""] * cover.outputs
         return tuple(_covered(said, cover.kind, unlisted) for said in seen)
 
     return rule
+
+
+def _literals(inputs: str, which: str) -> int:
+    """The columns of a row's input part that hold one of these characters; column i is bit i."""
+    return sum(1 << column for column, character in enumerate(inputs) if character in which)
 
 
 def _covered(said: str, kind: str, unlisted: int | None) -> int | None:
