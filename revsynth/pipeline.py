@@ -8,24 +8,22 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import Literal
 
 from revsynth.budgeted import lower_the_cheapest
 from revsynth.choice import Trial, and_count
 from revsynth.circuit.model import Circuit
-from revsynth.errors import BudgetError, UndecidedError, UsageError
+from revsynth.errors import UndecidedError, UsageError
+from revsynth.gather import Gathering
 from revsynth.header import header_lines
 from revsynth.options import BuildOptions, Oracle
 from revsynth.placement import describe_placement, placement_comments
 from revsynth.qasm import Program, read, write
 from revsynth.qasm.names import register_names
-from revsynth.shortening import shorten
 from revsynth.spec.model import Spec
 from revsynth.spec.understand import Understanding, understand
-from revsynth.synthesis.interface import Block, Method, Task
-from revsynth.synthesis.keeping import keep_products
-from revsynth.synthesis.methods import METHODS
+from revsynth.synthesis.interface import Block, Task
 from revsynth.verification import verify_program
 from revsynth.verification.evidence import Evidence, Verdict
 
@@ -76,10 +74,11 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
         lines=options.qubits,
     )
     layout = register_layout(understanding, oracle, options)
-    blocks, unfit, early = _synthesise(task, options, progress, clock.started)
+    gathering = Gathering(task, options, progress)
+    gathering.run()
     clock.lap("synthesise")
-    best, tried = lower_the_cheapest(
-        blocks, lambda block: _registers_for(block, layout), oracle, options, progress
+    best, lowered = lower_the_cheapest(
+        gathering.blocks, lambda block: _registers_for(block, layout), oracle, options, progress
     )
     clock.lap("lower")
 
@@ -98,7 +97,7 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
         placement=placement_comments(best.block, understanding),
         cost=cost,
         evidence=evidence,
-        stopped_early=early,
+        stopped_early=gathering.stopped_early,
     )
     text = write(circuit, format=options.format, header=header)
     if not same_gates(read(text, source=spec.source).circuit, circuit):
@@ -106,7 +105,7 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
     clock.lap("write")
     return Built(
         spec, understanding, options, oracle, best.block, circuit, text, dict(layout.names), cost, evidence,
-        (*unfit, *tried), early, clock.seconds(),
+        (*gathering.trials, *lowered), gathering.stopped_early, clock.seconds(),
     )  # fmt: skip
 
 
@@ -176,63 +175,6 @@ def _registers_for(block: Block, layout: Layout) -> list[tuple[str, int]]:
     if block.keep:
         registers.append(("keep", block.keep))
     return registers
-
-
-def _synthesise(
-    task: Task, options: BuildOptions, progress: Progress, started: float
-) -> tuple[list[Block], list[Trial], bool]:
-    """Run every method that is asked for and fits; reduce what they give."""
-    blocks: list[Block] = []
-    tried: list[Trial] = []
-    too_large = False
-    for method in METHODS:
-        if not _asked_for(method, options):
-            continue
-        reason = method.unfit(task)
-        if reason is not None:
-            tried.append(Trial(method.name, failed=reason))
-            continue
-        if blocks and options.time_limit is not None and time.monotonic() - started > options.time_limit:
-            return blocks, tried, True
-        progress(f"{method.name}: synthesising")
-        try:
-            found = method.synthesise(task, progress)
-        except BudgetError as error:
-            tried.append(Trial(method.name, failed=str(error)))
-            too_large = True
-            continue
-        for block in found:
-            progress(f"{block.method}: reducing {len(block.cascade)} gates")
-            blocks.append(shorten(block, task.oracle, options))
-            kept = keep_products(blocks[-1]) if task.oracle == "compute" else None
-            if kept is not None:
-                blocks.append(kept)
-        if method.name == "linear" and blocks:
-            break
-    if not blocks:
-        raise _nothing_serves(task, options, tried, too_large)
-    return blocks, tried, False
-
-
-def _nothing_serves(
-    task: Task, options: BuildOptions, tried: list[Trial], too_large: bool
-) -> BudgetError | UsageError:
-    """A budget that is too small where more qubits would do, else options that do not go with the spec."""
-    roomy = replace(task, lines=None)
-    short = {method.name for method in METHODS if _asked_for(method, options) and not method.unfit(roomy)}
-    if short and not too_large:
-        misses = (f"{trial.method}: {trial.failed}" for trial in tried if trial.method in short)
-        return BudgetError("nothing fits the budget: " + "; ".join(misses))
-    reasons = "; ".join(f"{trial.method}: {trial.failed}" for trial in tried)
-    text = f"no method serves this spec with oracle '{task.oracle}': {reasons}"
-    return BudgetError(text) if too_large else UsageError(text)
-
-
-def _asked_for(method: Method, options: BuildOptions) -> bool:
-    """`linear` has no name of its own on the command line: it recognises what needs no Toffoli at all."""
-    return options.method in ("auto", method.name) or (
-        method.name == "linear" and options.method == "transform"
-    )
 
 
 def _verify_text(

@@ -225,3 +225,17 @@ def test_a_budget_for_t_or_depth_outranks_the_aim_and_the_aim_holds_within_it() 
         revsynth.build(spec, uncompute="measured", qubits=fewer, t=between)
     shallow = revsynth.build(spec, aim="t", depth=wide.cost["depth"] - 1, uncompute="measured")
     assert shallow.cost["depth"] < wide.cost["depth"]
+
+
+def test_a_time_limit_keeps_the_best_so_far_and_the_file_says_so() -> None:
+    spec = revsynth.predicate("(a * b + a) % 23 < 7", inputs={"a": 4, "b": 4})
+    built = revsynth.build(spec, effort="high", time_limit=0.001)
+    assert built.to_json()["stopped_early"] is True
+    assert "stopped by the time limit" in built.text()
+    assert built.evidence.level == "exhaustive"
+
+
+def test_high_effort_is_never_worse_than_normal() -> None:
+    spec = revsynth.predicate("(a * b + a) % 11 < 4", inputs={"a": 3, "b": 3})
+    normal, high = (revsynth.build(spec, effort=effort) for effort in ("normal", "high"))
+    assert high.cost["t"] <= normal.cost["t"]

@@ -1,0 +1,124 @@
+"""Running the methods of synthesis: every block that they give for a task, shortened, in good time."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+from dataclasses import replace
+
+from revsynth.choice import Trial
+from revsynth.errors import BudgetError, UsageError
+from revsynth.options import BuildOptions, Effort
+from revsynth.shortening import shorten
+from revsynth.synthesis.interface import Block, Method, Task
+from revsynth.synthesis.keeping import keep_products
+from revsynth.synthesis.methods import METHODS
+
+_LADDER: dict[Effort, tuple[Effort, ...]] = {
+    "low": ("low",),
+    "normal": ("low", "normal"),
+    "high": ("low", "normal", "high"),
+}
+"""Levels of effort in turn; without a time limit the cheap ones are skipped, see `_levels`."""
+
+
+class _TimeIsUpError(Exception):
+    """The time limit has passed and there is something to show for it."""
+
+
+class Gathering:
+    """The blocks found so far, what each method said, and whether time ran out."""
+
+    def __init__(self, task: Task, options: BuildOptions, progress: Callable[[str], None]) -> None:
+        self.task = task
+        self.options = options
+        self.blocks: list[Block] = []
+        self.trials: list[Trial] = []
+        self.stopped_early = False
+        self._say = progress
+        self._end = None if options.time_limit is None else time.monotonic() + options.time_limit
+        self._too_large = False
+
+    def run(self) -> None:
+        """Ask every method that is wanted and fits; raises UsageError or BudgetError where none serves."""
+        fit = self._fitting()
+        try:
+            for level in _levels(self.options):
+                for method in fit:
+                    self._ask(method, replace(self.task, effort=level))
+                    if method.name == "linear" and self.blocks:
+                        return
+        except _TimeIsUpError:
+            self.stopped_early = True
+        if not self.blocks:
+            raise self._nothing_serves()
+
+    def _fitting(self) -> list[Method]:
+        fit = []
+        for method in METHODS:
+            if asked_for(method, self.options):
+                reason = method.unfit(self.task)
+                if reason is None:
+                    fit.append(method)
+                else:
+                    self.trials.append(Trial(method.name, failed=reason))
+        return fit
+
+    def _ask(self, method: Method, task: Task) -> None:
+        self._progress(f"{method.name}: synthesising, effort {task.effort}")
+        try:
+            found = method.synthesise(task, self._progress)
+        except BudgetError as error:
+            trial = Trial(method.name, failed=str(error))
+            if trial not in self.trials:
+                self.trials.append(trial)
+            self._too_large = True
+            return
+        for block in found:
+            self._progress(f"{block.method}: reducing {len(block.cascade)} gates")
+            self._add(shorten(block, task.oracle, self.options))
+
+    def _add(self, block: Block) -> None:
+        kept = keep_products(block) if self.task.oracle == "compute" else None
+        for one in (block, kept):
+            if one is not None and not any(_same(one, other) for other in self.blocks):
+                self.blocks.append(one)
+
+    def _progress(self, text: str) -> None:
+        """Passes the text on; every method comes by here now and then, so it is where time is looked at."""
+        self._say(text)
+        if self.blocks and self._end is not None and time.monotonic() > self._end:
+            raise _TimeIsUpError
+
+    def _nothing_serves(self) -> BudgetError | UsageError:
+        """A budget that is too small where more qubits would do, else options that do not suit the spec."""
+        roomy = replace(self.task, lines=None)
+        short = {m.name for m in METHODS if asked_for(m, self.options) and not m.unfit(roomy)}
+        if short and not self._too_large:
+            misses = (f"{trial.method}: {trial.failed}" for trial in self.trials if trial.method in short)
+            return BudgetError("nothing fits the budget: " + "; ".join(misses))
+        reasons = "; ".join(f"{trial.method}: {trial.failed}" for trial in self.trials)
+        text = f"no method serves this spec with oracle '{self.task.oracle}': {reasons}"
+        return BudgetError(text) if self._too_large else UsageError(text)
+
+
+def asked_for(method: Method, options: BuildOptions) -> bool:
+    """`linear` has no name of its own on the command line: it recognises what needs no Toffoli at all."""
+    return options.method in ("auto", method.name) or (
+        method.name == "linear" and options.method == "transform"
+    )
+
+
+def _levels(options: BuildOptions) -> tuple[Effort, ...]:
+    """All levels up to the one asked for where time is limited, so that there is something early.
+
+    High effort takes the results of normal effort along: its search is longer, but not always luckier.
+    """
+    ladder = _LADDER[options.effort]
+    if options.time_limit is not None:
+        return ladder
+    return ladder[1:] if options.effort == "high" else ladder[-1:]
+
+
+def _same(one: Block, other: Block) -> bool:
+    return one.cascade == other.cascade and one.keep == other.keep and one.placement == other.placement
