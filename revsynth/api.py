@@ -206,6 +206,11 @@ class Build:
         return self._built.oracle
 
     @property
+    def stopped_early(self) -> bool:
+        """Whether a time limit ended the search: another run may find better."""
+        return self._built.stopped_early
+
+    @property
     def warnings(self) -> tuple[str, ...]:
         """What the spec may not mean as written."""
         return self._built.understanding.warnings

@@ -109,12 +109,14 @@ def _summary(built: Build, output: str | None) -> str:
     lines = [one_line(built.spec.title or built.spec.source)]
     function = built.counts
     if function["marked"] is not None:
-        lines.append(f"  marked     {function['marked']} of {function['domain']} inputs")
+        lines.append(f"  marked     {function['marked']:,} of {function['domain']:,} inputs")
     how = ", ".join(filter(None, [built.method, built.variant]))
     lines.append(f"  oracle     {built.oracle}, {built.options.gates}, by {how}")
     lines.extend(cost_lines(built.cost))
     evidence = built.evidence
-    lines.append(f"  evidence   {evidence.level}: {evidence.detail or f'{evidence.inputs_checked} inputs'}")
+    lines.append(f"  evidence   {evidence.level}: {evidence.detail or f'{evidence.inputs_checked:,} inputs'}")
+    if built.stopped_early:
+        lines.append("  stopped    by the time limit: the best so far")
     if built.options.format == "plain":
         lines.append(f"  in q       {_places(built.qubit_map())}")
     if output is not None:

@@ -231,6 +231,7 @@ def test_a_time_limit_keeps_the_best_so_far_and_the_file_says_so() -> None:
     spec = revsynth.predicate("(a * b + a) % 23 < 7", inputs={"a": 4, "b": 4})
     built = revsynth.build(spec, effort="high", time_limit=0.001)
     assert built.to_json()["stopped_early"] is True
+    assert built.stopped_early
     assert "stopped by the time limit" in built.text()
     assert built.evidence.level == "exhaustive"
 
