@@ -162,8 +162,11 @@ class Floating:
 
     @staticmethod
     def differs(some: NDArray[Any], other: NDArray[Any]) -> NDArray[np.bool_]:
-        """Which rows of weights differ from one other weight."""
-        return np.asarray((np.abs(some - other) > TOLERANCE).any(axis=1), dtype=np.bool_)
+        """Which rows of weights differ from one other weight, by their roots: amplitudes are compared.
+
+        A chance of 4e-10 is an amplitude of 2e-5, far more than what is let pass in a state.
+        """
+        return np.asarray((np.abs(np.sqrt(some) - np.sqrt(other)) > TOLERANCE).any(axis=1), dtype=np.bool_)
 
     @staticmethod
     def kept(amplitudes: Rows, weight: NDArray[Any]) -> Rows | None:
