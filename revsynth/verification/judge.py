@@ -37,7 +37,7 @@ class Judge:
 
     inputs: int
     remember: bool
-    _free_values: dict[tuple[int, int], Column] = field(default_factory=dict)
+    _free_values: dict[tuple[int, int, int], Column] = field(default_factory=dict)
 
     def first_fault(self, found: Finals, chunk: Chunk) -> Fault | None:
         """The fault in the lowest lane; kinds in the order undefined, output, input, scratch, phase."""
@@ -89,13 +89,29 @@ class Judge:
             base = int(chunk.numbers[0]) & ((1 << self.inputs) - 1)
             small = min(1 << self.inputs, chunk.lanes)
             seen = column & lanes & ((1 << small) - 1)
-            expected = self._free_values.setdefault((number, base), seen)
+            expected = self._recalled(number, base, small, seen)
             copies = ((1 << chunk.lanes) - 1) // ((1 << small) - 1)
             wrong = (column & lanes & ((1 << chunk.lanes) - 1)) ^ (expected * copies)
             if wrong:
                 lane = (wrong & -wrong).bit_length() - 1
                 return Fault(lane, "undefined", final, (qubit,) if qubit >= 0 else (), "start")
         return None
+
+    def _recalled(self, number: int, base: int, size: int, seen: Column) -> Column:
+        """What was seen first at the inputs base ... base + size - 1, and that is `seen` the first time.
+
+        It may have been a larger block that had these inputs in it: blocks get smaller where memory runs
+        short, never larger. Sizes are powers of two.
+        """
+        width = size
+        while width <= 1 << self.inputs:
+            start = base & -width
+            known = self._free_values.get((number, width, start))
+            if known is not None:
+                return known >> (base - start) & ((1 << size) - 1)
+            width *= 2
+        self._free_values[number, size, base] = seen
+        return seen
 
 
 def relative_phases(final: Final, chunk: Chunk) -> tuple[tuple[Column, Column, Column], Column]:

@@ -9,8 +9,14 @@ import pytest
 
 import revsynth
 from revsynth.circuit.model import Circuit, Guard, Kind
+from revsynth.logic.function import Function
+from revsynth.logic.truth_table import ones, pack
 from revsynth.verification import Verdict, sparse, verify_program
 from revsynth.verification.amplitudes import Exact
+from revsynth.verification.forms import Demand
+from revsynth.verification.judge import Judge
+from revsynth.verification.matching import Roles
+from revsynth.verification.outcome import Final, Finals
 from tests.slow_simulator import unitary
 from tests.verification.oracles import as_program, lamp_code, locker_mark
 from tests.verification.textbook import (
@@ -164,6 +170,34 @@ def test_free_outputs_must_not_depend_on_where_the_outputs_start() -> None:
     assert verdict.holds is False
 
 
+def test_free_values_are_compared_though_blocks_get_smaller_on_the_way() -> None:
+    """Where memory runs short, the starting values 0 and 1 of an output are run in blocks of two sizes."""
+    care = pack(np.array([1, 1, 1, 1, 1, 0, 0, 1]))
+    values = pack(np.array([0, 1, 0, 1, 0, 0, 0, 1]))
+    function = Function(3, 1, values[None], care[None], ones(3))
+    demand = Demand(Roles("bit", (0, 1, 2), (3,)), function, 4, (3,))
+    chosen = 0b10101010  # what the circuit does: free values 1 at input 5, 0 at input 6
+
+    def faulty(blocks: list[tuple[int, int]], wrong: int) -> bool:
+        judge = Judge(3, remember=True)
+        for base, bits in blocks:
+            chunk = demand.block(base, bits)
+            numbers = [*chunk.numbers, 0]
+            change = sum(
+                ((chosen >> (number & 7) & 1) ^ (number == wrong)) << lane
+                for lane, number in enumerate(numbers)
+            )
+            end = [*chunk.start[:3], chunk.start[3] ^ change]
+            if judge.first_fault(Finals([Final(end)]), chunk) is not None:
+                return True
+        return False
+
+    for blocks in ([(0, 3), (8, 2), (12, 2)], [(0, 2), (4, 1), (6, 1), (8, 1), (10, 1), (12, 1), (14, 1)]):
+        assert not faulty(blocks, -1)
+        assert faulty(blocks, 13)
+        assert faulty(blocks, 14)
+
+
 def test_twenty_erasures_are_two_runs_at_a_time() -> None:
     spec = revsynth.predicate("a == 1 and b == 1", inputs={"a": 1, "b": 1})
     c = register_circuit(("a", 1), ("b", 1), ("work", 1), bits=20)
@@ -201,6 +235,16 @@ def test_rotations_are_followed_to_one_part_in_a_billion() -> None:
             c.add(Kind.RZ, (0,), angles=(angle / 2,))
             c.add(Kind.RZ, (1,), angles=(angle / 2,))
         assert check(both(), c.build()).holds is holds
+
+
+@pytest.mark.parametrize(("slip", "holds"), [(1e-11, True), (4e-5, False)])
+def test_a_small_amplitude_does_not_slip_through_a_reset_as_a_tiny_chance(slip: float, holds: bool) -> None:
+    """Scratch turned away from 0 by 2e-5 where a = 1 is reset: a chance of 4e-10, an amplitude of 2e-5."""
+    c = register_circuit(("a", 1), ("b", 1), ("work", 1))
+    c.add(Kind.RY, (2,), (0,), angles=(slip,))
+    c.add(Kind.RESET, (2,))
+    c.z(1, (0,))
+    assert check(both(), c.build()).holds is holds
 
 
 @pytest.mark.parametrize(("times", "accuracy"), [(25, "exact integers"), (200, "1e-9")])
