@@ -105,7 +105,7 @@ class _Paulis:
     def unchanged(self, wanted: Sequence[int]) -> list[int]:
         """The qubits whose operator is what it was."""
         wrong = self.failed | self.sign
+        own = {qubit: 1 << number for number, qubit in enumerate(wanted)}
         for qubit, x in enumerate(self.x):
-            own = sum(1 << number for number, owner in enumerate(wanted) if owner == qubit)
-            wrong |= (x ^ own) | self.z[qubit]
+            wrong |= (x ^ own.get(qubit, 0)) | self.z[qubit]
         return [qubit for number, qubit in enumerate(wanted) if not (wrong >> number) & 1]

@@ -24,7 +24,7 @@ FEW = 8
 MANY = 128
 """Branches or runs up to which the bit-sliced engine is used at all."""
 SPARSE_BITS = 11
-"""The same for the sparse engine, to begin with."""
+"""The sparse engine starts with blocks of 2**SPARSE_BITS inputs; smaller ones follow where memory is short."""
 
 
 @dataclass(frozen=True)
@@ -52,13 +52,8 @@ class Engines:
         self._ordered = False
         self.name = ""
 
-    @property
-    def slow(self) -> bool:
-        """Whether the sparse engine is at work."""
-        return self._use_sparse
-
     def fast(self, chunk: Chunk) -> Part | None:
-        """The final states through a fast engine; None, and slow from now on, where neither can follow."""
+        """The final states through a fast engine; None, and never again, where neither can follow."""
         return None if self._use_sparse else self._fast(chunk)
 
     def run_chosen(self, chunk: Chunk) -> Part:

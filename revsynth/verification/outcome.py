@@ -44,7 +44,7 @@ class Final:
 @dataclass(frozen=True)
 class Finals:
     """All records of one set of lanes. `random`: some outcome was not certain, so phases of single records
-    cannot be observed; `measured`: how many operations measured something."""
+    cannot be observed."""
 
     finals: list[Final]
     random: bool = False
