@@ -24,7 +24,7 @@ FEW = 8
 MANY = 128
 """Branches or runs up to which the bit-sliced engine is used at all."""
 SPARSE_BITS = 11
-"""The sparse engine starts with blocks of 2**SPARSE_BITS inputs; smaller ones follow where memory is short."""
+"""The sparse engine starts with blocks of 2**SPARSE_BITS inputs; where memory is short they get smaller."""
 
 
 @dataclass(frozen=True)
