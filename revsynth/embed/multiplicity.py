@@ -17,37 +17,44 @@ MAX_CHOICES = 1 << 12
 
 
 def output_multiplicity(function: Function) -> int:
+    """The smallest possible largest multiplicity, or the upper bound that `bounded_multiplicity` gives."""
+    return bounded_multiplicity(function)[0]
+
+
+def bounded_multiplicity(function: Function) -> tuple[int, bool]:
     """The smallest possible largest multiplicity, at least 1, over the inputs with a fixed output bit.
 
-    Exact where outputs are wholly fixed or wholly free, and with half-free outputs up to `MAX_CHOICES`
-    completions; beyond, an upper bound (each value completed with zeros). Values with as many completions
-    as there are cared inputs never get in the way: one of them is always left.
+    The truth value says whether it is exact: it is where outputs are wholly fixed or wholly free, and with
+    half-free outputs up to `MAX_CHOICES` completions. Beyond, it is an upper bound (each value completed with
+    zeros), exact all the same where wholly fixed values, or all values together, ask for as much. Values with
+    as many completions as there are cared inputs never get in the way: one of them is always left.
     """
     values = unpack_values(function.values, function.inputs)
     care = unpack_values(function.care, function.inputs)
     cared = care != 0
     if not cared.any():
-        return 1
+        return 1, True
     pairs, counts = np.unique(np.stack([care[cared], values[cared]]), axis=1, return_counts=True)
     full = (1 << function.outputs) - 1
     if np.all(pairs[0] == full):
-        return int(counts.max())
+        return int(counts.max()), True
+    low, high = -(-int(counts.sum()) // (full + 1)), int(counts.sum())
     choices = np.int64(1) << (function.outputs - np.bitwise_count(pairs[0]).astype(np.int64))
     tight = choices < counts.sum()
     if choices[tight].sum() > MAX_CHOICES:
-        return int(np.unique(values[cared], return_counts=True)[1].max())
+        most = int(np.unique(values[cared], return_counts=True)[1].max())
+        return most, most == max(low, int(counts[choices == 1].max(initial=0)))
     groups = [
         (int(count), _completions(full & ~int(mask), int(value)))
         for mask, value, count in zip(pairs[0][tight], pairs[1][tight], counts[tight], strict=True)
     ]
-    low, high = -(-int(counts.sum()) // (full + 1)), int(counts.sum())
     while low < high:
         middle = (low + high) // 2
         if _fits(groups, middle):
             high = middle
         else:
             low = middle + 1
-    return low
+    return low, True
 
 
 def _completions(free: int, value: int) -> list[int]:

@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
-from revsynth.embed.multiplicity import output_multiplicity
+from revsynth.embed.multiplicity import bounded_multiplicity
 from revsynth.logic.completion import low_degree_completion
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import algebraic_normal_form, degree
@@ -93,12 +93,16 @@ class OutputFacts:
 
 @dataclass(frozen=True)
 class Embedding:
-    """What embedding in place needs: garbage bits tell apart the inputs with the most frequent output."""
+    """What embedding in place needs: garbage bits tell apart the inputs with the most frequent output.
+
+    exact: whether no choice of free output bits needs less; otherwise all four are upper bounds.
+    """
 
     multiplicity: int
     garbage: int
     lines: int
     constants: int
+    exact: bool = True
 
     def to_json(self) -> dict[str, Any]:
         """Plain data."""
@@ -107,6 +111,7 @@ class Embedding:
             "garbage": self.garbage,
             "lines": self.lines,
             "constant_lines": self.constants,
+            "exact": self.exact,
         }
 
 
@@ -181,8 +186,8 @@ class Analysis:
         return {
             "title": self.title,
             "kind": self.kind,
-            "inputs": {word.name: _word_json(word) for word in self.inputs},
-            "outputs": {word.name: _word_json(word) for word in self.outputs},
+            "inputs": {word.name: word.to_json() for word in self.inputs},
+            "outputs": {word.name: word.to_json() for word in self.outputs},
             "input_bits": self.input_bits,
             "output_bits": self.output_bits,
             "domain": self.domain,
@@ -202,15 +207,6 @@ class Analysis:
             "labels": dict(self.labels),
             "warnings": list(self.warnings),
         }
-
-
-def _word_json(word: Word) -> dict[str, Any]:
-    shown: dict[str, Any] = {"bits": word.bits}
-    if word.signed:
-        shown["signed"] = True
-    if word.count is not None:
-        shown["count"] = word.count
-    return shown
 
 
 def bit_labels(words: Sequence[Word]) -> list[str]:
@@ -341,12 +337,12 @@ def _embedding(function: Function, values: NDArray[np.int64] | None) -> Embeddin
             most = int(np.bincount(values, minlength=1).max())
         else:
             most = int(np.unique(values, return_counts=True)[1].max(initial=0))
-        most = max(most, 1)
+        most, exact = max(most, 1), True
     else:
-        most = output_multiplicity(function)
+        most, exact = bounded_multiplicity(function)
     garbage = (most - 1).bit_length()
     lines = max(function.inputs, function.outputs + garbage)
-    return Embedding(most, garbage, lines, lines - function.inputs)
+    return Embedding(most, garbage, lines, lines - function.inputs, exact)
 
 
 def _permutation_facts(

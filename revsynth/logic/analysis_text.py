@@ -253,12 +253,15 @@ def _embedding(analysis: Analysis) -> Iterator[str]:
         return
     yield "Embedding in place"
     yield _row("same output value", f"for {_plural(found.multiplicity, 'input')} at most")
+    at_most = "" if found.exact else "at most "
     yield _row(
         "lines",
-        f"{found.lines}: the larger of {_plural(analysis.input_bits, 'input bit')} and "
+        f"{at_most}{found.lines}: the larger of {_plural(analysis.input_bits, 'input bit')} and "
         f"{_plural(analysis.output_bits, 'output bit')} + {found.garbage} garbage "
         f"(ceil(log2 {found.multiplicity:,}))",
     )
     if found.constants:
         start = "starts" if found.constants == 1 else "start"
-        yield _row("", f"{_plural(found.constants, 'line')} {start} in a constant")
+        yield _row("", f"{at_most}{_plural(found.constants, 'line')} {start} in a constant")
+    if not found.exact:
+        yield _row("", "free output bits are too many to choose them best: less may do")

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
-from typing import Literal, TypeAlias
+from typing import Any, Literal, TypeAlias
 
 Constant: TypeAlias = "int | bool | list[Constant]"
 FREE: None = None
@@ -36,6 +36,15 @@ class Word:
         else:
             for index in range(self.count):
                 yield f"{self.name}[{index}]", self.bits
+
+    def to_json(self) -> dict[str, Any]:
+        """Bits, and `signed` and `count` where they are not the usual, as a spec file has them."""
+        found: dict[str, Any] = {"bits": self.bits}
+        if self.signed:
+            found["signed"] = True
+        if self.count is not None:
+            found["count"] = self.count
+        return found
 
 
 @dataclass(frozen=True)

@@ -13,6 +13,7 @@ import numpy as np
 
 from revsynth.cascade.model import PHASE, Cascade, Gate
 from revsynth.embed.in_place import Lines, embed, fewest_lines, placements, tables
+from revsynth.embed.multiplicity import bounded_multiplicity
 from revsynth.embed.out_of_place import embed_fresh, embed_xor
 from revsynth.embed.target import ReversibleTarget, complete
 from revsynth.options import Effort
@@ -121,7 +122,9 @@ def _why_not_in_place(task: Task) -> str | None:
     if same.size:
         one, other = int(order[same[0]]), int(order[same[0] + 1])
         return f"not reversible: inputs {one} and {other} have the same image {int(values[one])}"
-    if np.any((care != full) & (care != 0)) and fewest_lines(function) > function.inputs:
+    half_free = bool(np.any((care != full) & (care != 0)))
+    most, exact = bounded_multiplicity(function) if half_free else (1, True)
+    if exact and most > 1:
         return "not reversible: no choice of the free output bits gives every input an image of its own"
     return _over_budget(task, function.inputs)
 

@@ -10,7 +10,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from revsynth.embed.in_place import embed, fewest_lines, placements
-from revsynth.embed.multiplicity import output_multiplicity
+from revsynth.embed.multiplicity import bounded_multiplicity, output_multiplicity
 from revsynth.embed.out_of_place import embed_fresh, embed_xor
 from revsynth.embed.target import complete
 from revsynth.logic.function import Function
@@ -74,7 +74,10 @@ def test_half_free_values_are_spread_best(inputs: int, outputs: int, data: st.Da
 def test_beyond_the_exact_spread_an_upper_bound_is_given() -> None:
     free = [sum(1 << bit for bit in five) for five in itertools.combinations(range(12), 5)]
     care = [0xFFF & ~mask for mask in free] + [0] * (1024 - len(free))
-    assert output_multiplicity(from_table(10, 12, [0] * 1024, care=care)) == len(free)
+    assert bounded_multiplicity(from_table(10, 12, [0] * 1024, care=care)) == (len(free), False)
+    care = care[:200] + [0xFFF] * 400 + [0] * 424
+    function = from_table(10, 12, [0] * 200 + [7] * 400 + [0] * 424, care=care)
+    assert bounded_multiplicity(function) == (400, True)
     assert output_multiplicity(from_table(4, 20, [0] * 16, care=[1] * 16)) == 1
 
 

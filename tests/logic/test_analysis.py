@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import json
 from textwrap import dedent
 
@@ -10,6 +11,7 @@ import pytest
 
 from revsynth.logic.analysis import Analysis, analyse, describe
 from revsynth.logic.analysis_text import WIDTH
+from revsynth.spec.pla import parse_pla
 from revsynth.spec.toml_reader import parse_toml
 from revsynth.spec.understand import understand
 
@@ -100,6 +102,22 @@ def test_an_adder() -> None:
     assert found.embedding is not None
     assert (found.embedding.multiplicity, found.embedding.garbage, found.embedding.lines) == (16, 4, 9)
     assert found.bijective is False
+
+
+def test_lines_that_are_an_upper_bound_are_called_one() -> None:
+    """252 rows whose five don't-cares differ: too many ways for the fewest lines to be worked out."""
+    free = list(itertools.combinations(range(12), 5))[:252]
+    rows = [
+        "".join(str(x >> bit & 1) for bit in range(8))
+        + " "
+        + "".join("-" if b in five else "0" for b in range(12))
+        for x, five in enumerate(free)
+    ]
+    spec = parse_pla("\n".join([".i 8", ".o 12", ".type fdr", *rows]))
+    found = analyse(understand(spec))
+    assert found.embedding is not None
+    assert (found.embedding.lines, found.embedding.exact) == (20, False)
+    assert "at most 20: the larger of" in describe(found)
 
 
 def test_free_values_make_a_degree_smaller() -> None:

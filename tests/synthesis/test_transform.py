@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+
 import numpy as np
 import pytest
 from hypothesis import given
@@ -175,6 +177,16 @@ def test_half_free_images_that_cannot_all_differ_are_refused() -> None:
     assert TRANSFORM.unfit(Task(function, "inplace")) == (
         "not reversible: no choice of the free output bits gives every input an image of its own"
     )
+
+
+def test_half_free_images_are_not_refused_on_the_strength_of_an_upper_bound() -> None:
+    """252 images of 0 with five free bits each can all differ, though that is too many to spread best."""
+    free = [sum(1 << bit for bit in five) for five in itertools.combinations(range(10), 5)]
+    care = [0x3FF & ~mask for mask in free] + [0] * (1024 - len(free))
+    task = Task(from_table(10, 10, [0] * 1024, care=care), "inplace", effort="low")
+    assert TRANSFORM.unfit(task) is None
+    for block in TRANSFORM.synthesise(task):
+        check_block(task, block)
 
 
 def test_too_large_tables_are_refused_with_numbers() -> None:
