@@ -11,7 +11,6 @@ Sasao, "Switching theory for logic synthesis", 1999 (choosing them node by node)
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,14 +24,6 @@ MAX_PARTS = 3_000_000
 """Parts of one level that are still looked at; a random function of 18 inputs has about half of that."""
 
 Indices = NDArray[np.int64]
-
-
-@dataclass(frozen=True)
-class _Level:
-    """The distinct parts after some splits: where the halves f0, f1 and f2 of each are on the next level."""
-
-    children: tuple[Indices, Indices, Indices]
-    choice: NDArray[np.int8]
 
 
 def decompose(

@@ -17,7 +17,7 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from revsynth.logic.truth_table import ALL_ONES, Columns, count_ones, variable
+from revsynth.logic.truth_table import ALL_ONES, Columns, variable
 
 EXHAUSTIVE_INPUTS = 12
 """Up to here every polarity is tried; above, one variable at a time is turned while that helps."""
@@ -170,11 +170,6 @@ def _descend(columns: Columns, inputs: int, price: PolarityPrice, polarity: int)
         turn_variable(state, index)
         polarity ^= 1 << index
         here = cost
-
-
-def is_zero(columns: Columns) -> bool:
-    """True where no bit is set."""
-    return count_ones(columns.ravel()) == 0
 
 
 def _halves(array: Columns, index: int) -> Columns:

@@ -15,8 +15,6 @@ from revsynth.spec.names import FUNCTIONS
 if TYPE_CHECKING:
     from revsynth.spec.checker import Checker, Names
 
-TAKES_GENERATOR = ("sum", "min", "max", "any", "all", "distinct")
-
 
 class Calls:
     """Checks calls on behalf of a checker."""

@@ -11,8 +11,6 @@ from dataclasses import dataclass, field
 from typing import Any, Literal, TypeAlias
 
 Constant: TypeAlias = "int | bool | list[Constant]"
-FREE: None = None
-"""An entry of a table or of `values` that leaves the value free ('-' in the file)."""
 
 
 @dataclass(frozen=True)

@@ -7,7 +7,7 @@ A method is a module in this package with a class that has `name`, `unfit` and `
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import Protocol
 
 from revsynth.cascade.model import Cascade, Line
@@ -70,7 +70,6 @@ class Block:
     keep: int = 0
     work: int = 0
     placement: Placement | None = None
-    notes: tuple[str, ...] = field(default=())
 
     def __post_init__(self) -> None:
         if self.inputs + self.outputs + self.keep + self.work != self.cascade.lines:
