@@ -36,7 +36,7 @@ from revsynth.logic.truth_table import (
     unpack,
     unpack_values,
 )
-from revsynth.spec.layout import decode
+from revsynth.spec.layout import bit_labels, decode
 from revsynth.spec.model import Word
 
 if TYPE_CHECKING:
@@ -209,24 +209,14 @@ class Analysis:
         }
 
 
-def bit_labels(words: Sequence[Word]) -> list[str]:
-    """The names of all bits of the words in order, the lowest first; a one-bit word goes by its own name."""
-    return [
-        name if bits == 1 else f"{name}[{bit}]"
-        for word in words
-        for name, bits in word.elements()
-        for bit in range(bits)
-    ]
-
-
 def analyse(understanding: Understanding) -> Analysis:
     """Work out all facts. About 2^n / 64 word operations for each output bit and pair of inputs, at most."""
     spec, function = understanding.spec, understanding.function
     n = function.inputs
-    names = bit_labels(spec.inputs)
+    names = _bit_labels(spec.inputs)
     predicate = spec.kind == "predicate"
     outputs = understanding.outputs
-    labels = ["marked"] if predicate else bit_labels(outputs)
+    labels = ["marked"] if predicate else _bit_labels(outputs)
     facts = tuple(_output_facts(function, row, labels[row], names) for row in range(function.outputs))
     full = bool(np.all(function.care == last_word_mask(n)))
     joint = function.values if full else np.concatenate([function.values, function.care])
@@ -259,6 +249,10 @@ def analyse(understanding: Understanding) -> Analysis:
         warnings=understanding.warnings,
         labels=spec.labels,
     )
+
+
+def _bit_labels(words: Sequence[Word]) -> list[str]:
+    return bit_labels([element for word in words for element in word.elements()])
 
 
 def _named(mask: int, names: Sequence[str]) -> tuple[str, ...]:

@@ -7,10 +7,11 @@ worse sums allowed with a chance that cools down (S. Kirkpatrick, C. Gelatt, M. 
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
-from revsynth.logic.cube_codes import encode
+from revsynth.logic.cube_codes import decode, encode
 from revsynth.logic.cubes import ExclusiveSum
 from revsynth.logic.random_words import Random
 
@@ -46,14 +47,5 @@ def anneal(
     size = kernels.anneal(
         codes, masks, table, state, cubes.inputs, weights, moves, warm, random, best_codes, best_masks
     )
-    return _decoded(best_codes[:size], best_masks[:size], cubes.inputs, cubes.outputs)
-
-
-def _decoded(codes: np.ndarray, masks: np.ndarray, inputs: int, outputs: int) -> ExclusiveSum:
-    care = np.zeros(len(codes), dtype=np.uint64)
-    value = np.zeros(len(codes), dtype=np.uint64)
-    for i in range(inputs):
-        pair = (codes >> np.uint64(2 * i)) & np.uint64(3)
-        care |= (pair != 3).astype(np.uint64) << np.uint64(i)
-        value |= (pair == 2).astype(np.uint64) << np.uint64(i)
-    return ExclusiveSum(inputs, outputs, care, value, masks.copy()).in_order()
+    found = decode(best_codes[:size], cubes.inputs, cubes.outputs)
+    return replace(found, feeds=best_masks[:size].copy()).in_order()

@@ -89,6 +89,14 @@ def bit_names(words: Sequence[Word]) -> Iterator[str]:
                 yield f"{name}[{bit}]"
 
 
+def bit_labels(elements: Sequence[tuple[str, int]]) -> list[str]:
+    """Names of all bits of words and array elements given as (name, bits), the lowest bit first.
+
+    They are for people: `a[0]`, `a[1]`, `cell[2][0]`, and a one-bit word goes by its own name.
+    """
+    return [name if bits == 1 else f"{name}[{bit}]" for name, bits in elements for bit in range(bits)]
+
+
 def describe(words: Sequence[Word], index: int) -> str:
     """An input in words, for messages: `a = 3, k = -1, cell = [0, 2]`."""
     return ", ".join(f"{name} = {value}" for name, value in decode(words, index).items())

@@ -6,6 +6,7 @@ import keyword
 import re
 
 from revsynth.errors import SpecError
+from revsynth.spec.formula import FUNCTIONS as FORMULA_FUNCTIONS
 
 FUNCTIONS: dict[str, tuple[int, int | None]] = {
     "abs": (1, 1),
@@ -23,7 +24,6 @@ FUNCTIONS: dict[str, tuple[int, int | None]] = {
 }
 """The functions of expressions: fewest and most arguments (None: no limit)."""
 
-FORMULA_FUNCTIONS = ("Xor", "Majority", "OneHot", "OneHot0", "ITE", "And", "Or", "Not")
 STEP_FUNCTIONS = ("rotate",)
 TAKEN = frozenset((*FUNCTIONS, *FORMULA_FUNCTIONS, *STEP_FUNCTIONS))
 """Names that words, constants and loop variables may not have, besides Python's keywords."""

@@ -9,7 +9,7 @@ from typing import Any
 
 from revsynth.circuit.model import Circuit, Kind, Qubit
 from revsynth.one_line import one_line
-from revsynth.spec.layout import decode, describe
+from revsynth.spec.layout import bit_names, decode, describe
 from revsynth.spec.model import Predicate, Word
 from revsynth.spec.understand import Understanding
 from revsynth.verification.decide import Found
@@ -49,7 +49,7 @@ class Teller:
         self, number: int, kind: FaultKind, expected: dict[str, Any], got: dict[str, Any], why: str
     ) -> Counterexample:
         labels = self.understanding.spec.labels
-        names = [name for word in self.understanding.spec.inputs for name in _bit_names(word)]
+        names = bit_names(self.understanding.spec.inputs)
         bits = {labels[name]: number >> bit & 1 for bit, name in enumerate(names) if name in labels}
         return Counterexample(self._inputs(number), kind, expected, got, why, bits)
 
@@ -189,11 +189,6 @@ class Teller:
 
 def _words(words: Sequence[Word], bits: Sequence[int]) -> dict[str, Any]:
     return dict(decode(words, sum(bit << place for place, bit in enumerate(bits))))
-
-
-def _bit_names(word: Word) -> list[str]:
-    """The names of a word's bits as the labels of a spec have them, the lowest first."""
-    return [f"{name}[{bit}]" for name, bits in word.elements() for bit in range(bits)]
 
 
 def _phase(radians: float) -> int | float:

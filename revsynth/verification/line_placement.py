@@ -12,6 +12,8 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
+from revsynth.spec.layout import bit_labels
+
 _COMMENT = re.compile(r"line ([0-9]+): (\S+) before, (\S+) after")
 _ABSENT = -1
 
@@ -70,16 +72,15 @@ def lines_from_comments(
             "nothing says which line of the embedded block holds what: "
             "comment lines like `// line 3: a[1] before, total[0] after` are missing"
         )
-    before = [starts.get(label, _ABSENT) for label in _labels(inputs)]
-    after = [ends.get(label, _ABSENT) for label in _labels(outputs)]
-    for labels, lines, side in ((_labels(inputs), before, "before"), (_labels(outputs), after, "after")):
+    before = [starts.get(label, _ABSENT) for label in bit_labels(inputs)]
+    after = [ends.get(label, _ABSENT) for label in bit_labels(outputs)]
+    for labels, lines, side in (
+        (bit_labels(inputs), before, "before"),
+        (bit_labels(outputs), after, "after"),
+    ):
         if _ABSENT in lines:
             return f"no comment line says where {labels[lines.index(_ABSENT)]} is {side} the block"
     return _checked(before, preset, after, size)
-
-
-def _labels(elements: Elements) -> list[str]:
-    return [name if bits == 1 else f"{name}[{bit}]" for name, bits in elements for bit in range(bits)]
 
 
 def _checked(before: list[int], preset: list[tuple[int, int]], after: list[int], size: int) -> Lines | str:
