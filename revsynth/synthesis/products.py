@@ -13,12 +13,13 @@ import numpy as np
 
 from revsynth.cascade.model import PHASE, Cascade, Gate, literal
 from revsynth.cascade.price import Uncompute, gate_t
+from revsynth.embed.in_place import fewest_lines
 from revsynth.logic.cubes import Cube, ExclusiveSum
 from revsynth.logic.exclusive_sum import cube_prices, minimise, shorten
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import algebraic_normal_form, count_by_size
 from revsynth.options import Controls
-from revsynth.synthesis.interface import Block, Progress, Task, silent
+from revsynth.synthesis.interface import Block, Placement, Progress, Task, silent
 
 GROUP_OUTPUTS = 16
 """Outputs that are minimised together, at most: more seldom share cubes, and cubes must fit 64-bit codes."""
@@ -32,8 +33,11 @@ class Products:
 
     def unfit(self, task: Task) -> str | None:
         """Why an exclusive sum cannot serve the task."""
-        if task.oracle in ("inplace", "embedded"):
-            return f"products are added to lines of their own, so nothing can be '{task.oracle}'"
+        if task.oracle == "inplace":
+            return "products are added to lines of their own, so nothing can be 'inplace'"
+        if task.oracle == "embedded" and fewest_lines(task.function) < lines_needed(task):
+            enough = fewest_lines(task.function)
+            return f"products need {lines_needed(task)} lines, and {enough} are enough for 'embedded'"
         if task.oracle == "phase" and task.function.outputs != 1:
             return f"a phase oracle of products needs one output bit, not {task.function.outputs}"
         needed = lines_needed(task)
@@ -121,15 +125,24 @@ def positive_forms(parts: Sequence[Function], most: Sequence[int]) -> list[Exclu
 
 
 def _blocks(found: dict[str, list[ExclusiveSum]], task: Task) -> list[Block]:
-    outputs = 0 if task.oracle == "phase" else task.function.outputs
     blocks: list[Block] = []
     for variant, sums in found.items():
         cascade = Cascade.from_gates(lines_needed(task), to_gates(sums, task.function.inputs, task))
         if all(cascade != block.cascade for block in blocks):
-            blocks.append(Block(cascade, f"products, {variant}", task.function.inputs, outputs))
+            blocks.append(_block(cascade, f"products, {variant}", task))
     if task.aim in ("t", "depth", "qubits") and len(blocks) > 1:
         blocks[0], blocks[1] = blocks[1], blocks[0]
     return blocks
+
+
+def _block(cascade: Cascade, method: str, task: Task) -> Block:
+    """With the roles of the form; `embedded` has the outputs on the last lines, which start in 0."""
+    inputs, lines = task.function.inputs, cascade.lines
+    if task.oracle != "embedded":
+        return Block(cascade, method, inputs, lines - inputs)
+    outputs = tuple(range(inputs, lines))
+    placement = Placement(tuple(range(inputs)), tuple((line, 0) for line in outputs), outputs)
+    return Block(cascade, method, lines, placement=placement)
 
 
 def to_gates(sums: Sequence[ExclusiveSum], inputs: int, task: Task) -> Iterator[Gate]:
@@ -163,7 +176,7 @@ def _onto_outputs(cubes: ExclusiveSum, first: int, task: Task) -> Iterator[Gate]
     groups: dict[int, list[Cube]] = {}
     for cube in _in_gate_order(cubes):
         groups.setdefault(cube.feeds, []).append(cube)
-    zero_at_start = task.oracle in ("fresh", "compute")
+    zero_at_start = task.oracle in ("fresh", "compute", "embedded")
     written: set[int] = set()
     pending: list[Gate] = []
     for feeds in sorted(groups, key=lambda feeds: (-feeds.bit_count(), feeds)):

@@ -9,6 +9,7 @@ from hypothesis import strategies as st
 
 from revsynth.cascade import PHASE, Gate
 from revsynth.cascade.price import cascade_t, gate_t
+from revsynth.embed.in_place import fewest_lines
 from revsynth.logic.cubes import Cube, ExclusiveSum
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import algebraic_normal_form, count_by_size
@@ -95,7 +96,7 @@ def test_positive_controls_turn_lines_and_turn_them_back_once() -> None:
 def test_unfit_says_why() -> None:
     function = from_table(2, 2, [1, 0, 2, 3])
     assert "nothing can be 'inplace'" in str(PRODUCTS.unfit(Task(function, "inplace")))
-    assert "nothing can be 'embedded'" in str(PRODUCTS.unfit(Task(function, "embedded")))
+    assert "products need 4 lines, and 2 are enough" in str(PRODUCTS.unfit(Task(function, "embedded")))
     assert "needs one output bit, not 2" in str(PRODUCTS.unfit(Task(function, "phase")))
     assert PRODUCTS.unfit(Task(function, "bit", lines=3)) == "products need 4 lines, 3 allowed"
     assert PRODUCTS.unfit(Task(function, "bit", lines=4)) is None
@@ -171,3 +172,12 @@ def test_a_sixteen_input_predicate_stays_small() -> None:
     blocks = PRODUCTS.synthesise(Task(rule, "phase", uncompute="measured"))
     assert len(blocks[0].cascade) == 2
     assert np.all(blocks[0].cascade.target == PHASE)
+
+
+def test_a_predicate_whose_values_are_uneven_is_embedded_with_the_fewest_lines() -> None:
+    function = from_rule(5, lambda x: x % 7 == 3)
+    task = Task(function, "embedded")
+    blocks = PRODUCTS.synthesise(task)
+    for block in blocks:
+        check_block(task, block)
+        assert block.cascade.lines == fewest_lines(function) == 6
