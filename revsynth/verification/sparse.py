@@ -26,7 +26,6 @@ from revsynth.verification.outcome import (
     RevealsError,
     TooLargeError,
     holds,
-    same_bits,
     with_bit,
 )
 from revsynth.verification.plan import Plan
@@ -200,15 +199,24 @@ def _part(
 
 
 def _merge(runs: Sequence[_Run], live: Sequence[int], arithmetic: Arithmetic) -> list[_Run]:
-    """Make runs one that agree in the bits still read and, up to a constant factor, in the state."""
+    """Make runs one that agree in the bits still read and, up to a constant factor, in the state.
+
+    Only runs with the same basis states in the same lanes are compared, so the time is linear in the rows
+    unless many runs differ in their amplitudes alone.
+    """
     kept: list[_Run] = []
+    alike: dict[tuple[Bits, bytes, bytes], list[int]] = {}
+    read = sum(1 << bit for bit in live)
     for run in map(_in_order, runs):
-        for index, other in enumerate(kept):
-            if same_bits(run.bits, other.bits, live) and _same_state(run, other, arithmetic):
+        places = alike.setdefault((run.bits & read, run.lane.tobytes(), run.key.tobytes()), [])
+        for index in places:
+            other = kept[index]
+            if arithmetic.proportional(run.amplitude, other.amplitude):
                 common = tuple(a for a, b in zip(run.record, other.record, strict=False) if a == b)
                 kept[index] = replace(other, record=common)
                 break
         else:
+            places.append(len(kept))
             kept.append(run)
     return kept
 
@@ -216,14 +224,6 @@ def _merge(runs: Sequence[_Run], live: Sequence[int], arithmetic: Arithmetic) ->
 def _in_order(run: _Run) -> _Run:
     order = _sorted(run.lane, run.key)
     return replace(run, lane=run.lane[order], key=run.key[order], amplitude=run.amplitude[order])
-
-
-def _same_state(one: _Run, other: _Run, arithmetic: Arithmetic) -> bool:
-    return (
-        np.array_equal(one.lane, other.lane)
-        and np.array_equal(one.key, other.key)
-        and arithmetic.proportional(one.amplitude, other.amplitude)
-    )
 
 
 def _final(run: _Run, qubits: int, lanes: int, arithmetic: Arithmetic) -> Final:

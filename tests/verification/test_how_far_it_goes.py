@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import subprocess
 import sys
+import time
 
 import numpy as np
 import pytest
@@ -147,3 +148,18 @@ def test_a_predicate_of_eight_inputs_needs_no_compiler() -> None:
         "sys.exit(0 if v.holds and not {'numba', 'pyeda'} & set(sys.modules) else 1)"
     )
     assert subprocess.run([sys.executable, "-c", script], check=False).returncode == 0
+
+
+def test_records_that_never_agree_are_given_up_soon() -> None:
+    """Many measured superpositions: every record differs from every other one, and none can be merged."""
+    c = register_circuit(("a", 2), ("rest", 40), bits=40)
+    for qubit in range(2, 42):
+        c.h(qubit)
+    for qubit in range(2, 42):
+        c.measure(qubit, qubit - 2)
+    spec = revsynth.predicate("a == 1", inputs={"a": 2})
+    started = time.process_time()
+    verdict = verify_program(spec, as_program(c.build()))
+    assert time.process_time() - started < 5
+    assert verdict.holds is None
+    assert "records of measurement outcomes" in verdict.evidence.detail
