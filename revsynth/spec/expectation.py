@@ -6,12 +6,12 @@ reading, clauses and covers are looked up row by row: Python integers, one input
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from typing import TYPE_CHECKING
 
 from revsynth.errors import ExpressionError
 from revsynth.spec.expression import Scope, parse
-from revsynth.spec.formula_reference import read_again, value_of
+from revsynth.spec.formula_reference import read_again, value_of, values_of
 from revsynth.spec.layout import Value, decode, encode, value_range
 from revsynth.spec.model import Clauses, Cover, Output, Outputs, Permutation, Predicate, Word
 from revsynth.spec.reference import evaluate
@@ -49,6 +49,17 @@ class Expectation:
         if self._domain is not None and not self._domain(values):
             return (None,) * self.size
         return self._rule(index, values)
+
+    def at(self, indices: Sequence[int]) -> Iterator[Bits]:
+        """The bits at several inputs, in their order; a formula is evaluated for all of them together."""
+        formula = self.spec.body.formula if isinstance(self.spec.body, Predicate) else None
+        if formula is None:
+            yield from map(self, indices)
+            return
+        nodes = read_again(formula, self.spec.inputs)
+        values = values_of(nodes, [decode(self.spec.inputs, index) for index in indices])
+        for index, value in zip(indices, values, strict=True):
+            yield (value if self.in_domain(index) else None,)
 
     def in_domain(self, index: int) -> bool:
         """Whether an input is inside the domain."""

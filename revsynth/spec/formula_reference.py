@@ -1,14 +1,15 @@
 """A second reading of formulas, on purpose the slow and obvious one: nothing is shared with `formula`.
 
 Innermost brackets first; within brackets one pass for each level of operators, tightest first, as with pencil
-and paper. The result is a list of nodes that is evaluated for one input at a time with Python integers, or
-handed to PyEDA. It expects a formula that `formula` has accepted.
+and paper. The result is a list of nodes, to be evaluated operation by operation on Python integers or handed
+to PyEDA. It expects a formula that `formula` has accepted.
 """
 
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from functools import reduce
 
 from revsynth.errors import ExpressionError
 from revsynth.spec.layout import Value
@@ -16,6 +17,8 @@ from revsynth.spec.model import Word
 
 _SIGNS = ("<=>", "=>", "==", "!=", "&&", "||")
 _SAME = {"!": "~", "&&": "and", "||": "or"}
+_MOST_BITS = 1 << 28
+"""Nodes times inputs that are held at once: 32 MB."""
 _NAMED = ("Xor", "Majority", "OneHot0", "OneHot", "ITE", "And", "Or", "Not")
 
 
@@ -75,39 +78,71 @@ def read_again(text: str, words: Sequence[Word]) -> list[Node]:
 
 def value_of(nodes: Sequence[Node], values: Mapping[str, Value]) -> int:
     """The value (0 or 1) of a formula where the words have these values."""
+    return values_of(nodes, [values])[0]
+
+
+def values_of(nodes: Sequence[Node], inputs: Sequence[Mapping[str, Value]]) -> list[int]:
+    """The value (0 or 1) of a formula at each input, given by its words' values.
+
+    Bit i of every integer on the way belongs to input i, so that Python works on many inputs at once.
+    """
+    together = max(_MOST_BITS // max(len(nodes), 1), 1)
+    found: list[int] = []
+    for start in range(0, len(inputs), together):
+        some = inputs[start : start + together]
+        column = _column(nodes, some)
+        found.extend(column >> place & 1 for place in range(len(some)))
+    return found
+
+
+def _column(nodes: Sequence[Node], inputs: Sequence[Mapping[str, Value]]) -> int:
+    everywhere = (1 << len(inputs)) - 1
+    known: dict[tuple[str, int, int], int] = {}
     found: list[int] = []
     for node in nodes:
         if node.kind == "constant":
-            found.append(node.constant)
+            found.append(everywhere * node.constant)
         elif node.kind == "bit":
-            word = values[node.name]
-            number = word if isinstance(word, int) else word[node.element or 0]
-            found.append(number >> node.bit & 1)
+            place = (node.name, node.element or 0, node.bit)
+            if place not in known:
+                known[place] = sum(_bit_at(node, values) << at for at, values in enumerate(inputs))
+            found.append(known[place])
         else:
-            found.append(int(_operate(node.kind, [found[part] for part in node.parts])))
+            found.append(_operate(node.kind, [found[part] for part in node.parts], everywhere))
     return found[-1]
 
 
-def _operate(kind: str, parts: list[int]) -> bool:
+def _bit_at(node: Node, values: Mapping[str, Value]) -> int:
+    word = values[node.name]
+    number = word if isinstance(word, int) else word[node.element or 0]
+    return number >> node.bit & 1
+
+
+def _operate(kind: str, parts: list[int], everywhere: int) -> int:
     if kind in ("~", "not", "Not"):
-        return not parts[0]
+        return everywhere ^ parts[0]
     if kind in ("&", "and", "And"):
-        return all(parts)
+        return reduce(int.__and__, parts)
     if kind in ("|", "or", "Or"):
-        return any(parts)
-    if kind in ("^", "Xor"):
-        return sum(parts) % 2 == 1
+        return reduce(int.__or__, parts)
+    if kind in ("^", "!=", "Xor"):
+        return reduce(int.__xor__, parts)
     if kind in ("==", "<=>"):
-        return parts[0] == parts[1]
-    if kind == "!=":
-        return parts[0] != parts[1]
+        return everywhere ^ parts[0] ^ parts[1]
     if kind == "=>":
-        return not (parts[0] and not parts[1])
+        return everywhere ^ parts[0] | parts[1]
     if kind == "ITE":
-        return bool(parts[1] if parts[0] else parts[2])
+        return parts[0] & parts[1] | (everywhere ^ parts[0]) & parts[2]
+    return sum(
+        _counted(kind, [part >> at & 1 for part in parts]) << at for at in range(everywhere.bit_length())
+    )
+
+
+def _counted(kind: str, bits: list[int]) -> bool:
+    """The functions that count, at one input."""
     if kind == "Majority":
-        return sum(parts) > len(parts) - sum(parts)
-    return sum(parts) == 1 or (kind == "OneHot0" and sum(parts) == 0)
+        return sum(bits) > len(bits) - sum(bits)
+    return sum(bits) == 1 or (kind == "OneHot0" and sum(bits) == 0)
 
 
 def _split(text: str) -> list[str]:

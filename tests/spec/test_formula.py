@@ -13,9 +13,10 @@ from pyeda.boolalg.expr import expr
 
 from revsynth.errors import ExpressionError
 from revsynth.logic.truth_table import unpack
+from revsynth.spec import formula_reference
 from revsynth.spec.formula import parse_formula
 from revsynth.spec.formula_columns import evaluate_formula
-from revsynth.spec.formula_reference import read_again, value_of
+from revsynth.spec.formula_reference import read_again, value_of, values_of
 from revsynth.spec.layout import bit_names, decode
 from revsynth.spec.model import Word
 from revsynth.spec.pyeda_adapter import second_opinion
@@ -73,6 +74,7 @@ def test_three_readings_agree(text: str, seed: int) -> None:
     nodes = read_again(text, WORDS)
     some = random.Random(seed).sample(range(1 << BITS), 16)
     assert [value_of(nodes, decode(WORDS, index)) for index in some] == found[some].tolist()
+    assert values_of(nodes, [decode(WORDS, index) for index in some]) == found[some].tolist()
     assert second_opinion(text, WORDS, some).tolist() == found[some].tolist()
 
 
@@ -250,3 +252,11 @@ def test_comments_and_line_breaks() -> None:
 def test_names_of_the_bits_cover_the_formula() -> None:
     for index, name in enumerate(bit_names(WORDS)):
         assert np.flatnonzero(column(name))[0] == 1 << index
+
+
+def test_a_formula_of_many_parts_is_evaluated_a_few_inputs_at_a_time(monkeypatch: pytest.MonkeyPatch) -> None:
+    nodes = read_again("Majority(a[0], a[1], k) ^ lamp[0]", WORDS)
+    inputs = [decode(WORDS, index) for index in range(1 << BITS)]
+    at_once = values_of(nodes, inputs)
+    monkeypatch.setattr(formula_reference, "_MOST_BITS", 3 * len(nodes))
+    assert values_of(nodes, inputs) == at_once

@@ -35,6 +35,7 @@ def agree(spec: Spec) -> Understanding:
     understanding = understand(spec)
     expectation = Expectation(understanding)
     assert [expectation(index) for index in range(1 << spec.input_bits)] == rows(understanding)
+    assert list(expectation.at(range(1 << spec.input_bits))) == rows(understanding)
     domain = unpack(understanding.function.domain, spec.input_bits)
     assert [expectation.in_domain(index) for index in range(len(domain))] == domain.astype(bool).tolist()
     return understanding
