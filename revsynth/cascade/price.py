@@ -6,13 +6,10 @@ Sources: a NOT with k controls takes 8k - 9 T with k - 2 clean scratch lines (Ma
 
 from __future__ import annotations
 
-from typing import Literal
-
 import numpy as np
 
 from revsynth.cascade.model import PHASE, Cascade
-
-Uncompute = Literal["unitary", "measured"]
+from revsynth.options import Uncompute
 
 
 def gate_t(controls: int, uncompute: Uncompute) -> int:

@@ -5,9 +5,8 @@ from __future__ import annotations
 from collections.abc import Callable
 
 from revsynth.cascade.model import Cascade
-from revsynth.cascade.price import Uncompute
 from revsynth.errors import UsageError
-from revsynth.options import CHOICES, Controls
+from revsynth.options import CHOICES, Controls, Uncompute
 from revsynth.reduction.lookback import Look, look_back
 from revsynth.reduction.masks import Masks, masked, unmasked
 from revsynth.reduction.rewriting import Rewriter, rewriter

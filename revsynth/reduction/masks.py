@@ -12,7 +12,8 @@ from typing import NamedTuple, TypeAlias
 import numpy as np
 
 from revsynth.cascade.model import PHASE, Cascade, Gate, Line
-from revsynth.cascade.price import Uncompute, gate_t
+from revsynth.cascade.price import gate_t
+from revsynth.options import Uncompute
 
 Masks: TypeAlias = tuple[int, int, int]
 Masked: TypeAlias = tuple[Masks, ...]

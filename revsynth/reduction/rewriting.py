@@ -6,8 +6,7 @@ from functools import lru_cache
 from operator import itemgetter
 from typing import NamedTuple
 
-from revsynth.cascade.price import Uncompute
-from revsynth.options import Controls
+from revsynth.options import Controls, Uncompute
 from revsynth.reduction.masks import Masked, Weight, negatives, weigh
 from revsynth.reduction.rules import RULES
 

@@ -11,9 +11,8 @@ from dataclasses import dataclass
 from typing import Protocol
 
 from revsynth.cascade.model import Cascade, Line
-from revsynth.cascade.price import Uncompute
 from revsynth.logic.function import Function
-from revsynth.options import Aim, Controls, Effort, Oracle
+from revsynth.options import Aim, Controls, Effort, Oracle, Uncompute
 
 Progress = Callable[[str], None]
 """Called now and then with a short line on how far the work is."""

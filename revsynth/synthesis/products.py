@@ -12,13 +12,13 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 
 from revsynth.cascade.model import PHASE, Cascade, Gate, literal
-from revsynth.cascade.price import Uncompute, gate_t
+from revsynth.cascade.price import gate_t
 from revsynth.embed.in_place import fewest_lines
 from revsynth.logic.cubes import Cube, ExclusiveSum
 from revsynth.logic.exclusive_sum import cube_prices, minimise, shorten
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import algebraic_normal_form, count_by_size
-from revsynth.options import Controls
+from revsynth.options import Controls, Uncompute
 from revsynth.synthesis.interface import Block, Placement, Progress, Task, silent
 
 GROUP_OUTPUTS = 16

@@ -14,8 +14,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from revsynth.cascade.model import Cascade
-from revsynth.cascade.price import Uncompute, cascade_t
-from revsynth.options import Aim, Effort
+from revsynth.cascade.price import cascade_t
+from revsynth.options import Aim, Effort, Uncompute
 from revsynth.synthesis.rows import Directions, GateLists, Side, transform_many
 
 SMALL = 8

@@ -15,7 +15,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from revsynth.cascade.model import Cascade
-from revsynth.cascade.price import Uncompute, gate_t
+from revsynth.cascade.price import gate_t
+from revsynth.options import Uncompute
 
 Directions = Literal["one", "both"]
 """`one`: gates are added behind the permutation only; `both`: before it too, whichever side is nearer."""

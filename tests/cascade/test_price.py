@@ -7,7 +7,8 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from revsynth.cascade import PHASE, Cascade, Gate
-from revsynth.cascade.price import Uncompute, cascade_t, gate_t
+from revsynth.cascade.price import cascade_t, gate_t
+from revsynth.options import Uncompute
 from tests.strategies import cascades
 
 

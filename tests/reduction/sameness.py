@@ -6,7 +6,8 @@ import random
 from collections.abc import Iterable
 
 from revsynth.cascade import Cascade, Gate
-from revsynth.cascade.price import Uncompute, cascade_t
+from revsynth.cascade.price import cascade_t
+from revsynth.options import Uncompute
 from revsynth.reduction.masks import Masks, to_gate
 from tests.slow_simulator import run_cascade
 

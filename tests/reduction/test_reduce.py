@@ -12,10 +12,10 @@ from hypothesis import assume, given
 from hypothesis import strategies as st
 
 from revsynth.cascade import PHASE, Cascade, Gate
-from revsynth.cascade.price import Uncompute, cascade_t
+from revsynth.cascade.price import cascade_t
 from revsynth.cascade.simulate import permutation, signs
 from revsynth.errors import UsageError
-from revsynth.options import Controls
+from revsynth.options import Controls, Uncompute
 from revsynth.reduction import reduce
 from revsynth.synthesis.rows import transform_many
 from tests.reduction.sameness import broken, cost, difference, not_worse, some_states
