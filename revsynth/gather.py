@@ -76,7 +76,7 @@ class Gathering:
             return
         for block in found:
             self._progress(f"{block.method}: reducing {len(block.cascade)} gates")
-            self._add(shorten(block, task.oracle, self.options))
+            self._add(shorten(block, task.oracle, self.options, self._progress))
 
     def _add(self, block: Block) -> None:
         kept = keep_products(block) if self.task.oracle == "compute" else None

@@ -8,15 +8,15 @@ from revsynth.cascade.model import PHASE, Cascade, Gate
 from revsynth.options import BuildOptions, Oracle
 from revsynth.reduction import reduce
 from revsynth.reduction.known_lines import drop_superfluous
-from revsynth.synthesis.interface import Block, known_lines
+from revsynth.synthesis.interface import Block, Progress, known_lines, silent
 
 
-def shorten(block: Block, oracle: Oracle, options: BuildOptions) -> Block:
+def shorten(block: Block, oracle: Oracle, options: BuildOptions, progress: Progress = silent) -> Block:
     """The same block in its oracle form, to the fixed point of both; work lines that are left idle go."""
     known = known_lines(block, oracle)
     cascade = drop_superfluous(block.cascade, known)
     while True:
-        reduced = reduce(cascade, controls=options.controls, uncompute=options.uncompute)
+        reduced = reduce(cascade, controls=options.controls, uncompute=options.uncompute, progress=progress)
         cascade = drop_superfluous(reduced, known)
         if len(cascade) == len(reduced) and len(cascade.control) == len(reduced.control):
             return without_idle_work(replace(block, cascade=cascade))

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import random
+
 from hypothesis import given
 from hypothesis import strategies as st
 
@@ -31,3 +33,15 @@ def test_idle_work_lines_go_and_the_others_move_up() -> None:
     block = without_idle_work(Block(Cascade.from_gates(5, gates), "made up", 2, work=3))
     assert block.work == 1
     assert list(block.cascade) == [Gate(2, (0, 2)), Gate(PHASE, (5,)), Gate(2, (0, 2))]
+
+
+def test_reducing_a_long_cascade_says_that_it_is_at_work() -> None:
+    """Each call of progress is also where the time limit is looked at."""
+    draw = random.Random(1)
+    gates = []
+    for _ in range(1300):
+        target, *controls = draw.sample(range(24), 5)
+        gates.append(Gate(target, tuple(sorted(2 * line + draw.randrange(2) for line in controls))))
+    said: list[str] = []
+    shorten(Block(Cascade.from_gates(24, gates), "made up", 24), "inplace", BuildOptions(), said.append)
+    assert said
