@@ -10,10 +10,13 @@ from collections import deque
 import numpy as np
 
 from revsynth.logic.function import Function
-from revsynth.logic.truth_table import unpack_values
+from revsynth.logic.truth_table import unpack, unpack_values
 
 MAX_CHOICES = 1 << 12
 """Half-free values are spread over their completions exactly up to this many (value, completion) pairs."""
+
+MAX_NUMBERED = 63
+"""Output values of more bits than this are not numbered by 64-bit integers."""
 
 
 def output_multiplicity(function: Function) -> int:
@@ -29,6 +32,8 @@ def bounded_multiplicity(function: Function) -> tuple[int, bool]:
     zeros), exact all the same where wholly fixed values, or all values together, ask for as much. Values with
     as many completions as there are cared inputs never get in the way: one of them is always left.
     """
+    if function.outputs > MAX_NUMBERED:
+        return _bounded_by_patterns(function)
     values = unpack_values(function.values, function.inputs)
     care = unpack_values(function.care, function.inputs)
     cared = care != 0
@@ -55,6 +60,21 @@ def bounded_multiplicity(function: Function) -> tuple[int, bool]:
         else:
             low = middle + 1
     return low, True
+
+
+def _bounded_by_patterns(function: Function) -> tuple[int, bool]:
+    """The same for outputs too wide for 64-bit integers: output patterns are told apart, not numbered."""
+    size = 1 << function.inputs
+    free = np.zeros(size, dtype=np.int64)
+    pattern = np.zeros(size, dtype=np.int64)
+    for value, care in zip(function.values, function.care, strict=True):
+        free += 1 - unpack(care, function.inputs).astype(np.int64)
+        longer = 2 * pattern + unpack(value, function.inputs)
+        pattern = np.unique(longer, return_inverse=True)[1]
+    cared = free < function.outputs
+    tight = cared & (np.int64(1) << np.minimum(free, function.inputs + 1) < cared.sum())
+    most = int(np.bincount(pattern[tight]).max(initial=1))
+    return most, most == int(np.bincount(pattern[free == 0]).max(initial=1))
 
 
 def _completions(free: int, value: int) -> list[int]:

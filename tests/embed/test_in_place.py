@@ -14,6 +14,7 @@ from revsynth.embed.multiplicity import bounded_multiplicity, output_multiplicit
 from revsynth.embed.out_of_place import embed_fresh, embed_xor
 from revsynth.embed.target import complete
 from revsynth.logic.function import Function
+from revsynth.logic.truth_table import pack
 from tests.synthesis.checks import from_table
 
 
@@ -69,6 +70,28 @@ def test_half_free_values_are_spread_best(inputs: int, outputs: int, data: st.Da
         default=1,
     )
     assert output_multiplicity(from_table(inputs, outputs, values, care=care)) == max(best, 1)
+
+
+@pytest.mark.parametrize("outputs", [63, 64, 65, 100])
+def test_outputs_wider_than_a_machine_word_are_told_apart(outputs: int) -> None:
+    """Four inputs share a value or not, some of them partly or wholly free."""
+    one, top = 1, 1 << (outputs - 1)
+    full = (1 << outputs) - 1
+    assert bounded_multiplicity(wide(outputs, [0, one, top, one], [full] * 4)) == (2, True)
+    assert bounded_multiplicity(wide(outputs, [0, one, top, top + one], [full] * 4)) == (1, True)
+    assert bounded_multiplicity(wide(outputs, [0, 0, 0, 0], [0, full, full, 0])) == (2, True)
+    assert bounded_multiplicity(wide(outputs, [0, 0, 0, 0], [0, 0, 0, 0])) == (1, True)
+    assert bounded_multiplicity(wide(outputs, [0, one, top, 0], [full, full, full, top])) == (1, True)
+    assert bounded_multiplicity(wide(outputs, [0, one, one, 0], [full, full, full, full - one])) == (2, True)
+
+
+def wide(outputs: int, values: list[int], cares: list[int]) -> Function:
+    """A function of two inputs, whatever the width of its outputs."""
+    columns = [
+        [np.array([value >> bit & 1 for value in rows]) for bit in range(outputs)] for rows in (values, cares)
+    ]
+    packed = [np.stack([pack(column.astype(np.uint8)) for column in side]) for side in columns]
+    return Function(2, outputs, packed[0] & packed[1], packed[1], pack(np.ones(4, dtype=np.uint8)))
 
 
 def test_beyond_the_exact_spread_an_upper_bound_is_given() -> None:
