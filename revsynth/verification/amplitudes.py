@@ -74,6 +74,9 @@ class Exact:
         """Which rows are not 0."""
         return np.asarray(amplitudes.any(axis=1), dtype=np.bool_)
 
+    visible = nonzero
+    """Which rows of a final state count."""
+
     @staticmethod
     def weights(amplitudes: Rows, lane: NDArray[np.int64], lanes: int) -> NDArray[Any]:
         """The sum of |amplitude|**2 a lane, as (u, v) for u + v sqrt(2): shape (lanes, 2), int64."""
@@ -152,8 +155,13 @@ class Floating:
 
     @staticmethod
     def nonzero(amplitudes: Rows) -> NDArray[np.bool_]:
-        """Which rows are not 0."""
+        """Which rows are not 0: those that rounding leaves behind are much smaller than the tolerance."""
         return np.abs(amplitudes) > TOLERANCE * 1e-3
+
+    @staticmethod
+    def visible(amplitudes: Rows) -> NDArray[np.bool_]:
+        """Which rows of a final state count: those beyond the tolerance."""
+        return np.abs(amplitudes) > TOLERANCE
 
     @staticmethod
     def weights(amplitudes: Rows, lane: NDArray[np.int64], lanes: int) -> NDArray[Any]:
@@ -178,8 +186,9 @@ class Floating:
 
     @staticmethod
     def proportional(some: Rows, others: Rows) -> bool:
-        """Whether `others` is one constant times `some`."""
-        return bool((np.abs(some * others[0] - others * some[0]) < TOLERANCE).all())
+        """Whether `others` is one constant times `some`, both of weight 1 a lane, by its largest row."""
+        largest = int(np.argmax(np.abs(some)))
+        return bool((np.abs(others - some * (others[largest] / some[largest])) < TOLERANCE).all())
 
     @staticmethod
     def eighths(amplitudes: Rows, reference: Rows) -> NDArray[np.int64]:

@@ -228,7 +228,8 @@ def _in_order(run: _Run) -> _Run:
 
 def _final(run: _Run, qubits: int, lanes: int, arithmetic: Arithmetic) -> Final:
     """Lanes with one row give columns and phases relative to the reference lane, the last one."""
-    run = _in_order(run)
+    shown = arithmetic.visible(run.amplitude)
+    run = _in_order(replace(run, lane=run.lane[shown], key=run.key[shown], amplitude=run.amplitude[shown]))
     count = np.bincount(run.lane, minlength=lanes)
     first = np.cumsum(count) - count
     key, amplitude = run.key[first], run.amplitude[first]

@@ -12,7 +12,7 @@ from revsynth.circuit.model import Circuit, Guard, Kind
 from revsynth.logic.function import Function
 from revsynth.logic.truth_table import ones, pack
 from revsynth.verification import Verdict, sparse, verify_program
-from revsynth.verification.amplitudes import Exact
+from revsynth.verification.amplitudes import Exact, Floating
 from revsynth.verification.forms import Demand
 from revsynth.verification.judge import Judge
 from revsynth.verification.matching import Roles
@@ -235,6 +235,21 @@ def test_rotations_are_followed_to_one_part_in_a_billion() -> None:
             c.add(Kind.RZ, (0,), angles=(angle / 2,))
             c.add(Kind.RZ, (1,), angles=(angle / 2,))
         assert check(both(), c.build()).holds is holds
+
+
+def test_states_that_differ_behind_a_small_first_amplitude_are_not_proportional() -> None:
+    some = np.array([1e-6, 0.6, 0.8], dtype=np.complex128)
+    assert Floating.proportional(some, 1j * some)
+    assert not Floating.proportional(some, some * np.exp([0.0, 0.0, 0.0005j]))
+    assert not Floating.proportional(some, some[::-1])
+
+
+@pytest.mark.parametrize(("slip", "holds"), [(2e-10, True), (2e-8, False)])
+def test_an_amplitude_below_one_part_in_a_billion_is_no_superposition(slip: float, holds: bool) -> None:
+    c = register_circuit(("a", 1), ("b", 1), ("work", 1))
+    c.z(1, (0,))
+    c.add(Kind.RY, (2,), (0,), angles=(2 * slip,))
+    assert check(both(), c.build()).holds is holds
 
 
 @pytest.mark.parametrize(("slip", "holds"), [(1e-11, True), (4e-5, False)])
