@@ -17,6 +17,8 @@ from revsynth.spec.model import Word
 
 LONGEST_TEXT = 2_000_000
 """Characters of a formula."""
+MOST_DIGITS = 9
+"""Digits of an index; Python refuses to convert very long ones."""
 
 FUNCTIONS: dict[str, int | None] = {
     "Xor": None,
@@ -287,7 +289,9 @@ class _Parser:
                     wrong.start,
                 )
             self.at += 3
-            yield int(number.text) if len(number.text) < 10 else 10**9
+            if len(number.text) > MOST_DIGITS:
+                raise self.error(f"an index of {len(number.text)} digits is out of range", number.start)
+            yield int(number.text)
 
     def shown(self, token: _Token) -> str:
         end = token.start + len(token.text)

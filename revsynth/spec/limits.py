@@ -9,7 +9,7 @@ MAX_STEPS = 200_000
 """Loop iterations of one expression for one input, an upper bound worked out before it runs."""
 
 MAX_DEPTH = 100
-"""Levels of nesting. A chain such as a + b - c + ... of any length is one level."""
+"""Levels of nesting. A chain such as a + b - c + ... is one level; Python reads some thousands of links."""
 
 MAX_CHARACTERS = 100_000
 """Length of an expression's text."""

@@ -30,7 +30,8 @@ TOO_LONG = Refusal(
     "the expression has {length} characters; at most {limit} are allowed", ("a + " * 30_000 + "a",)
 )
 TOO_DEEP = Refusal(
-    "the expression is nested more than {limit} levels deep; split it up",
+    "the expression is nested more than {limit} levels deep, or has thousands of operators in a row; "
+    "split it up",
     (
         "~" * 101 + "a",
         "-" * 20_000 + "a",
@@ -39,6 +40,7 @@ TOO_DEEP = Refusal(
         "a + (" * 101 + "a" + ")" * 101,
         "1 if a else " * 120 + "2",
         "a ** " * 3000 + "a",
+        "a + " * 20_000 + "a",
     ),
 )
 NOT_ASCII = Refusal(

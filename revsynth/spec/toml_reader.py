@@ -6,6 +6,7 @@ right. Expressions stay text here; `understand` parses them.
 
 from __future__ import annotations
 
+import sys
 import tomllib
 from collections.abc import Callable, Mapping, Sequence
 from typing import Any
@@ -34,6 +35,9 @@ def parse_toml(text: str, source: str = "spec.toml") -> Spec:
     except RecursionError:
         raise SpecError("lists or tables are nested too deeply", source=source) from None
     except ValueError as error:
+        if "integer string conversion" in str(error):
+            limit = sys.get_int_max_str_digits()
+            raise SpecError(f"a number has more than {limit:,} digits", source=source) from None
         raise SpecError(f"this is not TOML: {_one_line(str(error), 200)}", source=source) from None
     return spec_from_document(document, source=source)
 
