@@ -35,9 +35,10 @@ class Products:
         """Why an exclusive sum cannot serve the task."""
         if task.oracle == "inplace":
             return "products are added to lines of their own, so nothing can be 'inplace'"
-        if task.oracle == "embedded" and fewest_lines(task.function) < lines_needed(task):
+        if task.oracle == "embedded":
             enough = fewest_lines(task.function)
-            return f"products need {lines_needed(task)} lines, and {enough} are enough for 'embedded'"
+            if enough < lines_needed(task):
+                return f"products need {lines_needed(task)} lines, and {enough} are enough for 'embedded'"
         if task.oracle == "phase" and task.function.outputs != 1:
             return f"a phase oracle of products needs one output bit, not {task.function.outputs}"
         needed = lines_needed(task)
