@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections import deque
 
 import numpy as np
+from numpy.typing import NDArray
 
 from revsynth.logic.function import Function
 from revsynth.logic.truth_table import unpack, unpack_values
@@ -15,6 +16,8 @@ from revsynth.logic.truth_table import unpack, unpack_values
 MAX_CHOICES = 1 << 12
 """Half-free values are spread over their completions exactly up to this many (value, completion) pairs."""
 
+_COUNTED_BITS = 24
+"""Values of up to so many bits are counted in a table: sorting 2**24 of them takes ten times as long."""
 MAX_NUMBERED = 63
 """Output values of more bits than this are not numbered by 64-bit integers."""
 
@@ -39,10 +42,10 @@ def bounded_multiplicity(function: Function) -> tuple[int, bool]:
     cared = care != 0
     if not cared.any():
         return 1, True
-    pairs, counts = np.unique(np.stack([care[cared], values[cared]]), axis=1, return_counts=True)
     full = (1 << function.outputs) - 1
-    if np.all(pairs[0] == full):
-        return int(counts.max()), True
+    if np.all(care[cared] == full):
+        return most_frequent(values[cared], function.outputs), True
+    pairs, counts = np.unique(np.stack([care[cared], values[cared]]), axis=1, return_counts=True)
     low, high = -(-int(counts.sum()) // (full + 1)), int(counts.sum())
     choices = np.int64(1) << (function.outputs - np.bitwise_count(pairs[0]).astype(np.int64))
     tight = choices < counts.sum()
@@ -60,6 +63,13 @@ def bounded_multiplicity(function: Function) -> tuple[int, bool]:
         else:
             low = middle + 1
     return low, True
+
+
+def most_frequent(values: NDArray[np.int64], bits: int) -> int:
+    """How often the most frequent of some values below 2**bits occurs, 1 where there are none."""
+    if bits <= _COUNTED_BITS:
+        return int(np.bincount(values, minlength=1).max(initial=1))
+    return int(np.unique(values, return_counts=True)[1].max(initial=1))
 
 
 def _bounded_by_patterns(function: Function) -> tuple[int, bool]:

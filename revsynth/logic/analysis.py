@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
-from revsynth.embed.multiplicity import bounded_multiplicity
+from revsynth.embed.multiplicity import bounded_multiplicity, most_frequent
 from revsynth.logic.completion import low_degree_completion
 from revsynth.logic.function import Function
 from revsynth.logic.normal_form import algebraic_normal_form, degree
@@ -327,11 +327,7 @@ def _embedding(function: Function, values: NDArray[np.int64] | None) -> Embeddin
         return None
     if values is not None:
         values = values[unpack(function.care[0], function.inputs).astype(bool)]
-        if function.outputs <= 24:
-            most = int(np.bincount(values, minlength=1).max())
-        else:
-            most = int(np.unique(values, return_counts=True)[1].max(initial=0))
-        most, exact = max(most, 1), True
+        most, exact = most_frequent(values, function.outputs), True
     else:
         most, exact = bounded_multiplicity(function)
     garbage = (most - 1).bit_length()
