@@ -1,16 +1,19 @@
 """Holds the table that circuits are compared with against a second reading of the spec.
 
 The table comes from `understand`; `Expectation` evaluates the spec again, one input at a time, in plain
-Python integers and with none of the tabulating code.
+Python integers and with none of the tabulating code. Formulas are put before PyEDA as well.
 """
 
 from __future__ import annotations
 
 import random
 
+from revsynth.errors import ExpressionError
 from revsynth.logic.truth_table import first_inputs
 from revsynth.spec.expectation import Expectation
 from revsynth.spec.layout import describe
+from revsynth.spec.model import Predicate
+from revsynth.spec.pyeda_adapter import second_opinion
 from revsynth.spec.understand import Understanding
 
 ALL_UP_TO = 12
@@ -18,10 +21,14 @@ ALL_UP_TO = 12
 SAMPLE = 4096
 
 
-def cross_check(understanding: Understanding) -> str:
-    """Compare, and say in one line how far it went.
+ASKED = 100_000
+"""PyEDA is asked about so many inputs that this many characters of formula are evaluated at most."""
 
-    Raises AssertionError at a difference: then one of the two readings has a defect.
+
+def cross_check(understanding: Understanding) -> list[str]:
+    """Compare, and say in a line each how far it went; formulas get PyEDA's opinion too.
+
+    Raises AssertionError at a difference: then one of the readings has a defect.
     """
     function = understanding.function
     size = 1 << function.inputs
@@ -35,12 +42,37 @@ def cross_check(understanding: Understanding) -> str:
             for value, care in zip(function.values, function.care, strict=True)
         )
         if table != wanted or inside != expectation.in_domain(index):
-            raise AssertionError(
-                f"a defect of revsynth: the table of {understanding.spec.source} and the spec evaluated "
-                f"again differ at {describe(understanding.spec.inputs, index)}"
-            )
+            raise _difference(understanding, index)
     count = f"all {size}" if len(inputs) == size else f"{len(inputs)} of {size}"
-    return f"spec: its table agrees with a second evaluation in plain integers at {count} inputs"
+    links = [f"spec: its table agrees with a second evaluation in plain integers at {count} inputs"]
+    body = understanding.spec.body
+    if isinstance(body, Predicate) and body.formula is not None:
+        links += _ask_pyeda(understanding, body.formula, list(inputs))
+    return links
+
+
+def _ask_pyeda(understanding: Understanding, formula: str, inputs: list[int]) -> list[str]:
+    """PyEDA's opinion at some of the inputs, spread evenly; none where the formula is too deep for it."""
+    some = inputs[:: max(1, -(-len(inputs) * len(formula) // ASKED))]
+    if len(formula) > ASKED:
+        return []
+    try:
+        opinion = second_opinion(formula, understanding.spec.inputs, some)
+    except ExpressionError:
+        return []
+    function = understanding.function
+    for index, value in zip(some, opinion.tolist(), strict=True):
+        word, bit = index >> 6, index & 63
+        if int(function.care[0, word]) >> bit & 1 and int(function.values[0, word]) >> bit & 1 != value:
+            raise _difference(understanding, index)
+    return [f"spec: PyEDA says the same of the formula at {len(some)} of {1 << function.inputs} inputs"]
+
+
+def _difference(understanding: Understanding, index: int) -> AssertionError:
+    return AssertionError(
+        f"a defect of revsynth: the table of {understanding.spec.source} and the spec evaluated "
+        f"again differ at {describe(understanding.spec.inputs, index)}"
+    )
 
 
 def _sample(understanding: Understanding) -> list[int]:

@@ -47,7 +47,7 @@ def verify_program(
     roles = match(understanding, program, oracle, placement)
     checked = cross_check(understanding)
     decision = decide(program.circuit, roles, understanding.function, progress or (lambda _: None))
-    links = (checked, *_links(decision, roles, program.circuit))
+    links = (*checked, *_links(decision, roles, program.circuit))
     teller = Teller(understanding, program.circuit, decision.demand)
     counterexample = None if decision.found is None else teller.tell(decision.found)
     holds = decision.holds

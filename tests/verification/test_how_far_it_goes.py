@@ -98,7 +98,8 @@ def test_a_wrong_table_is_noticed(bits: int, index: int) -> None:
     """Beyond 12 bits the marked inputs and their neighbours are among those compared."""
     spec = revsynth.predicate(f"v == {index ^ 1}", inputs={"v": bits})
     understanding = understand(spec)
-    assert cross_check(understanding).endswith(f"at {'all 16' if bits == 4 else '4096 of 16384'} inputs")
+    (link,) = cross_check(understanding)
+    assert link.endswith(f"at {'all 16' if bits == 4 else '4096 of 16384'} inputs")
     with pytest.raises(AssertionError, match=f"a defect of revsynth.*differ at v = {index}"):
         cross_check(flipped(understanding, index))
 
@@ -163,3 +164,16 @@ def test_records_that_never_agree_are_given_up_soon() -> None:
     assert time.process_time() - started < 5
     assert verdict.holds is None
     assert "records of measurement outcomes" in verdict.evidence.detail
+
+
+def test_formulas_are_put_before_pyeda_too(monkeypatch: pytest.MonkeyPatch) -> None:
+    spec = revsynth.predicate(formula="a[0] & ~a[1] | (a[2] ^ a[0])", inputs={"a": 3})
+    understanding = understand(spec)
+    assert cross_check(understanding)[1] == "spec: PyEDA says the same of the formula at 8 of 8 inputs"
+    nested = revsynth.predicate(formula="~" * 120 + "a[0]", inputs={"a": 3})
+    assert len(cross_check(understand(nested))) == 1
+    monkeypatch.setattr(
+        "revsynth.verification.cross_check.second_opinion", lambda *_: 1 - np.ones(8, dtype=np.uint8)
+    )
+    with pytest.raises(AssertionError, match=r"differ at a = 1"):
+        cross_check(understanding)
