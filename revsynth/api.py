@@ -271,7 +271,7 @@ class Build:
             "oracle": built.oracle,
             "gates": built.options.gates,
             **by_name(self._built.block.method),
-            "inputs": {word.name: _word_json(word) for word in self.spec.inputs},
+            "inputs": {word.name: word.to_json() for word in self.spec.inputs},
             "registers": built.registers,
             **self.counts,
             "cost": self.cost,
@@ -375,12 +375,3 @@ def _check_spec(spec: Spec) -> None:
         raise UsageError(
             "a spec is wanted, from revsynth.read_spec, predicate, outputs, truth_table or permutation"
         )
-
-
-def _word_json(word: Word) -> dict[str, Any]:
-    found: dict[str, Any] = {"bits": word.bits}
-    if word.signed:
-        found["signed"] = True
-    if word.count is not None:
-        found["count"] = word.count
-    return found
