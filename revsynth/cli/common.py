@@ -18,6 +18,9 @@ if TYPE_CHECKING:
 
 F = TypeVar("F", bound=Callable[..., Any])
 
+MOST_WARNINGS = 8
+"""So many warnings are shown; the rest are counted."""
+
 SAFE_INTEGER = (1 << 53) - 1
 """Integers beyond are written as decimal strings: many JSON readers keep 53 bits."""
 
@@ -113,9 +116,11 @@ def clear_progress() -> None:
 
 
 def warn(texts: tuple[str, ...]) -> None:
-    """Warnings go to standard error, one line each."""
-    for text in texts:
+    """Warnings go to standard error, one line each; of very many, the first few."""
+    for text in texts[:MOST_WARNINGS]:
         click.echo(f"warning: {text}", err=True)
+    if len(texts) > MOST_WARNINGS:
+        click.echo(f"warning: and {len(texts) - MOST_WARNINGS} more", err=True)
 
 
 def echo_json(value: Any) -> None:

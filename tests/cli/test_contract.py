@@ -320,3 +320,11 @@ def test_a_build_does_not_write_over_its_own_spec(capsys: Capture, tmp_path: Pat
     for output in (spec, link):
         assert "this is the spec itself" in refused(capsys, "build", spec, "-o", output)
     assert spec.read_text() == text
+
+
+def test_very_many_warnings_are_counted(capsys: pytest.CaptureFixture[str]) -> None:
+    where = " and ".join(f"a != {number}" for number in range(16, 36))
+    assert main(["inspect", "--where", where, "--input", "a=4"]) == 0
+    warnings = capsys.readouterr().err.splitlines()
+    assert len(warnings) == 9
+    assert warnings[-1] == "warning: and 12 more"
