@@ -291,10 +291,11 @@ class Build:
             found["warnings"] = list(built.understanding.warnings)
         return found
 
-    def _repr_svg_(self) -> str:
-        from revsynth.report.circuit_svg import draw_svg
+    def _repr_svg_(self) -> str | None:
+        from revsynth.report.circuit_svg import MOST_DRAWN, draw_svg
 
-        return draw_svg(self._built.circuit, title=self.spec.title)
+        circuit = self._built.circuit
+        return draw_svg(circuit, title=self.spec.title) if len(circuit) <= MOST_DRAWN else None
 
     def __repr__(self) -> str:
         cost = self._built.cost

@@ -148,11 +148,11 @@ class Cascade:
     def __repr__(self) -> str:
         return f"<Cascade of {len(self)} gates on {self.lines} lines>"
 
-    def _repr_svg_(self) -> str:
-        """The picture that notebooks show; drawing is loaded only then."""
-        from revsynth.report.cascade_svg import draw_cascade
+    def _repr_svg_(self) -> str | None:
+        """The drawing that a notebook shows, if it is not too large; else the text form stands for it."""
+        from revsynth.report.cascade_svg import notebook_picture
 
-        return draw_cascade(self)
+        return notebook_picture(self)
 
     def __add__(self, other: Cascade) -> Cascade:
         """This cascade, then the other (on as many lines)."""

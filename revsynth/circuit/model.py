@@ -205,11 +205,11 @@ class Circuit:
     def __repr__(self) -> str:
         return f"<Circuit of {len(self)} operations on {self.qubits} qubits>"
 
-    def _repr_svg_(self) -> str:
-        """The drawing that a notebook shows; nothing else here knows of another room."""
-        from revsynth.report.circuit_svg import draw_svg
+    def _repr_svg_(self) -> str | None:
+        """The drawing that a notebook shows, if it is not too large; else the text form stands for it."""
+        from revsynth.report.circuit_svg import MOST_DRAWN, draw_svg
 
-        return draw_svg(self)
+        return draw_svg(self) if len(self) <= MOST_DRAWN else None
 
 
 _KINDS = tuple(Kind)

@@ -6,12 +6,17 @@ import math
 
 from revsynth.cascade.model import PHASE, Cascade
 from revsynth.circuit.model import Circuit, CircuitBuilder, Kind
-from revsynth.report.circuit_svg import draw_svg
+from revsynth.report.circuit_svg import MOST_DRAWN, draw_svg
 
 
 def draw_cascade(cascade: Cascade, *, title: str = "") -> str:
     """The picture as SVG text; phase gates are dots and rings without a target."""
     return draw_svg(as_circuit(cascade), title=title)
+
+
+def notebook_picture(cascade: Cascade) -> str | None:
+    """The picture, or None where it would be too large to show."""
+    return draw_cascade(cascade) if len(cascade) <= MOST_DRAWN else None
 
 
 def as_circuit(cascade: Cascade) -> Circuit:

@@ -11,7 +11,11 @@ from collections.abc import Iterator
 from html import escape
 
 from revsynth.circuit.model import Circuit, Kind, Op, Register
+from revsynth.errors import UsageError
 from revsynth.report.columns import Column, label, pack, read_bits, wrap
+
+MOST_DRAWN = 50_000
+"""Operations in a picture at most: some 20 megabytes, which browsers still open."""
 
 PITCH = 26  # from line to line
 BAND_GAP = 10  # between the bands of two registers
@@ -34,7 +38,15 @@ _FILLS = {
 
 
 def draw_svg(circuit: Circuit, *, title: str = "", width: int = 1240) -> str:
-    """The picture as SVG text, about `width` units wide; deterministic, with no outside references."""
+    """The picture as SVG text, about `width` units wide; deterministic, with no outside references.
+
+    Raises UsageError beyond MOST_DRAWN operations.
+    """
+    if len(circuit) > MOST_DRAWN:
+        raise UsageError(
+            f"{len(circuit):,} operations are too many for a picture, {MOST_DRAWN:,} at most: "
+            "draw the cascade or Toffoli gates, or in the terminal"
+        )
     return _Picture(circuit, title, width).draw()
 
 

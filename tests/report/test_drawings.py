@@ -12,6 +12,8 @@ from hypothesis import strategies as st
 
 from revsynth.cascade import PHASE, Cascade, Gate
 from revsynth.circuit.model import Circuit, CircuitBuilder, Guard, Kind
+from revsynth.errors import UsageError
+from revsynth.report import circuit_svg
 from revsynth.report.cascade_svg import draw_cascade
 from revsynth.report.circuit_svg import draw_svg
 from revsynth.report.columns import angle_text, pack, wrap
@@ -163,6 +165,22 @@ def test_angles_are_shown_as_fractions_of_pi_where_they_are(angle: float, text: 
 def test_notebooks_show_circuits_and_cascades_as_pictures() -> None:
     cascade = Cascade.from_gates(3, [Gate(2, (0, 3)), Gate(PHASE, (0, 3, 4)), Gate(PHASE, ())])
     assert cascade._repr_svg_() == draw_cascade(cascade)
-    assert "turns the sign" in cascade._repr_svg_()
+    assert "turns the sign" in draw_cascade(cascade)
     assert example()._repr_svg_() == draw_svg(example())
-    assert Cascade.from_gates(0, [])._repr_svg_().startswith("<svg")
+    assert draw_cascade(Cascade.from_gates(0, [])).startswith("<svg")
+
+
+def test_pictures_that_would_be_too_large_are_refused_in_one_line(monkeypatch: pytest.MonkeyPatch) -> None:
+    builder = CircuitBuilder()
+    builder.add_register("a", 12)
+    for index in range(4000):
+        builder.x(index % 12, (2 * ((index + 5) % 12),))
+    long = draw_svg(builder.build())
+    with pytest.raises(UsageError, match=r"a PDF page ends at 19,200: write \.svg"):
+        svg_to_pdf(long)
+    with pytest.raises(UsageError, match=r"too large for a PNG of 60,000,000 pixels: write \.svg"):
+        svg_to_png(long)
+    monkeypatch.setattr(circuit_svg, "MOST_DRAWN", 3999)
+    with pytest.raises(UsageError, match="4,000 operations are too many for a picture, 3,999 at most"):
+        draw_svg(builder.build())
+    assert builder.build()._repr_svg_() is None
