@@ -1,6 +1,6 @@
 """Berkeley PLA files: the leftmost input column is bit 0 of the word `v`, the leftmost output bit 0 of `f`.
 
-The format is that of the espresso manual page (UC Berkeley, from memory): `.i .o` first, then rows of an
+The format is that of the Berkeley PLA manual page (UC Berkeley, from memory): `.i .o` first, then rows of an
 input part (0 1 -) and an output part (0 1 - ~), with or without blanks or `|` between, over one or more
 lines; `2` may stand for `-`, and `4` for an output's `1`. What an output's entry means depends on `.type`:
 
