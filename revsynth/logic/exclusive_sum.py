@@ -110,7 +110,7 @@ def shorten(
 def starting_sums(
     columns: Columns, inputs: int, prices: Sequence[int], *, effort: Effort = "normal", seed: int = 0
 ) -> list[ExclusiveSum]:
-    """The cheapest of: best common polarity, best polarity a row, decompositions; else a cube an input.
+    """The cheapest of: best common polarity, best polarity a row, decompositions, a cube an input.
 
     A form of one polarity that is not much dearer comes second: regular functions often shorten better
     from it. columns: values, shape (outputs, words). Raises BudgetError where each has more than MAX_CUBES.
@@ -128,7 +128,8 @@ def starting_sums(
             break
         if len(found) <= MAX_CUBES:
             starts.append(found)
-    if not starts:
+    fewest = min((len(start) for start in starts), default=MAX_CUBES + 1)
+    if not starts or count_ones(np.bitwise_or.reduce(columns, axis=0)) < fewest:
         starts.append(_input_by_input(columns, inputs))
     cost = [start.price(prices) for start in starts]
     best = cost.index(min(cost))

@@ -16,7 +16,7 @@ from revsynth.logic.cubes import ExclusiveSum
 from revsynth.logic.exclusive_sum import cube_prices, minimise, shorten, starting_sums
 from revsynth.logic.four_inputs import four_input_sums
 from revsynth.logic.function import Function
-from revsynth.logic.normal_form import count_by_size, fixed_polarity
+from revsynth.logic.normal_form import best_polarity, count_by_size, fixed_polarity
 from revsynth.logic.structure import least_degree
 from revsynth.logic.truth_table import ones, pack
 from tests.logic.tables import from_rule, function_of, functions, random_function
@@ -199,3 +199,15 @@ def test_a_large_function_with_few_ones_gets_a_cube_an_input() -> None:
     sums = exclusive_sum._input_by_input(columns, 8)
     assert np.array_equal(sums.evaluate(), columns)
     assert len(sums) == 4
+
+
+def test_few_ones_are_never_spread_over_more_cubes_than_there_are(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Where decomposition gives up, as it does on 12 + 12 bits, the form of one polarity is far longer."""
+    monkeypatch.setattr(exclusive_sum, "decompose", lambda *_: None)
+    x = np.arange(1 << 12)
+    column = pack(((x & 63) + (x >> 6)) % 64 == 19)[None]
+    _, coefficients = best_polarity(column, 12, cube_prices(12))
+    assert count_by_size(coefficients, 12).sum() > 64
+    (start, *_) = starting_sums(column, 12, cube_prices(12))
+    assert np.array_equal(start.evaluate(), column)
+    assert len(start) == 64
