@@ -105,10 +105,11 @@ class Outputs:
 
 @dataclass(frozen=True)
 class Permutation:
-    """A reversible block in place: images of 0, 1, 2, ... (None where free), or new values of words."""
+    """A reversible block in place: images of 0, 1, 2, ... (None where free), new values of words, or steps."""
 
     values: tuple[int | None, ...] | None = None
     map: Mapping[str, str] | None = None
+    steps: tuple[str, ...] | None = None
 
 
 @dataclass(frozen=True)

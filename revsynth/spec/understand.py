@@ -34,16 +34,34 @@ from revsynth.spec.pla import OUTPUT_WORD
 class Understanding:
     """What a spec means.
 
-    function: 1 output bit for a predicate; all bits of the output words, the first word lowest; n bits for
-              a permutation, which gives the combined index of the image.
-    outputs:  () for a predicate, the output words with their bits, or the input words of a permutation.
-    warnings: what the spec may not mean as written, one line each.
+    tabulated: 1 output bit for a predicate; all bits of the output words, the first word lowest; n bits for
+               a permutation, which gives the combined index of the image. None above MAX_INPUT_BITS input
+               bits: then the function is known by its structure alone.
+    outputs:   () for a predicate, the output words with their bits, or the input words of a permutation.
+    warnings:  what the spec may not mean as written, one line each.
     """
 
     spec: Spec
-    function: Function
+    tabulated: Function | None
     outputs: tuple[Word, ...]
     warnings: tuple[str, ...]
+
+    @property
+    def function(self) -> Function:
+        """The function as a table; raises ValueError where it is too wide for one."""
+        if self.tabulated is None:
+            raise ValueError(f"{self.spec.source}: {self.spec.input_bits} input bits are not tabulated")
+        return self.tabulated
+
+    @property
+    def input_bits(self) -> int:
+        """Bits of all input words."""
+        return self.spec.input_bits
+
+    @property
+    def output_bits(self) -> int:
+        """Bits of f(x): 1 for a predicate."""
+        return sum(word.total_bits for word in self.outputs) if self.outputs else 1
 
 
 def understand(spec: Spec) -> Understanding:

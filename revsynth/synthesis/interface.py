@@ -12,6 +12,7 @@ from typing import Protocol
 
 from revsynth.cascade.model import Cascade, Line
 from revsynth.logic.function import Function
+from revsynth.logic.network_function import NetworkFunction
 from revsynth.options import Aim, Controls, Effort, Oracle, Uncompute
 
 Progress = Callable[[str], None]
@@ -26,10 +27,12 @@ def silent(_: str) -> None:
 class Task:
     """What is to be synthesised.
 
+    tabulated: the function as a table, None where it is too wide for one. network: the same function by its
+    structure, None where only the table is at hand; one of the two is there.
     `lines` is the most lines the cascade may use (None: as many as it likes); lowering may need more.
     """
 
-    function: Function
+    tabulated: Function | None
     oracle: Oracle
     controls: Controls = "mixed"
     uncompute: Uncompute = "unitary"
@@ -37,6 +40,24 @@ class Task:
     effort: Effort = "normal"
     seed: int = 0
     lines: int | None = None
+    network: NetworkFunction | None = None
+
+    @property
+    def function(self) -> Function:
+        """The function as a table; raises ValueError where it is too wide for one."""
+        if self.tabulated is None:
+            raise ValueError("the function is too wide for a table")
+        return self.tabulated
+
+    @property
+    def inputs(self) -> int:
+        """Input bits."""
+        return self.function.inputs if self.network is None else self.network.inputs
+
+    @property
+    def outputs(self) -> int:
+        """Output bits."""
+        return self.function.outputs if self.network is None else self.network.outputs
 
 
 @dataclass(frozen=True)

@@ -232,7 +232,7 @@ def test_the_second_way_notices_a_wrong_table(text: str) -> None:
     for row, index in product(range(function.outputs), range(8)):
         values = function.values.copy()
         values[row] ^= pack(np.arange(8) == index)
-        wrong = replace(understanding, function=replace(function, values=values))
+        wrong = replace(understanding, tabulated=replace(function, values=values))
         assert [i for i in range(8) if rows(wrong)[i] != expectation(i)] == [index]
 
 
