@@ -10,6 +10,8 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 from typing import Any, Literal, TypeAlias
 
+from revsynth.spec.netlist import Netlist
+
 Constant: TypeAlias = "int | bool | list[Constant]"
 
 
@@ -57,6 +59,7 @@ class Predicate:
     table: tuple[int | None, ...] | None = None
     clauses: Clauses | None = None
     cover: Cover | None = None
+    netlist: Netlist | None = None
 
 
 @dataclass(frozen=True)
@@ -97,10 +100,14 @@ class Output:
 
 @dataclass(frozen=True)
 class Outputs:
-    """A classical subroutine: output words in declared order, or the bits of a PLA cover (word `f`)."""
+    """A classical subroutine: output words in declared order, or the bits of a PLA cover (word `f`).
+
+    With a netlist the words say only names and `bits`; its outputs are their bits, the first word lowest.
+    """
 
     words: tuple[Output, ...] = ()
     cover: Cover | None = None
+    netlist: Netlist | None = None
 
 
 @dataclass(frozen=True)
