@@ -11,6 +11,7 @@ from array import array
 from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from heapq import nsmallest
 from typing import NamedTuple
 
 from revsynth.cascade.line_values import LineValues
@@ -32,6 +33,10 @@ def _one(kind: Kind, qubits: int) -> Template:
 FLIP = _one(Kind.X, 1)
 SIGN = _one(Kind.Z, 1)
 COPY = _one(Kind.X, 2)
+
+
+MOST_ZEROS = 256
+"""Lines in 0 that one step takes notice of."""
 
 
 class Step(NamedTuple):
@@ -56,19 +61,25 @@ def steps_of(units: Sequence[Unit], lines: int, known: dict[int, int]) -> list[S
     if not known:
         return [_plain_step(unit) for unit in units]
     state = LineValues.start(lines, known)
+    zero_lines = {line for line in range(lines) if state.is_zero(line)}
     steps: list[Step] = []
     for unit in units:
-        zero_before = [line for line in range(lines) if state.is_zero(line)]
+        before = [t for t in unit.targets if t in zero_lines]
         state.apply(unit.controls, unit.targets)
-        touched = {*unit.targets, *(c >> 1 for c in unit.controls)}
-        zeros = tuple(line for line in zero_before if line not in touched)
-        if not unit.targets:
-            steps.append(_plain_step(unit, zeros))
-            continue
-        before = [t for t in unit.targets if t in zero_before]
         after = [t for t in unit.targets if state.is_zero(t)]
-        steps.append(_not_step(unit, before, after, zeros))
+        zeros: tuple[int, ...] = ()
+        if len(unit.controls) > 2 or (len(unit.controls) == 2 and not (before or after)):
+            zeros = _idle_zeros(unit, zero_lines)
+        zero_lines.difference_update(unit.targets)
+        zero_lines.update(after)
+        steps.append(_not_step(unit, before, after, zeros) if unit.targets else _plain_step(unit, zeros))
     return steps
+
+
+def _idle_zeros(unit: Unit, zero_lines: set[int]) -> tuple[int, ...]:
+    """The first of the lines in 0 that the unit does not touch: as many as any construction could use."""
+    touched = {*unit.targets, *(c >> 1 for c in unit.controls)}
+    return tuple(nsmallest(MOST_ZEROS, zero_lines - touched))
 
 
 def arrange_steps(steps: Sequence[Step], shape: Shape) -> list[Step]:

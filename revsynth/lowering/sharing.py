@@ -53,24 +53,29 @@ def order_units(units: Sequence[Unit], lines: int) -> list[Unit]:
     """The same units, each run of mutually commuting ones ordered so that neighbours share literals."""
     ordered: list[Unit] = []
     run: list[Unit] = []
-    read = changed = 0
+    read = [-1] * lines
+    changed = [-1] * lines
+    number = 0
     for unit in units:
-        targets = sum(1 << line for line in unit.targets)
-        controls = sum(1 << (c >> 1) for c in unit.controls)
-        if targets & read or controls & changed:
+        if any(read[t] == number for t in unit.targets) or any(
+            changed[c >> 1] == number for c in unit.controls
+        ):
             ordered.extend(_chain(run, lines))
             run = []
-            read = changed = 0
+            number += 1
         run.append(unit)
-        read |= controls
-        changed |= targets
+        for control in unit.controls:
+            read[control >> 1] = number
+        for target in unit.targets:
+            changed[target] = number
     ordered.extend(_chain(run, lines))
     return ordered
 
 
 def _chain(run: Sequence[Unit], lines: int) -> list[Unit]:
     """Greedy: from the first on, always the unit with most literals in common with the last one."""
-    if len(run) < 3 or all(len(unit.controls) < 2 for unit in run):
+    few = 2 if lines <= 64 else 3
+    if len(run) < 3 or all(len(unit.controls) < few for unit in run):
         return list(run)
     rows = sorted(run) if len(run) > WINDOW else list(run)
     ordered: list[Unit] = []

@@ -22,8 +22,7 @@ def drop_superfluous(cascade: Cascade, known: Mapping[Line, int]) -> Cascade:
     values = LineValues.start(cascade.lines, dict(known))
     kept: list[Gate] = []
     for gate in cascade:
-        factors = {c: values.values[c >> 1] ^ (ONE if c & 1 else ZERO) for c in gate.controls}
-        controls = tuple(c for c, factor in factors.items() if factor != ONE)
+        controls = tuple(c for c in gate.controls if values.factor(c) != ONE)
         if values.product(controls) == ZERO:
             continue
         kept.append(Gate(gate.target, controls))

@@ -5,7 +5,7 @@ from __future__ import annotations
 from hypothesis import given
 from hypothesis import strategies as st
 
-from revsynth.cascade import Cascade, Gate, line_values
+from revsynth.cascade import Cascade, Gate
 from revsynth.cascade.line_values import LineValues
 from tests.slow_simulator import run_cascade
 from tests.strategies import cascades
@@ -54,11 +54,11 @@ def test_constants_are_followed():
     assert zeros_after(3, [Gate(1, (0,)), Gate(2, (0, 3))], {1: 0, 2: 0}) == [2]
 
 
-def test_long_values_are_forgotten_not_guessed(monkeypatch):
-    monkeypatch.setattr(line_values, "LONGEST", 2)
-    adds = [Gate(4, (2 * line,)) for line in range(4)]
-    assert zeros_after(5, adds * 2, {4: 0}) == []
-    assert zeros_after(5, adds[:2] * 2, {4: 0}) == [4]
+def test_long_sums_are_followed():
+    adds = [Gate(100, (2 * line,)) for line in range(100)]
+    assert zeros_after(101, adds, {100: 0}) == []
+    assert zeros_after(101, adds + adds[::-1], {100: 0}) == [100]
+    assert zeros_after(101, adds[:2] * 2, {100: 0}) == [100]
 
 
 @given(cascades(max_lines=5, max_gates=8))
