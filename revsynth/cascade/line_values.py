@@ -1,8 +1,8 @@
 """Which lines are known to be in 0, before and after every gate, whatever the inputs are.
 
 Each line's value is an XOR of *atoms*: the inputs, the constant 1, and products. It is followed as a
-signature: every atom has 128 random bits (from a fixed seed), a value the XOR of its atoms' bits. Equal values
-have equal signatures; different values are taken for equal with a chance of about one in 10^30 for a million
+signature: every atom has 128 random bits (from a fixed seed), a value the XOR of its atoms' bits. Equal
+values have equal signatures; different values are taken for equal with a chance of about one in 10^26 for a million
 of them, and the circuit is verified afterwards, so a coincidence can cost a build but not a wrong circuit.
 """
 
