@@ -2,8 +2,9 @@
 
 Each line's value is an XOR of *atoms*: the inputs, the constant 1, and products. It is followed as a
 signature: every atom has 128 random bits (from a fixed seed), a value the XOR of its atoms' bits. Equal
-values have equal signatures; different values are taken for equal with a chance of about one in 10^26 for a million
-of them, and the circuit is verified afterwards, so a coincidence can cost a build but not a wrong circuit.
+values have equal signatures; different values are taken for equal with a chance of about one in 10^26 for
+a million of them, and the circuit is verified afterwards, so a coincidence can cost a build but not a wrong
+circuit.
 """
 
 from __future__ import annotations
