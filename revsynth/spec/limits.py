@@ -15,4 +15,7 @@ MAX_CHARACTERS = 100_000
 """Length of an expression's text."""
 
 MAX_INPUT_BITS = 24
-"""Input bits of an expression that is evaluated for every input."""
+"""Input bits of a spec that is evaluated for every input."""
+
+MAX_WIDE_BITS = 1 << 16
+"""Input bits of a spec that is never tabulated."""
