@@ -1,8 +1,8 @@
 """ISCAS bench files: `INPUT(a)`, `OUTPUT(f)`, `f = NAND(a, b)`, one a line in any order, `#` comments.
 
-The format is that of Brglez and Fujiwara, "A neutral netlist of 10 combinational benchmark circuits", ISCAS 1985
-(from memory). Gates: AND OR NAND NOR XOR XNOR of one or more operands (XNOR is the complement of the parity),
-NOT, BUF or BUFF of one; in capitals or not. Flip-flops are refused.
+The format is that of Brglez and Fujiwara, "A neutral netlist of 10 combinational benchmark circuits", ISCAS
+1985 (from memory). Gates: AND OR NAND NOR XOR XNOR of one or more operands (XNOR is the complement of the
+parity), NOT, BUF or BUFF of one; in capitals or not. Flip-flops are refused.
 """
 
 from __future__ import annotations
@@ -55,10 +55,8 @@ def _take(netlist: NamedNetlist, number: int, code: str) -> None:
         raise netlist.error(number, f"INPUT(a), OUTPUT(a) or a = GATE(b, c) is wanted, not {shown(code)}")
     name, word = gate[1], gate[2].upper()
     if word in _FLIP_FLOPS:
-        raise netlist.error(
-            number, f"{word} is a flip-flop: only combinational netlists have a function; cut it into an input "
-            "and an output"
-        )  # fmt: skip
+        reason = "only combinational netlists have a function; cut it into an input and an output"
+        raise netlist.error(number, f"{word} is a flip-flop: {reason}")
     if word not in _GATES:
         raise netlist.error(number, f"{shown(gate[2])} is unknown: {' '.join(_GATES)} are known")
     operands = [operand.strip() for operand in gate[3].split(",")]

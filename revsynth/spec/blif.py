@@ -1,9 +1,10 @@
 """Combinational BLIF: one `.model` of `.names` tables over named signals.
 
-The format is that of "Berkeley Logic Interchange Format (BLIF)", University of California, Berkeley, 1992 (from
-memory): `#` starts a comment, a backslash at the end continues a line, the rows of `.names` say where the output
-is 1 (or, all of them, where it is 0), and a table without rows is 0. `.inputs` and `.outputs` may be given in
-several lines; left out, they are the signals that no table makes, and those that no table reads.
+The format is that of "Berkeley Logic Interchange Format (BLIF)", University of California, Berkeley, 1992
+(from memory): `#` starts a comment, a backslash at the end continues a line, the rows of `.names` say where
+the output is 1 (or, all of them, where it is 0), and a table without rows is 0. `.inputs` and `.outputs`
+may be given in several lines; left out, they are the signals that no table makes, and those that no table
+reads.
 """
 
 from __future__ import annotations
@@ -27,9 +28,22 @@ _REFUSED = {
     ".mv": "a variable of many values: 0/1 signals only",
 }
 _IGNORED = frozenset(
-    ".area .delay .wire .wire_load_slope .input_arrival .output_required .default_input_arrival "
-    ".default_output_required .input_drive .default_input_drive .max_input_load .default_max_input_load "
-    ".output_load .default_output_load".split()
+    (
+        ".area",
+        ".delay",
+        ".wire",
+        ".wire_load_slope",
+        ".input_arrival",
+        ".output_required",
+        ".default_input_arrival",
+        ".default_output_required",
+        ".input_drive",
+        ".default_input_drive",
+        ".max_input_load",
+        ".default_max_input_load",
+        ".output_load",
+        ".default_output_load",
+    )
 )
 """Timing and area: they change nothing of the function."""
 _KNOWN = ".model .inputs .outputs .names .end"
@@ -84,7 +98,11 @@ class _Reader:
         if keyword in _REFUSED:
             raise self.error(number, f"{keyword} is {_REFUSED[keyword]}")
         if self.ended and keyword != ".end":
-            what = "a second model: flatten the hierarchy into one" if keyword == ".model" else "more behind .end"
+            what = (
+                "a second model: flatten the hierarchy into one"
+                if keyword == ".model"
+                else "more behind .end"
+            )
             raise self.error(number, f"{what}; a file holds one model")
         if keyword == ".model":
             if self.declared[".model"] or self.netlist.gates:

@@ -1,7 +1,8 @@
 """What a spec wants at one input, worked out a second time with none of the tabulating code.
 
 Verification compares with this. Expressions go through the reference evaluator, formulas through their second
-reading, clauses and covers are looked up row by row: Python integers, one input at a time.
+reading, clauses and covers are looked up row by row, netlists gate by gate: Python integers, one input at
+a time.
 """
 
 from __future__ import annotations
@@ -14,6 +15,8 @@ from revsynth.spec.expression import Scope, parse
 from revsynth.spec.formula_reference import read_again, value_of, values_of
 from revsynth.spec.layout import Value, decode, encode, value_range
 from revsynth.spec.model import Clauses, Cover, Output, Outputs, Permutation, Predicate, Word
+from revsynth.spec.netlist import Netlist
+from revsynth.spec.netlist_reference import netlist_values
 from revsynth.spec.reference import evaluate
 
 if TYPE_CHECKING:
@@ -51,8 +54,14 @@ class Expectation:
         return self._rule(index, values)
 
     def at(self, indices: Sequence[int]) -> Iterator[Bits]:
-        """The bits at several inputs, in their order; a formula is evaluated for all of them together."""
-        formula = self.spec.body.formula if isinstance(self.spec.body, Predicate) else None
+        """The bits at several inputs, in order; formulas and netlists are evaluated for all together."""
+        body = self.spec.body
+        netlist = None if isinstance(body, Permutation) else body.netlist
+        if netlist is not None:
+            for index, bits in zip(indices, netlist_values(netlist, indices), strict=True):
+                yield bits if self.in_domain(index) else (None,) * self.size
+            return
+        formula = body.formula if isinstance(body, Predicate) else None
         if formula is None:
             yield from map(self, indices)
             return
@@ -73,7 +82,9 @@ class Expectation:
         if isinstance(body, Predicate):
             return self._predicate(body)
         if isinstance(body, Outputs):
-            return _cover_rule(body.cover) if body.cover is not None else self._outputs(body)
+            if body.cover is not None:
+                return _cover_rule(body.cover)
+            return self._outputs(body) if body.netlist is None else _netlist_rule(body.netlist)
         return self._permutation(body)
 
     def _predicate(self, body: Predicate) -> Rule:
@@ -88,6 +99,8 @@ class Expectation:
             return lambda index, values: (table[index],)
         if body.cover is not None:
             return _cover_rule(body.cover)
+        if body.netlist is not None:
+            return _netlist_rule(body.netlist)
         clauses = body.clauses or Clauses(0, ())
         return lambda index, values: (int(_satisfies(clauses, index)),)
 
@@ -152,6 +165,10 @@ def _satisfies(clauses: Clauses, index: int) -> bool:
     return all(any(map(holds, clause)) for clause in clauses.clauses) and all(
         sum(map(holds, clause)) % 2 == 1 for clause in clauses.xor_clauses
     )
+
+
+def _netlist_rule(netlist: Netlist) -> Rule:
+    return lambda index, values: netlist_values(netlist, (index,))[0]
 
 
 def _cover_rule(cover: Cover) -> Rule:

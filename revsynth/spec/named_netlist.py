@@ -1,4 +1,4 @@
-"""Netlists whose signals have names, collected line by line in any order, as BLIF and bench files give them."""
+"""Netlists of named signals, collected line by line in any order, as BLIF and bench files give them."""
 
 from __future__ import annotations
 
@@ -61,7 +61,9 @@ class NamedNetlist:
     ) -> None:
         """Make a signal by a gate. Raises SpecError where it is an input or made already."""
         if name in self.inputs:
-            raise self.error(line, f"{shown(name)} is an input (line {self.inputs[name]}): no gate may make it")
+            raise self.error(
+                line, f"{shown(name)} is an input (line {self.inputs[name]}): no gate may make it"
+            )
         self._refuse_second_maker(name, line)
         self.gates[name] = Definition(kind, tuple(operands), tuple(rows), inverted, line)
 

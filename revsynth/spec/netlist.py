@@ -8,7 +8,7 @@ translate it on their own.
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Literal, NamedTuple, TypeAlias, TypeVar
 
@@ -70,30 +70,30 @@ class LoopError(Exception):
 
 
 def in_order(operands: Mapping[Name, Sequence[Name]]) -> list[Name]:
-    """The gates, each behind those that it reads; otherwise as they are listed. Names without a gate are inputs.
+    """The gates, each behind those that it reads; otherwise as they are listed.
 
-    Raises LoopError where that cannot be. Linear in time, without recursion.
+    Names without an entry are inputs. Linear in time, without recursion. Raises LoopError where gates feed
+    each other in a circle.
     """
     done: set[Name] = set()
     order: list[Name] = []
     for first in operands:
         if first in done:
             continue
-        path = [(first, iter(operands[first]))]
-        open_names = {first}
+        path: list[tuple[Name, Iterator[Name]]] = [(first, iter(operands[first]))]
+        waiting = {first}
         while path:
             name, rest = path[-1]
-            for needed in rest:
-                if needed in open_names:
-                    names = [entry for entry, _ in path]
-                    raise LoopError([*names[names.index(needed) :], needed])
-                if needed not in done and needed in operands:
-                    path.append((needed, iter(operands[needed])))
-                    open_names.add(needed)
-                    break
-            else:
+            needed: Name | None = next((n for n in rest if n in operands and n not in done), None)
+            if needed is None:
                 path.pop()
-                open_names.discard(name)
+                waiting.discard(name)
                 done.add(name)
                 order.append(name)
+            elif needed in waiting:
+                names: list[Name] = [entry for entry, _ in path]
+                raise LoopError([*names[names.index(needed) :], needed])
+            else:
+                path.append((needed, iter(operands[needed])))
+                waiting.add(needed)
     return order

@@ -1,7 +1,7 @@
 """From the bits of a netlist to the words of a spec: by their names where they tell, else `v` and `f`.
 
-Where all names are of the form `name[i]`, with every i from 0 on, they become words, in the order in which the
-words are first named. Otherwise bit i of the file is bit i of `v` (or of `f`), and its name is a label.
+Where all names are of the form `name[i]`, with every i from 0 on, they become words, in the order in which
+the words are first named. Otherwise bit i of the file is bit i of `v` (or of `f`), and its name is a label.
 """
 
 from __future__ import annotations

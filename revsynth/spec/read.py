@@ -6,8 +6,13 @@ import sys
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from pathlib import Path
+from typing import Any, Literal
 
 from revsynth.errors import SpecError
+from revsynth.spec.aiger import parse_aiger
+from revsynth.spec.bench import parse_bench
+from revsynth.spec.blif import parse_blif
+from revsynth.spec.bristol import parse_bristol
 from revsynth.spec.dimacs import parse_dimacs
 from revsynth.spec.model import Spec
 from revsynth.spec.pla import parse_pla
@@ -18,22 +23,26 @@ STANDARD_INPUT = "-"
 
 @dataclass(frozen=True)
 class Reader:
-    """A format: its name for `--from`, its file endings, and text to Spec.
+    """A format: its name for `--from`, its file endings, and what the file holds to Spec.
 
-    strict: the whole text must be UTF-8; otherwise only what matters (comments of old files may be in
-    any encoding).
+    holds: "utf-8" where the whole text must be; "text" where only what matters must be (comments of old files
+    may be in any encoding); "bytes" where `parse` wants them as they are.
     """
 
     name: str
     endings: tuple[str, ...]
-    parse: Callable[[str, str], Spec]
-    strict: bool
+    parse: Callable[[Any, str], Spec]
+    holds: Literal["utf-8", "text", "bytes"] = "text"
 
 
 READERS = (
-    Reader("toml", (".toml",), parse_toml, strict=True),
-    Reader("cnf", (".cnf", ".dimacs"), parse_dimacs, strict=False),
-    Reader("pla", (".pla",), parse_pla, strict=False),
+    Reader("toml", (".toml",), parse_toml, holds="utf-8"),
+    Reader("cnf", (".cnf", ".dimacs"), parse_dimacs),
+    Reader("pla", (".pla",), parse_pla),
+    Reader("blif", (".blif",), parse_blif),
+    Reader("bench", (".bench",), parse_bench),
+    Reader("aiger", (".aag", ".aig"), parse_aiger, holds="bytes"),
+    Reader("bristol", (".bristol",), parse_bristol),
 )
 
 
@@ -45,9 +54,12 @@ def read_spec(path: str, *, from_format: str | None = None) -> Spec:
     from_stdin = path == STANDARD_INPUT
     source = "standard input" if from_stdin else _one_line(Path(path).name)
     reader = _reader(path, from_format)
-    text = _decode(_bytes(path), source if from_stdin else _one_line(path), reader.strict)
+    content: bytes | str = _bytes(path)
+    if isinstance(content, bytes) and reader.holds != "bytes":
+        shown = source if from_stdin else _one_line(path)
+        content = _decode(content, shown, strict=reader.holds == "utf-8")
     told_by_name = reader is READERS[0] if from_stdin else Path(path).suffix.lower() in reader.endings
-    return replace(reader.parse(text, source), from_format=None if told_by_name else reader.name)
+    return replace(reader.parse(content, source), from_format=None if told_by_name else reader.name)
 
 
 def _one_line(path: str) -> str:
@@ -60,7 +72,7 @@ def _reader(path: str, from_format: str | None) -> Reader:
         raise SpecError("the name of the spec file is empty ('-' is standard input)")
     if from_format is not None:
         for reader in READERS:
-            if reader.name == from_format.lower():
+            if from_format.lower() == reader.name or f".{from_format.lower()}" in reader.endings:
                 return reader
         raise SpecError(f"--from {from_format[:40]!r} is unknown: {_names()} are known")
     if path == STANDARD_INPUT:

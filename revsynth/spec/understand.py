@@ -19,6 +19,8 @@ from revsynth.spec.formula_columns import evaluate_formula
 from revsynth.spec.images import listed_images, mapped_images
 from revsynth.spec.limits import MAX_INPUT_BITS
 from revsynth.spec.model import Cover, Outputs, Permutation, Predicate, Spec, Word
+from revsynth.spec.netlist import Netlist
+from revsynth.spec.netlist_columns import netlist_columns
 from revsynth.spec.output_words import (
     check_length,
     check_size,
@@ -104,6 +106,8 @@ def _predicate(body: Predicate, over: OverDomain) -> tuple[Columns, Columns]:
         return cover_columns(body.cover, over.spec.source)
     if body.table is not None:
         return _table(body.table, over)
+    if body.netlist is not None:
+        return _netlist(body.netlist, over)
     values = _condition(body, over)[np.newaxis, :]
     return values, over.domain[np.newaxis, :].copy()
 
@@ -128,6 +132,9 @@ def _table(entries: tuple[int | None, ...], over: OverDomain) -> tuple[Columns, 
 def _outputs(body: Outputs, over: OverDomain) -> tuple[Columns, Columns, tuple[Word, ...]]:
     if body.cover is not None:
         return _cover(body.cover, over)
+    if body.netlist is not None:
+        named = tuple(Word(output.name, output.bits or 0) for output in body.words)
+        return *_netlist(body.netlist, over), named
     words: list[Word] = []
     values: list[Columns] = []
     care: list[Columns] = []
@@ -145,6 +152,12 @@ def _cover(cover: Cover, over: OverDomain) -> tuple[Columns, Columns, tuple[Word
     check_size(cover.outputs, over)
     values, care = cover_columns(cover, over.spec.source)
     return values, care, (Word(OUTPUT_WORD, cover.outputs),)
+
+
+def _netlist(netlist: Netlist, over: OverDomain) -> tuple[Columns, Columns]:
+    check_size(len(netlist.outputs), over)
+    values = netlist_columns(netlist)
+    return values, np.tile(over.domain, (len(values), 1))
 
 
 def _permutation(body: Permutation, over: OverDomain) -> tuple[Columns, Columns]:

@@ -52,7 +52,7 @@ def test_by_ending(tmp_path: Path, name: str, text: str | bytes, bits: int) -> N
 def test_by_name_of_the_format(tmp_path: Path) -> None:
     assert read_spec(write(tmp_path, "a.txt", CNF), from_format="cnf").inputs == (Word("v", 2),)
     assert read_spec(write(tmp_path, "noending", PLA), from_format="PLA").inputs == (Word("v", 2),)
-    assert [reader.name for reader in READERS] == ["toml", "cnf", "pla"]
+    assert [reader.name for reader in READERS] == ["toml", "cnf", "pla", "blif", "bench", "aiger", "bristol"]
 
 
 def test_standard_input(monkeypatch: pytest.MonkeyPatch) -> None:
@@ -66,7 +66,7 @@ def test_standard_input(monkeypatch: pytest.MonkeyPatch) -> None:
 @pytest.mark.parametrize(
     ("message", "name", "text"),
     [
-        ("the ending '.txt' is unknown: .toml, .cnf, .dimacs, .pla are known, or name the format (--from",
+        ("the ending '.txt' is unknown: .toml, .cnf, .dimacs, .pla, .blif, .bench, .aag, .aig, .bristol are known, or name",
          "a.txt", TOML),
         ("the name has no ending: .toml", "noending", TOML),
         ("this is UTF-16 text: save it as UTF-8", "a.toml", TOML.encode("utf-16")),
@@ -98,7 +98,9 @@ def test_files_that_cannot_be_read(tmp_path: Path) -> None:
         read_spec(write(tmp_path, "a.toml", TOML) + "/b.toml")
     with pytest.raises(SpecError, match="cannot be read: the name is not one of a file"):
         read_spec("a\0.toml")
-    with pytest.raises(SpecError, match="--from 'xml' is unknown: toml, cnf or pla are known"):
+    with pytest.raises(
+        SpecError, match="--from 'xml' is unknown: toml, cnf, pla, blif, bench, aiger or bristol are known"
+    ):
         read_spec(write(tmp_path, "a.toml", TOML), from_format="xml")
 
 
