@@ -96,8 +96,44 @@ def _completions(free: int, value: int) -> list[int]:
     return sorted(found)
 
 
+def shared_out(groups: list[tuple[int, int, int]], most: int) -> list[dict[int, int]]:
+    """For each group of inputs, how many of them take which completion: none is taken more than `most` times.
+
+    groups: (inputs, mask of the free bits, fixed bits). Raises ValueError where there is no such choice. The
+    groups of few completions are settled first, by flow; for the others there is always one left.
+    """
+    total = sum(count for count, _, _ in groups)
+    tight = [index for index, (_, free, _) in enumerate(groups) if 1 << free.bit_count() < total]
+    choices = [(groups[index][0], _completions(*groups[index][1:])) for index in tight]
+    flow = _flow(choices, most)
+    if flow is None:
+        raise ValueError(f"some output value must occur more than {most} times")
+    shares: list[dict[int, int]] = [{} for _ in groups]
+    load: dict[int, int] = {}
+    for index, taken in zip(tight, flow, strict=True):
+        shares[index] = {value: count for value, count in sorted(taken.items()) if count}
+        for value, count in taken.items():
+            load[value] = load.get(value, 0) + count
+    for index, (count, free, value) in enumerate(groups):
+        rest = 0 if shares[index] else count
+        choice = value
+        while rest:
+            here = min(rest, most - load.get(choice, 0))
+            if here:
+                shares[index][choice] = here
+                load[choice] = load.get(choice, 0) + here
+                rest -= here
+            choice = value | (((choice & free) - free) & free)  # the next setting of the free bits
+    return shares
+
+
 def _fits(groups: list[tuple[int, list[int]]], capacity: int) -> bool:
-    """Whether every group can spread its inputs over its completions, at most `capacity` on each.
+    """Whether every group can spread its inputs over its completions, at most `capacity` on each."""
+    return _flow(groups, capacity) is not None
+
+
+def _flow(groups: list[tuple[int, list[int]]], capacity: int) -> list[dict[int, int]] | None:
+    """How many inputs of each group take which of its completions, at most `capacity` each; None: no way.
 
     A maximum flow by shortest augmenting paths (Edmonds, Karp, J. ACM 19, 1972).
     """
@@ -112,9 +148,9 @@ def _fits(groups: list[tuple[int, list[int]]], capacity: int) -> bool:
         while rest:
             pushed = _push(groups, flow, load, users, index, rest, capacity)
             if not pushed:
-                return False
+                return None
             rest -= pushed
-    return True
+    return flow
 
 
 def _push(

@@ -16,7 +16,8 @@ from revsynth.logic.normal_form import algebraic_normal_form, count_by_size
 from revsynth.logic.truth_table import ALL_ONES, ones
 from revsynth.options import Controls, Oracle
 from revsynth.synthesis.interface import Task
-from revsynth.synthesis.products import PRODUCTS, output_groups, positive_forms, t_prices, to_gates
+from revsynth.synthesis.product_gates import output_groups, t_prices, to_gates
+from revsynth.synthesis.products import PRODUCTS, positive_forms
 from tests.logic.tables import from_rule, function_of, functions, random_function
 from tests.synthesis.checks import check_block, from_table
 
@@ -96,7 +97,7 @@ def test_positive_controls_turn_lines_and_turn_them_back_once() -> None:
 def test_unfit_says_why() -> None:
     function = from_table(2, 2, [1, 0, 2, 3])
     assert "nothing can be 'inplace'" in str(PRODUCTS.unfit(Task(function, "inplace")))
-    assert "products need 4 lines, and 2 are enough" in str(PRODUCTS.unfit(Task(function, "embedded")))
+    assert PRODUCTS.unfit(Task(function, "embedded", lines=1)) == "products need 2 lines, 1 allowed"
     assert "needs one output bit, not 2" in str(PRODUCTS.unfit(Task(function, "phase")))
     assert PRODUCTS.unfit(Task(function, "bit", lines=3)) == "products need 4 lines, 3 allowed"
     assert PRODUCTS.unfit(Task(function, "bit", lines=4)) is None
