@@ -32,7 +32,8 @@ def spec_options(command: F) -> F:
             "--from",
             "from_format",
             metavar="FORMAT",
-            help="Format of SPEC: toml, cnf, pla. Default: by the ending; toml for '-'.",
+            help="Format of SPEC: toml, cnf, pla, blif, bench, aiger, bristol. Default: by the ending, "
+            "toml for '-'.",
         ),
         click.option("--domain", metavar="EXPR", help="With --where: the inputs that matter. Default: all."),
         click.option(

@@ -8,7 +8,7 @@ translate it on their own.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Hashable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Literal, NamedTuple, TypeAlias, TypeVar
 
@@ -58,7 +58,7 @@ class Netlist:
         return Netlist(self.inputs, gates, tuple(map(moved, self.outputs)))
 
 
-Name = TypeVar("Name", str, int)
+Name = TypeVar("Name", bound=Hashable)
 
 
 class LoopError(Exception):
@@ -84,16 +84,17 @@ def in_order(operands: Mapping[Name, Sequence[Name]]) -> list[Name]:
         waiting = {first}
         while path:
             name, rest = path[-1]
-            needed: Name | None = next((n for n in rest if n in operands and n not in done), None)
-            if needed is None:
+            for needed in rest:
+                if needed in waiting:
+                    names: list[Name] = [entry for entry, _ in path]
+                    raise LoopError([*names[names.index(needed) :], needed])
+                if needed in operands and needed not in done:
+                    path.append((needed, iter(operands[needed])))
+                    waiting.add(needed)
+                    break
+            else:
                 path.pop()
                 waiting.discard(name)
                 done.add(name)
                 order.append(name)
-            elif needed in waiting:
-                names: list[Name] = [entry for entry, _ in path]
-                raise LoopError([*names[names.index(needed) :], needed])
-            else:
-                path.append((needed, iter(operands[needed])))
-                waiting.add(needed)
     return order

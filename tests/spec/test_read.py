@@ -66,7 +66,7 @@ def test_standard_input(monkeypatch: pytest.MonkeyPatch) -> None:
 @pytest.mark.parametrize(
     ("message", "name", "text"),
     [
-        ("the ending '.txt' is unknown: .toml, .cnf, .dimacs, .pla, .blif, .bench, .aag, .aig, .bristol are known, or name",
+        ("the ending '.txt' is unknown: .toml, .cnf, .dimacs, .pla, .blif, .bench, .aag, .aig, .bristol are",
          "a.txt", TOML),
         ("the name has no ending: .toml", "noending", TOML),
         ("this is UTF-16 text: save it as UTF-8", "a.toml", TOML.encode("utf-16")),
