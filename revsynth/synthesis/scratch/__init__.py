@@ -1,0 +1,1 @@
+"""Scratch planning: which line holds which part of a network, and when."""
