@@ -1,0 +1,90 @@
+"""Which gates define which variables, without a circle, so that few variables stay free."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass
+
+from revsynth.logic.clauses.gates import Gate
+
+MOST_VISITS = 20_000_000
+"""Definitions that are looked through for circles; beyond, variables stay free."""
+
+
+@dataclass(frozen=True)
+class Definitions:
+    """chosen: the gate of each defined variable, each behind those that it reads; free: the others,
+    ascending.
+    """
+
+    chosen: dict[int, Gate]
+    free: tuple[int, ...]
+
+
+def choose_definitions(gates: Sequence[Gate], variables: Iterable[int]) -> Definitions:
+    """Give gates to variables that they define. Several orders are tried; the fewest free variables win.
+
+    Every choice is sound: operands never depend on the variable itself, and a gate defines one variable.
+    """
+    every = sorted(variables)
+    budget = [MOST_VISITS]
+    tries = [_choose(gates, prefer, budget) for prefer in (1, -1)]
+    best = max(tries, key=len)
+    return Definitions(_in_order(best), tuple(variable for variable in every if variable not in best))
+
+
+def _choose(gates: Sequence[Gate], prefer: int, budget: list[int]) -> dict[int, Gate]:
+    """Gates of few possible outputs first; of several possible ones that which fewest other gates define.
+
+    prefer: 1 for the highest variable at a tie, -1 for the lowest.
+    """
+    makers: dict[int, int] = {}
+    for gate in gates:
+        for output in gate.outputs:
+            makers[output] = makers.get(output, 0) + 1
+    chosen: dict[int, Gate] = {}
+    numbered = sorted(range(len(gates)), key=lambda number: (len(gates[number].outputs), number))
+    for number in numbered:
+        gate = gates[number]
+        for output in sorted(gate.outputs, key=lambda output: (makers[output], -prefer * output)):
+            if output not in chosen and not _depends(gate.operands(output), output, chosen, budget):
+                chosen[output] = gate
+                break
+    return chosen
+
+
+def _depends(operands: Sequence[int], output: int, chosen: Mapping[int, Gate], budget: list[int]) -> bool:
+    """Whether a variable is among what operands are defined by; True where that takes too long to tell."""
+    seen = set(operands)
+    stack = list(operands)
+    while stack:
+        variable = stack.pop()
+        gate = chosen.get(variable)
+        if gate is None:
+            continue
+        budget[0] -= len(gate.variables)
+        if budget[0] < 0:
+            return True
+        for other in gate.variables:
+            if other == output:
+                return True
+            if other not in seen:
+                seen.add(other)
+                stack.append(other)
+    return output in seen
+
+
+def _in_order(chosen: Mapping[int, Gate]) -> dict[int, Gate]:
+    """The definitions, each behind those that it reads."""
+    done: dict[int, Gate] = {}
+    for first in chosen:
+        stack = [(first, iter(chosen[first].operands(first)))]
+        while stack and first not in done:
+            variable, rest = stack[-1]
+            needed = next((other for other in rest if other in chosen and other not in done), None)
+            if needed is None:
+                done[variable] = chosen[variable]
+                stack.pop()
+            else:
+                stack.append((needed, iter(chosen[needed].operands(needed))))
+    return done

@@ -1,0 +1,191 @@
+"""Clauses made smaller without changing what they mean: units, duplicates, subsumption, strengthening.
+
+The last two as in Eén, Biere, "Effective preprocessing in SAT through variable and clause elimination", SAT
+2005 (from memory). Nothing here eliminates a variable: the models stay the same.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from typing import TypeAlias
+
+Clause: TypeAlias = tuple[int, ...]
+"""Different literals in ascending order, no variable twice; the empty clause is never true."""
+
+MOST_VISITS = 4_000_000
+"""Clauses that subsumption looks at; beyond, the rest stays as it is."""
+
+
+def normal(clauses: Iterable[Sequence[int]]) -> list[Clause]:
+    """Clauses without repeated literals, always true ones, and repeated clauses; in the order given."""
+    found: dict[Clause, None] = {}
+    for literals in clauses:
+        chosen = set(literals)
+        if not any(-literal in chosen for literal in chosen):
+            found[tuple(sorted(chosen))] = None
+    return list(found)
+
+
+@dataclass(frozen=True)
+class Propagated:
+    """`units` are literals that must be true; `clauses` have two literals or more, none of a unit's variable.
+
+    consistent: False where the clauses contradict each other (then the rest says nothing).
+    """
+
+    units: tuple[int, ...]
+    clauses: list[Clause]
+    consistent: bool = True
+
+
+def propagate(clauses: Sequence[Clause]) -> Propagated:
+    """Put the literals of unit clauses into all others until there are no more; linear in time."""
+    true: dict[int, None] = {}
+    queue: list[int] = []
+    if not _collect((clause for clause in clauses if len(clause) < 2), true, queue):
+        return Propagated((), [], consistent=False)
+    if not queue:
+        return Propagated((), list(clauses))
+    occurs: dict[int, list[int]] = {}
+    open_literals = [len(clause) for clause in clauses]
+    for place, clause in enumerate(clauses):
+        for literal in clause:
+            occurs.setdefault(literal, []).append(place)
+    satisfied = [False] * len(clauses)
+    for literal in queue:
+        for place in occurs.get(literal, ()):
+            satisfied[place] = True
+        for place in occurs.get(-literal, ()):
+            open_literals[place] -= 1
+            if open_literals[place] < 2 and not satisfied[place]:
+                left = tuple(other for other in clauses[place] if -other not in true)
+                if not _collect((left,), true, queue):
+                    return Propagated((), [], consistent=False)
+    rest: dict[Clause, None] = {}
+    for place, clause in enumerate(clauses):
+        if not any(literal in true for literal in clause):
+            kept = open_literals[place] == len(clause)
+            rest[clause if kept else tuple(lit for lit in clause if -lit not in true)] = None
+    return Propagated(tuple(true), list(rest))
+
+
+def _collect(short: Iterable[Clause], true: dict[int, None], queue: list[int]) -> bool:
+    """Take over units; False at an empty clause or where two units contradict each other."""
+    for clause in short:
+        if not clause or -clause[0] in true:
+            return False
+        if clause[0] not in true:
+            true[clause[0]] = None
+            queue.append(clause[0])
+    return True
+
+
+def without_subsumed(clauses: Sequence[Clause]) -> list[Clause]:
+    """The clauses that hold no other clause, in their order; each is tried against those of its rarest
+    literal.
+    """
+    if len({len(clause) for clause in clauses}) < 2:
+        return list(clauses)
+    occurs: dict[int, list[int]] = {}
+    sets = [frozenset(clause) for clause in clauses]
+    for place, clause in enumerate(clauses):
+        for literal in clause:
+            occurs.setdefault(literal, []).append(place)
+    gone = [False] * len(clauses)
+    visits = 0
+    for place in sorted(range(len(clauses)), key=lambda place: len(clauses[place])):
+        if gone[place] or not clauses[place]:
+            continue
+        near = min((occurs[literal] for literal in clauses[place]), key=len)
+        visits += len(near)
+        if visits > MOST_VISITS:
+            break
+        for other in near:
+            if other != place and not gone[other] and sets[place] <= sets[other]:
+                gone[other] = True
+    return [clause for place, clause in enumerate(clauses) if not gone[place]]
+
+
+def strengthened(clauses: Sequence[Clause]) -> list[Clause]:
+    """Drop literals that another clause makes superfluous, and clauses that others imply, until nothing
+    changes.
+
+    With (v or c) and (not v or d), c part of d, the second says no more than d. The models stay the same.
+    """
+    found: dict[Clause, None] = dict.fromkeys(clauses)
+    visits = 0
+    changed = True
+    while changed and visits <= MOST_VISITS:
+        changed = False
+        listed = without_subsumed(list(found))
+        found = dict.fromkeys(listed)
+        occurs: dict[int, list[Clause]] = {}
+        for clause in listed:
+            for literal in clause:
+                occurs.setdefault(literal, []).append(clause)
+        for clause in listed:
+            for literal in clause:
+                others = set(clause) - {literal}
+                near = occurs.get(-literal, [])
+                visits += len(near)
+                if visits > MOST_VISITS:
+                    break
+                for other in near:
+                    if other in found and others <= set(other):
+                        del found[other]
+                        found[tuple(entry for entry in other if entry != -literal)] = None
+                        changed = True
+    return list(found)
+
+
+@dataclass(frozen=True)
+class Conjunction:
+    """Clauses in short form: units, clauses of two literals or more, and sums.
+
+    A sum (variables, value) is true where the exclusive sum of the variables, ascending, is `value`.
+    """
+
+    units: tuple[int, ...]
+    clauses: list[Clause]
+    sums: list[tuple[tuple[int, ...], int]]
+    consistent: bool = True
+
+
+def conjunction(clauses: Iterable[Sequence[int]], sums: Iterable[Sequence[int]]) -> Conjunction:
+    """Clauses and XOR clauses in short form: the same models, over the same variables."""
+    given = normal(clauses)
+    linear = [_sum_of(literals) for literals in sums]
+    units: dict[int, None] = {}
+    while True:
+        given += [
+            (variables[0] if value else -variables[0],) for variables, value in linear if len(variables) == 1
+        ]
+        if any(not variables and value for variables, value in linear):
+            return Conjunction((), [], [], consistent=False)
+        linear = list(dict.fromkeys(entry for entry in linear if len(entry[0]) > 1))
+        step = propagate(given)
+        if not step.consistent:
+            return Conjunction((), [], [], consistent=False)
+        units.update(dict.fromkeys(step.units))
+        shorter = strengthened(step.clauses)
+        fixed = [_with_units(entry, units) for entry in linear]
+        if fixed == linear and not any(len(clause) < 2 for clause in shorter):
+            return Conjunction(tuple(units), shorter, linear)
+        given, linear = shorter, fixed
+
+
+def _sum_of(literals: Sequence[int]) -> tuple[tuple[int, ...], int]:
+    """Variables that occur an odd number of times, and the value that makes an XOR clause true."""
+    odd: set[int] = set()
+    value = 1
+    for literal in literals:
+        odd ^= {abs(literal)}
+        value ^= literal < 0
+    return tuple(sorted(odd)), value
+
+
+def _with_units(entry: tuple[tuple[int, ...], int], units: dict[int, None]) -> tuple[tuple[int, ...], int]:
+    variables, value = entry
+    value ^= sum(variable in units for variable in variables) & 1
+    return tuple(v for v in variables if v not in units and -v not in units), value
