@@ -7,20 +7,19 @@ measured: Jones 2013; Gidney, Quantum 2, 2018 (see `lowering.and_gate`).
 
 from __future__ import annotations
 
+from dataclasses import replace
+
+from revsynth.errors import BudgetError
 from revsynth.logic.network import Network
-from revsynth.options import Oracle
+from revsynth.options import Aim, Oracle
 from revsynth.synthesis.interface import Block, Progress, Task, silent
-from revsynth.synthesis.scratch import homes, linear_state
-from revsynth.synthesis.scratch.blocks import block_of
+from revsynth.synthesis.scratch.blocks import cnots
 from revsynth.synthesis.scratch.from_table import network_function
-from revsynth.synthesis.scratch.landing import Landing, landed
-from revsynth.synthesis.scratch.plan import hold_everything
-from revsynth.synthesis.scratch.units import Units, units_of
+from revsynth.synthesis.scratch.planner import SMALL_ANDS, Planner
+from revsynth.synthesis.scratch.realise import held, planned
 
 MOST_TABLE_INPUTS = 16
 """Tables of more inputs are not turned into networks here."""
-LAZY_ANDS = 3_000
-"""Up to so many ANDs the invertible linear state is tried, whose work grows with their square."""
 
 
 class FromNetwork:
@@ -36,40 +35,76 @@ class FromNetwork:
             return f"a phase oracle of a network needs one output bit, not {task.outputs}"
         if task.network is None and task.inputs > MOST_TABLE_INPUTS:
             return f"a table of more than {MOST_TABLE_INPUTS} inputs is not turned into a network"
-        least = task.inputs + (0 if task.oracle == "phase" else task.outputs)
+        least = _bare_lines(task)
         if task.lines is not None and least > task.lines:
             return f"a network needs {least} lines before any scratch, {task.lines} allowed"
         return None
 
     def synthesise(self, task: Task, progress: Progress = silent) -> list[Block]:
-        """Blocks of one network with different numbers of lines and CNOTs, the better guess first."""
+        """Blocks of one network with different numbers of lines and CNOTs, the better guess first.
+
+        Raises BudgetError where no plan was found that fits `task.lines`.
+        """
         function = network_function(task.function) if task.network is None else task.network
         network = function.values.reachable()
+        positive = task.controls == "positive"
         progress(f"network: placing {network.ands} ANDs and {network.xors} XORs on lines")
-        blocks = held_blocks(network, task.oracle, positive=task.controls == "positive")
+        found: list[Block] = []
+        if task.lines is None or task.inputs + network.ands - task.outputs <= task.lines:
+            found = [one.block for one in held(network, task.oracle, positive)]
+        if task.lines is not None:
+            found = [block for block in found if block.cascade.lines <= task.lines]
+        if not found or task.aim == "qubits":
+            found.extend(self._within(network, task, progress))
+        return _worth_it(found, task.aim)
+
+    def _within(self, network: Network, task: Task, progress: Progress) -> list[Block]:
+        """Blocks of plans for the lines allowed; for the aim `qubits` of the fewest lines."""
+        form: Oracle = "fresh" if task.oracle == "compute" else task.oracle
+        planner = Planner(network, form, task.effort, task.seed)
+        bare = _bare_lines(task)
+        scratch = None if task.lines is None else task.lines - bare
+        if task.aim == "qubits":
+            least = planner.least_scratch()
+            scratch = least if scratch is None else min(scratch, least)
+        assert scratch is not None
+        progress(f"network: planning {network.ands} ANDs on {scratch} scratch lines")
+        plans = planner.best(scratch)
+        if not plans and task.aim != "qubits":
+            raise BudgetError(
+                f"{network.ands} ANDs need at least {bare + planner.least_scratch()} lines with the plans "
+                f"that were tried, {task.lines} allowed"
+            )
+        blocks: list[Block] = []
+        for plan in plans[: 2 if network.ands <= SMALL_ANDS else 1]:
+            blocks.extend(one.block for one in planned(plan, form, task.controls == "positive"))
         return [block for block in blocks if task.lines is None or block.cascade.lines <= task.lines]
 
 
 NETWORK = FromNetwork()
 
 
-def held_blocks(network: Network, oracle: Oracle, positive: bool) -> list[Block]:
-    """The network with every AND held until the mirror, sums placed in different ways."""
-    blocks = []
-    for threshold in (2, 3):
-        units, landing = _for_oracle(units_of(network, threshold), oracle)
-        sheet = homes.carry_out(units, hold_everything(units).operations, landing, oracle == "phase")
-        blocks.append(block_of(sheet, units, oracle, "network, hold", positive))
-    if network.ands <= LAZY_ANDS:
-        units, landing = _for_oracle(units_of(network, None), oracle)
-        operations = hold_everything(units).operations
-        for hinted in (False, True):
-            sheet = linear_state.carry_out(units, operations, landing, oracle == "phase", hinted=hinted)
-            blocks.append(block_of(sheet, units, oracle, "network, lazy", positive))
-    return blocks
+def _bare_lines(task: Task) -> int:
+    return task.inputs + (0 if task.oracle == "phase" else task.outputs)
 
 
-def _for_oracle(units: Units, oracle: Oracle) -> tuple[Units, Landing]:
-    if oracle in ("fresh", "compute"):
-        return landed(units, keep=oracle == "compute")
-    return units, Landing()
+def _worth_it(blocks: list[Block], aim: Aim) -> list[Block]:
+    """The blocks that no other beats in lines, CNOTs and products all at once, the best for the aim first."""
+
+    def measures(block: Block) -> tuple[int, int, int]:
+        gates = len(block.cascade)
+        ones = cnots(block)
+        return gates - ones, ones, block.cascade.lines
+
+    kept: list[tuple[tuple[int, int, int], Block]] = []
+    for block in blocks:
+        size = measures(block)
+        if any(all(a <= b for a, b in zip(other, size, strict=True)) for other, _ in kept):
+            continue
+        kept = [row for row in kept if not all(a <= b for a, b in zip(size, row[0], strict=True))]
+        kept.append((size, replace(block)))
+    if aim == "qubits":
+        kept.sort(key=lambda row: (row[0][2], row[0]))
+    else:
+        kept.sort(key=lambda row: row[0])
+    return [block for _, block in kept]

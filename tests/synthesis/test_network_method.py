@@ -14,7 +14,8 @@ from revsynth.logic.network import Network
 from revsynth.logic.network_function import NetworkFunction
 from revsynth.options import Controls, Oracle
 from revsynth.synthesis.interface import Block, Task
-from revsynth.synthesis.network import NETWORK, held_blocks
+from revsynth.synthesis.network import NETWORK
+from revsynth.synthesis.scratch.realise import held
 from tests.synthesis.checks import check_block, from_table
 from tests.synthesis.random_networks import as_function, networks
 from tests.synthesis.wide_networks import adder, sha256_first_word_is, sum_equals
@@ -83,20 +84,20 @@ def test_what_does_not_fit_is_said() -> None:
 @pytest.mark.quality
 def test_a_sum_compared_with_a_constant_folds_everything_in_place() -> None:
     """62 ANDs, the last of them a CZ: 61 scratch lines, and 63 CNOTs each way."""
-    for block in held_blocks(sum_equals(32, 2863311530), "phase", positive=False):
-        assert counts(block) == (125, 126, 122)
+    for one in held(sum_equals(32, 2863311530), "phase"):
+        assert counts(one.block) == (125, 126, 122)
 
 
 @pytest.mark.quality
 def test_an_adder_on_fresh_outputs_needs_no_scratch() -> None:
     """One AND a bit, each on an output line; nothing is erased."""
-    assert min(counts(b) for b in held_blocks(adder(64), "fresh", positive=False)) == (193, 567, 64)
+    assert min(counts(one.block) for one in held(adder(64), "fresh")) == (193, 567, 64)
 
 
 @pytest.mark.quality
 def test_cnots_stay_within_three_for_each_xor() -> None:
     network = sha256_first_word_is(0x12345678)
-    block = held_blocks(network, "phase", positive=False)[0]
+    block = held(network, "phase")[0].block
     lines, cnots, products = counts(block)
     assert products == 2 * (network.ands - 1)
     assert cnots <= 3 * network.xors

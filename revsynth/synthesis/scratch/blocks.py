@@ -28,3 +28,9 @@ def block_of(sheet: Sheet, units: Units, oracle: Oracle, method: str, positive: 
     place[[*range(front), *kept, *others]] = np.arange(sheet.lines)
     cascade = cascade_of(rows, sheet.lines, place, positive)
     return Block(cascade, method, sheet.inputs, sheet.outputs, len(kept), len(others))
+
+
+def cnots(block: Block) -> int:
+    """Gates of one control on a line, those of two controls not counted."""
+    cascade = block.cascade
+    return int(np.count_nonzero((np.diff(cascade.offset) == 1) & (cascade.target != PHASE)))

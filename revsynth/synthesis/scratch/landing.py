@@ -30,9 +30,10 @@ class Landing:
 
 
 def landed(units: Units, keep: bool) -> tuple[Units, Landing]:
-    """For outputs in 0: the last product of an output, if it is a plain AND, is computed on the output line.
+    """For outputs in 0: the last product of an output is computed on the output line, where it stays.
 
-    Holds for plans that hold everything. Returns the units with the acts that are left, and the landing.
+    Such a unit must be computed once and never erased. Returns the units with the acts that are left, and the
+    landing. keep: see `Landing`.
     """
     n = units.inputs
     with_product = {output for act in units.acts if act.right for output in act.outputs}
@@ -42,18 +43,11 @@ def landed(units: Units, keep: bool) -> tuple[Units, Landing]:
     for act in units.acts:
         last = act.left[-1] - n
         output = act.outputs[0]
-        if (
-            act.right
-            or last < 0
-            or not units.is_and(last)
-            or units.tail[last]
-            or last in lines
-            or output in with_product
-        ):
+        if act.right or last < 0 or not units.is_and(last) or last in lines or output in with_product:
             acts.append(act)
             continue
         lines[last] = n + output
-        rest[last] = act.left[:-1]
+        rest[last] = tuple(sorted(set(act.left[:-1]) ^ set(units.tail[last])))
         if len(act.outputs) > 1:
             acts.append(Act(act.outputs[1:], act.left))
     return (

@@ -7,7 +7,7 @@ An operation is the integer 3 * index + kind.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 from dataclasses import dataclass
 
 from revsynth.synthesis.scratch.units import Units
@@ -18,8 +18,8 @@ Operation = int
 
 @dataclass(frozen=True)
 class Plan:
-    """operations: the forward run; peak: most units held at once; ands: ANDs computed, the mirror's included
-    (acts not: they are counted by `act_ands`).
+    """operations: the forward run; peak: most scratch lines in use at once; ands: ANDs computed, those of the
+    mirror included, but not those of acts (see `act_ands`).
     """
 
     name: str
@@ -28,8 +28,14 @@ class Plan:
     ands: int
 
 
-def plan_of(units: Units, operations: list[Operation], name: str) -> Plan:
-    """Count a plan's peak and ANDs; raises AssertionError where it does not work (a defect)."""
+def plan_of(
+    units: Units, operations: list[Operation], name: str, landing: Collection[int] = frozenset()
+) -> Plan:
+    """Count a plan's peak and ANDs; raises AssertionError where it does not work (a defect).
+
+    landing: units that are computed on output lines; they take no scratch and must not be erased.
+    """
+    no_scratch = frozenset(landing)
     cost = [1 if left else 0 for left in units.left]
     needed = units.unit_reads()
     acts = [[v - units.inputs for v in act.reads if v >= units.inputs] for act in units.acts]
@@ -47,9 +53,13 @@ def plan_of(units: Units, operations: list[Operation], name: str) -> Plan:
         if held[index] != (kind == ERASE):
             raise AssertionError(f"operation {operation} of plan '{name}' comes twice")
         held[index] = kind == COMPUTE
+        ands += cost[index]
+        if index in no_scratch:
+            if kind == ERASE:
+                raise AssertionError(f"plan '{name}' erases what has landed on an output")
+            continue
         count += 1 if kind == COMPUTE else -1
         peak = max(peak, count)
-        ands += cost[index]
     if not all(acted):
         raise AssertionError(f"plan '{name}' forgets an output")
     return Plan(name, operations, peak, ands)
@@ -80,7 +90,7 @@ def acts_by_place(units: Units) -> list[list[int]]:
     return result
 
 
-def hold_everything(units: Units) -> Plan:
+def hold_everything(units: Units, landing: Collection[int] = frozenset()) -> Plan:
     """Every unit once, none erased before the mirror."""
     acts = acts_by_place(units)
     operations = [3 * act + ACT for act in acts[0]]
@@ -88,7 +98,7 @@ def hold_everything(units: Units) -> Plan:
         operations.append(3 * unit + COMPUTE)
         if acts[unit + 1]:
             operations.extend(3 * act + ACT for act in acts[unit + 1])
-    return Plan("hold", operations, len(units), units.ands)
+    return Plan("hold", operations, len(units) - len(landing), units.ands)
 
 
 def reads_of(units: Units, operation: Operation) -> Sequence[int]:

@@ -276,3 +276,36 @@ def selected(units: Units, order: Sequence[int]) -> Units:
         units.constants,
         [moved(hint) for hint in units.hints],
     )
+
+
+def without_sums(units: Units) -> Units:
+    """The same ANDs (with their tails), all units that are sums alone put into what reads them.
+
+    Raises OverflowError where sums would be too long.
+    """
+    n = units.inputs
+    whole: list[Sum] = [(v,) for v in range(n)]
+    total = 0
+
+    def expanded(held: Sum) -> Sum:
+        if len(held) == 1:
+            return whole[held[0]]
+        result: set[int] = set()
+        for variable in held:
+            result ^= set(whole[variable])
+        return tuple(sorted(result))
+
+    left, right, tail = list(units.left), list(units.right), list(units.tail)
+    for unit in range(len(units)):
+        left[unit], right[unit], tail[unit] = (
+            expanded(held) if held else () for held in (left[unit], right[unit], tail[unit])
+        )
+        whole.append((n + unit,) if left[unit] else tail[unit])
+        total += len(left[unit]) + len(right[unit]) + len(tail[unit])
+        if total > LONGEST_ALL:
+            raise OverflowError("the sums of the network are too long")
+    acts = [
+        Act(a.outputs, expanded(a.left), expanded(a.right) if a.right else (), a.flips) for a in units.acts
+    ]
+    plain = Units(n, left, right, tail, units.flips, acts, units.constants)
+    return selected(plain, [unit for unit in range(len(units)) if plain.is_and(unit)])
