@@ -30,6 +30,7 @@ from revsynth.logic.cubes import Cube, ExclusiveSum
 from revsynth.logic.exclusive_sum import minimise
 from revsynth.logic.function import Function
 from revsynth.logic.truth_table import Column, last_word_mask, ones, pack
+from revsynth.options import Effort
 from revsynth.synthesis.interface import Block, Placement, Progress, Task
 from revsynth.synthesis.product_gates import conjugated, onto_outputs, output_groups, prices_for
 
@@ -39,7 +40,7 @@ TABLE_LINES = 26
 """Lines that single sums may look at: beyond, no sum of at most MAX_GATES products is to be expected."""
 FREE_INPUTS = 13
 """Free values stay free in the search for a sum up to here; then they are settled before."""
-ALL_VARIANTS = 12
+ALL_VARIANTS: dict[Effort, int] = {"low": 0, "normal": 6, "high": 12}
 """Up to so many lines all variants are made, above the most promising alone."""
 
 
@@ -60,7 +61,7 @@ def in_place_blocks(task: Task, lines: int, progress: Progress) -> list[Block]:
     function = wholly_fixed(task.function, 1 << (lines - task.function.outputs))
     by_t = task.aim != "gates"
     ways = [Way(True, by_t)]
-    if lines <= ALL_VARIANTS:
+    if lines <= ALL_VARIANTS[task.effort]:
         ways += [Way(False, by_t), Way(True, not by_t), Way(False, not by_t)]
     blocks: list[Block] = []
     for way in ways:
