@@ -11,49 +11,153 @@ from __future__ import annotations
 from dataclasses import dataclass
 from functools import lru_cache
 
-from revsynth.verification.lifting.parities import TRUE, Literal, Parities
+from revsynth.verification.lifting.parities import FALSE, TRUE, Literal, Parities
 from revsynth.verification.lifting.residue import sign_of
 
 MOST_PARITIES = 7
 """Independent parities beside y: 2**7 cases are gone through."""
 
 
+Terms = tuple[tuple[int, int], ...]
+Plane = tuple[int, int]
+"""A product of two parities, each a mask of basis elements."""
+
+
 @dataclass(frozen=True)
 class Shape:
     """A sum of phases c (y ^ parity of x over a mask), solved.
 
-    constant: the coefficient of y less 4 Q; quotient: masks of the products in the normal form of Q; rest:
-    what is left without y as (mask, eighths), each a product of x; `known`: its products are all in Q's.
+    constant: the coefficient of y less 4 Q; quotient: masks of the products in the normal form of Q; rest: by
+    case of x, what is left without y, in eighths.
     """
 
     constant: int
     quotient: tuple[int, ...]
-    rest: tuple[tuple[int, int], ...]
-    known: bool
+    rest: tuple[int, ...]
 
 
 @lru_cache(maxsize=4096)
-def solve(terms: tuple[tuple[int, int], ...], size: int) -> Shape | None:
+def solve(terms: Terms, size: int) -> Shape | None:
     """Go through all values of `size` parities; terms are (mask, c). None where there is no such Q."""
     cases = range(1 << size)
     odd = [[(mask & case).bit_count() & 1 for mask, _ in terms] for case in cases]
     slope = [sum(c * (1 - 2 * s) for (_, c), s in zip(terms, row, strict=True)) & 7 for row in odd]
     if any((value - slope[0]) & 3 for value in slope):
         return None
-    quotient = [(value - slope[0]) >> 2 & 1 for value in slope]
-    rest = [sum(c * s for (_, c), s in zip(terms, row, strict=True)) for row in odd]
+    quotient = [(value - (slope[0] & 3)) >> 2 & 1 for value in slope]
     for bit in range(size):
         for case in cases:
             if case >> bit & 1:
                 quotient[case] ^= quotient[case ^ 1 << bit]
-                rest[case] -= rest[case ^ 1 << bit]
-    products = tuple(mask for mask in cases if quotient[mask])
-    left = tuple((mask, rest[mask] & 7) for mask in cases if rest[mask] & 7)
-    constant = slope[0] & 3
-    if slope[0] & 4:
-        products = products[1:] if products[:1] == (0,) else (0, *products)
-    known = all(mask.bit_count() < 2 or mask in products for mask, _ in left)
-    return Shape(constant, products, left, known)
+    rest = tuple(sum(c * s for (_, c), s in zip(terms, row, strict=True)) & 7 for row in odd)
+    return Shape(slope[0] & 3, tuple(mask for mask in cases if quotient[mask]), rest)
+
+
+@dataclass(frozen=True)
+class Beside:
+    """Half turns: plane k times the parity `factors[k]` (0: none), products of two parities, and a parity."""
+
+    factors: tuple[int, ...]
+    planes: tuple[Plane, ...]
+    straight: int
+
+
+@lru_cache(maxsize=4096)
+def rest_beside(rest: tuple[int, ...], planes: tuple[Plane, ...]) -> Beside | None:
+    """`rest` as -2 times every product of the planes, and half turns; None where it is not that."""
+    left = list(rest)
+    for case in range(len(left)):
+        for one, other in planes:
+            left[case] += 2 * ((one & case).bit_count() & (other & case).bit_count() & 1)
+    if any(value & 3 for value in left):
+        return None
+    form = _normal_form([value >> 2 & 1 for value in left])
+    factors = []
+    for plane in planes:
+        factors.append(_factor(form, plane, len(left)))
+        form = form ^ _times(plane, factors[-1])
+    if any(mask.bit_count() > 2 for mask in form):
+        return None
+    rows = alternating(tuple(sorted(form)))
+    straight = sum(mask for mask in form if mask.bit_count() == 1)
+    found: list[Plane] = []
+    while any(rows):
+        found.append(any_plane(rows))
+        rows = peeled(rows, found[-1])
+        straight ^= found[-1][0] & found[-1][1]
+    return Beside(tuple(factors), tuple(found), straight)
+
+
+def _normal_form(table: list[int]) -> frozenset[int]:
+    """Masks of the products in the normal form of a table."""
+    for bit in range(len(table).bit_length() - 1):
+        for case in range(len(table)):
+            if case >> bit & 1:
+                table[case] ^= table[case ^ 1 << bit]
+    return frozenset(mask for mask, value in enumerate(table) if value)
+
+
+def _times(plane: Plane, factor: int) -> frozenset[int]:
+    """The normal form of the product of three parities."""
+    found: frozenset[int] = frozenset()
+    for i in _bits(plane[0]):
+        for j in _bits(plane[1]):
+            for k in _bits(factor):
+                found = found ^ {1 << i | 1 << j | 1 << k}
+    return found
+
+
+def _bits(mask: int) -> list[int]:
+    return [i for i in range(mask.bit_length()) if mask >> i & 1]
+
+
+def _factor(form: frozenset[int], plane: Plane, cases: int) -> int:
+    """The parity that, times the plane, takes most products of three out of a normal form."""
+    before = sum(1 for mask in form if mask.bit_count() > 2)
+    best, least = 0, before
+    for factor in range(1, cases if before else 1):
+        after = sum(1 for mask in form ^ _times(plane, factor) if mask.bit_count() > 2)
+        if after < least:
+            best, least = factor, after
+    return best
+
+
+def alternating(quotient: tuple[int, ...]) -> tuple[int, ...]:
+    """The products of two in a normal form as the rows of a symmetric matrix without diagonal."""
+    rows = [0] * max((mask.bit_length() for mask in quotient), default=0)
+    for mask in quotient:
+        if mask.bit_count() == 2:
+            low, high = (mask & -mask).bit_length() - 1, mask.bit_length() - 1
+            rows[low] ^= 1 << high
+            rows[high] ^= 1 << low
+    return tuple(rows)
+
+
+def peeled(rows: tuple[int, ...], plane: Plane) -> tuple[int, ...]:
+    """The matrix less that of one product."""
+    one, other = plane
+    return tuple(
+        row ^ (other if one >> i & 1 else 0) ^ (one if other >> i & 1 else 0) for i, row in enumerate(rows)
+    )
+
+
+@lru_cache(maxsize=4096)
+def rank(rows: tuple[int, ...]) -> int:
+    """Over GF(2)."""
+    basis: list[int] = []
+    for row in rows:
+        for known in basis:
+            row = min(row, row ^ known)
+        if row:
+            basis.append(row)
+    return len(basis)
+
+
+def any_plane(rows: tuple[int, ...]) -> Plane:
+    """A product that lowers the rank by two; in rank 2 there is but one up to its canonical form."""
+    first = next(i for i, row in enumerate(rows) if row)
+    second = (rows[first] & -rows[first]).bit_length() - 1
+    return rows[first], rows[second]
 
 
 class Local:
@@ -89,14 +193,51 @@ class Local:
             masks = [mask << 1 | 1 for mask in masks]
         else:
             masks = [mask ^ common for mask in masks]
+        self._span = span
         terms = tuple((mask, c) for mask, (_, c) in zip(masks, items, strict=True))
         self.shape = solve(terms, len(self.basis))
+
+    def element(self, mask: int) -> Literal:
+        """The literal of an XOR of basis elements."""
+        return self.parities.parity(self.basis[i] for i in range(mask.bit_length()) if mask >> i & 1)
 
     def product(self, mask: int) -> Literal:
         """The literal of a product of basis elements."""
         if mask & (mask - 1) == 0:
             return self.basis[mask.bit_length() - 1] if mask else TRUE
         return self.parities.all_of(self.basis[i] for i in range(mask.bit_length()) if mask >> i & 1)
+
+    def planes(self) -> tuple[Plane, ...]:
+        """The products of two in Q as few products of parities, those met before if possible."""
+        assert self.shape is not None
+        rows = alternating(self.shape.quotient)
+        found: list[Plane] = []
+        while any(rows):
+            plane = any_plane(rows)
+            if rank(rows) > 2:
+                plane = self._known_plane(rows) or plane
+            found.append(plane)
+            rows = peeled(rows, plane)
+        return tuple(found)
+
+    def _known_plane(self, rows: tuple[int, ...]) -> Plane | None:
+        """A product met before that lowers the rank, best one that leaves another such."""
+        shift = 1 if self.first else 0
+        before = rank(rows)
+        found: list[tuple[bool, int, Plane]] = []
+        known: list[tuple[int, Plane]] = []
+        for both in self._span:
+            entry = self.parities.third.get(both >> 1)
+            if entry is None or 2 * entry[0] not in self._span or 2 * entry[1] not in self._span:
+                continue
+            plane = (self._span[2 * entry[0]] << shift, self._span[2 * entry[1]] << shift)
+            known.append((entry[2], plane))
+        for literal, plane in known:
+            left = peeled(rows, plane)
+            if rank(left) < before:
+                again = any(rank(peeled(left, other)) < before - 2 for _, other in known)
+                found.append((again, literal, plane))
+        return max(found)[2] if found else None
 
 
 class Slope:
@@ -107,16 +248,56 @@ class Slope:
     """
 
     def __init__(self, parities: Parities, phases: dict[int, int]) -> None:
-        self.local = Local(parities, phases)
+        self.local = local = Local(parities, phases)
         self.constant = 0
         self.quotient: Literal | None = None
-        shape = self.local.shape
-        if shape is not None:
-            self.constant = shape.constant
-            self.quotient = parities.parity(self.local.product(mask) for mask in shape.quotient)
+        self.products: list[tuple[Literal, Literal]] = []
+        self.planes: tuple[Plane, ...] = ()
+        shape = local.shape
+        if shape is None:
+            signs = sign_of(parities, {node: -2 * eighths for node, eighths in phases.items()})
+            if signs is not None:
+                total = sum(phases.values()) & 7
+                self.constant = total & 3
+                self.quotient = parities.parity(signs) ^ (total >> 2)
             return
-        signs = sign_of(parities, {node: -2 * eighths for node, eighths in phases.items()})
-        if signs is not None:
-            total = sum(phases.values()) & 7
-            self.constant = total & 3
-            self.quotient = parities.parity(signs) ^ (total >> 2)
+        self.constant = shape.constant
+        linear = [mask for mask in shape.quotient if mask.bit_count() == 1]
+        if any(mask.bit_count() > 2 for mask in shape.quotient):
+            self.quotient = parities.parity(local.product(mask) for mask in shape.quotient)
+            return
+        self.planes = local.planes()
+        straight = sum(linear)
+        for one, other in self.planes:
+            self.products.append((local.element(one), local.element(other)))
+            straight ^= one & other
+        self.quotient = parities.parity(
+            [
+                local.element(straight),
+                *(parities.and_(*pair) for pair in self.products),
+                FALSE ^ (0 in shape.quotient),
+            ]
+        )
+
+    def touches_first(self) -> bool:
+        """Whether bit 0 of the basis is in a product, not alone."""
+        shape = self.local.shape
+        return shape is None or any(mask & 1 and mask != 1 for mask in shape.quotient)
+
+    def rest(self) -> list[tuple[Literal, int]] | None:
+        """What is left without y as (literal, eighths) on products of Q; None where others are needed."""
+        shape = self.local.shape
+        if shape is None:
+            return None
+        beside = rest_beside(shape.rest, self.planes)
+        if beside is None:
+            return None
+        parities, element = self.local.parities, self.local.element
+        found = [(element(beside.straight), 4)]
+        found += [(parities.and_(element(one), element(other)), 4) for one, other in beside.planes]
+        for pair, factor in zip(self.products, beside.factors, strict=True):
+            product = parities.and_(*pair)
+            found.append((product, -2))
+            if factor:
+                found.append((parities.and_(product, element(factor)), 4))
+        return found

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 
-from revsynth.verification.lifting.local import Local, Slope
+from revsynth.verification.lifting.local import Slope
 from revsynth.verification.lifting.model import NO_PATHS, NotClosedError, Paths, Value
 from revsynth.verification.lifting.parities import FALSE, TRUE, Literal, Parities
 
@@ -243,25 +243,23 @@ class PathSum:
         if outer:
             self.add_sign(NO_PATHS, self.parities.and_(outer, total))
         if slope and phases:
-            self._leave(slope.local, phases, NO_PATHS)
+            self._leave(slope, phases, NO_PATHS)
         return True
 
-    def _leave(self, local: Local, phases: Phases, tail: Paths) -> None:
+    def _leave(self, slope: Slope, phases: Phases, tail: Paths) -> None:
         """The phases c s that are left without y.
 
         As products where Q has them at hand: then what a relative-phase gate leaves is 2 a b on the atom a b.
         """
-        shape = local.shape
-        if tail or shape is None or not shape.known:
+        rest = None if tail else slope.rest()
+        if rest is None:
             for node, eighths in phases.items():
                 self.turn(Value(2 * node, tail), eighths)
             return
-        for mask, eighths in shape.rest:
-            self.turn(Value(local.product(mask)), eighths)
-        for mask in shape.quotient:
-            if mask.bit_count() == 2:
-                one, other = (local.basis[i] for i in range(mask.bit_length()) if mask >> i & 1)
-                self._take_apart(self.parities.xor(one, other) >> 1)
+        for literal, eighths in rest:
+            self.turn(Value(literal), eighths)
+        for one, other in slope.products:
+            self._take_apart(self.parities.xor(one, other) >> 1)
 
     def _take_apart(self, node: int) -> None:
         """With a b at hand, a phase on a ^ b becomes one on a, b and, doubled, the other way, on a b."""
@@ -304,10 +302,9 @@ class PathSum:
             if tail:
                 # A common parity that holds path variables may stand alone, not in products.
                 shape = slope.local.shape
-                shared = None if shape is None else [mask for mask in shape.quotient if mask & 1]
-                if not slope.local.first or shared not in ([], [1]):
+                if shape is None or not slope.local.first or slope.touches_first():
                     return False
-                if shared:
+                if 1 in shape.quotient:
                     others ^= tail
             constant = slope.constant
             literal = self.parities.xor(literal, slope.quotient)
@@ -319,7 +316,7 @@ class PathSum:
         self._forget(path, sign_sets)
         if slope:
             phases = self.phases.pop(groups[0])
-            self._leave(slope.local, phases, tail)
+            self._leave(slope, phases, tail)
         if constant:
             self.sixteenths += 2
             self.turn(Value(literal, others), 6)
@@ -392,7 +389,7 @@ class PathSum:
             if len(paths) > 1 or slope.quotient is None:
                 raise NotClosedError("phases of measured qubits are left that are not shown to be signs")
             self.add_sign(paths, slope.quotient)
-            self._leave(slope.local, phases, NO_PATHS)
+            self._leave(slope, phases, NO_PATHS)
 
     def measure(self, qubit: int, operation: int) -> Value:
         """Measure a qubit: its value, which from now on is that of a classical bit."""

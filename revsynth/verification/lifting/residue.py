@@ -13,10 +13,10 @@ from itertools import combinations
 
 from revsynth.verification.lifting.parities import Literal, Parities
 
-MOST_MONOMIALS = 20_000_000
+MOST_MONOMIALS = 1_000_000
 """Over all phases; a second is enough for about three million."""
 
-MOST_PRODUCTS = 100_000
+MOST_PRODUCTS = 2_000
 """Products with a quarter turn that may be written down."""
 
 MOST_ROUNDS = 6
@@ -118,7 +118,11 @@ def _coordinates(parities: Parities, nodes: list[int]) -> tuple[dict[int, int], 
 def _polynomial(terms: list[tuple[int, int]]) -> dict[tuple[int, ...], int]:
     found: dict[tuple[int, ...], int] = {}
     for mask, eighths in terms:
-        places = [i for i in range(mask.bit_length()) if mask >> i & 1]
+        places = []
+        while mask:
+            low = mask & -mask
+            places.append(low.bit_length() - 1)
+            mask ^= low
         for size, factor in ((1, 1), (2, -2), (3, 4)):
             change = eighths * factor & 7
             if change:
