@@ -17,7 +17,7 @@ from revsynth.logic.network_builder import NetworkBuilder
 Literals = Mapping[int, Literal]
 """By variable, from 1 on."""
 Runs = Sequence[int]
-"""Steps of each run of annealing; the best of all counts."""
+"""Steps of each run of annealing; the best of all counts. Runs of fewer steps than clauses are left out."""
 WORTH = 1.25
 """ANDs that a factored clause costs, about: a window must cost less for each clause that it covers."""
 
@@ -73,7 +73,10 @@ def _factored(
     builder: NetworkBuilder, clauses: Sequence[Clause], literals: Literals, runs: Runs, seed: int
 ) -> Literal:
     greedy = greedy_orders(clauses)
-    tried = [greedy, *(annealed_orders(greedy, moves, seed + place) for place, moves in enumerate(runs))]
+    long_enough = [moves for moves in runs if moves > len(clauses)]
+    if not long_enough:
+        return factor(builder, greedy, literals)
+    tried = [annealed_orders(greedy, moves, seed + place) for place, moves in enumerate(long_enough)]
     return factor(builder, min(tried, key=one_sided), literals)
 
 

@@ -102,24 +102,22 @@ def annealed_orders(orders: Sequence[Ordered], moves: int, seed: int) -> list[Or
     movable = [place for place, order in enumerate(orders) if 2 <= len(order) <= LONGEST]
     if not movable:
         return list(orders)
-    rng = Random(seed)
-    options = {
-        place: [(order, _choices(order)) for order in permutations(orders[place])]
-        for place in movable
-        if len(orders[place]) <= ALL_ORDERS
-    }
+    random = Random(seed).random
+    options: dict[int, list[tuple[Ordered, list[_Choice]]]] = {}
     warm = WARM if moves >= 100 * len(movable) else COLD
-    best, best_cost = list(tree.orders), tree.cost
-    random = rng.random
+    best_cost = tree.cost
+    since: list[tuple[int, Ordered]] = []
     for move in range(moves):
         place = movable[int(random() * len(movable))]
-        known = options.get(place)
-        if known is not None:
+        old_order, old_choices, old_cost = tree.orders[place], tree.choices[place], tree.cost
+        if len(old_order) <= ALL_ORDERS:
+            known = options.get(place)
+            if known is None:
+                known = options[place] = [(other, _choices(other)) for other in permutations(old_order)]
             order, choices = known[int(random() * len(known))]
         else:
-            order = _moved(tree.orders[place], random(), random())
+            order = _moved(old_order, random(), random())
             choices = _choices(order)
-        old_order, old_choices, old_cost = tree.orders[place], tree.choices[place], tree.cost
         if order == old_order:
             continue
         tree.change(place, order, choices)
@@ -127,8 +125,13 @@ def annealed_orders(orders: Sequence[Ordered], moves: int, seed: int) -> list[Or
         if worse > 0 and random() >= math.exp(-worse / (warm * (COLD / warm) ** (move / moves))):
             tree.change(place, old_order, old_choices)
         elif tree.cost < best_cost:
-            best, best_cost = list(tree.orders), tree.cost
-    return best
+            best_cost = tree.cost
+            since.clear()
+        else:
+            since.append((place, old_order))
+    for place, order in reversed(since):
+        tree.orders[place] = order
+    return tree.orders
 
 
 def _moved(order: Ordered, one: float, other: float) -> Ordered:
