@@ -21,7 +21,14 @@ from revsynth.synthesis.interface import Block, Task
 from revsynth.synthesis.network import NETWORK
 from revsynth.synthesis.scratch import homes, linear_state
 from revsynth.synthesis.scratch.blocks import block_of
-from revsynth.synthesis.scratch.checkpoints import blocks, checkpointed, filled_bounds, nested, one_level_ands
+from revsynth.synthesis.scratch.checkpoints import (
+    Shape,
+    blocks,
+    checkpointed,
+    filled_bounds,
+    nested,
+    one_level_ands,
+)
 from revsynth.synthesis.scratch.curve import curve
 from revsynth.synthesis.scratch.game import Game
 from revsynth.synthesis.scratch.landing import Landing, landed
@@ -59,8 +66,8 @@ def some_plans(units: Units, landing: Landing, budget: int, seed: int) -> list[P
         operations = pebble(game, budget, policy, seed)
         if operations is not None:
             runs.append((operations, policy, budget))
-    for parts in ([2], [3], [2, 2], [3, 2], [2, 2, 2]):
-        runs.append((checkpointed(game, nested(game.size, parts, 0.8)), f"{parts}", game.size))
+    for parts in ((2,), (3,), (2, 2), (3, 2), (2, 2, 2)):
+        runs.append((checkpointed(game, nested(game, Shape(parts, 0.8, 0.3))), f"{parts}", game.size))
     bounds = filled_bounds(game, budget, max(1, budget - 1))
     if bounds is not None:
         runs.append((checkpointed(game, blocks(bounds)), "filled", budget))

@@ -15,6 +15,7 @@ from dataclasses import dataclass
 from itertools import pairwise
 
 import numpy as np
+from numpy.typing import NDArray
 
 from revsynth.synthesis.scratch.game import Game
 from revsynth.synthesis.scratch.plan import ACT, COMPUTE, ERASE, Operation
@@ -38,24 +39,48 @@ def blocks(bounds: Sequence[int]) -> Range:
     return Range(bounds[0], bounds[-1], parts)
 
 
-def nested(size: int, parts: Sequence[int], ratio: float = 1.0) -> Range:
-    """Parts, each made of parts, and so on: parts[0] of them at the top, and equal ones inside.
+@dataclass(frozen=True)
+class Shape:
+    """How units are cut into nested parts: parts[0] at the top, each into parts[1], and so on.
 
-    ratio: of the size of one part at the top to the one before.
+    ratio: of the size of one part at the top to the one before. slack: how far, in parts, a bound may move to
+    where fewer units are read across it.
     """
+
+    parts: tuple[int, ...]
+    ratio: float = 1.0
+    slack: float = 0.0
+
+
+def nested(game: Game, shape: Shape) -> Range:
+    """The units cut by a shape."""
+    crossing = crossing_units(game)
 
     def divided(begin: int, end: int, level: int) -> Range:
         """One level deeper for each item of `parts`."""
-        if level == len(parts):
+        if level == len(shape.parts):
             return Range(begin, end)
-        count = min(parts[level], end - begin)
+        count = min(shape.parts[level], end - begin)
         if count <= 1:
             return divided(begin, end, level + 1)
-        bounds = _bounds(begin, end, count, ratio if level == 0 else 1.0)
+        bounds = _bounds(begin, end, count, shape.ratio if level == 0 else 1.0)
+        bounds = _moved(bounds, crossing, shape.slack)
         inner = [divided(a, b, level + 1) for a, b in pairwise(bounds)]
         return Range(begin, end, tuple(inner))
 
-    return divided(0, size, 0)
+    return divided(0, game.size, 0)
+
+
+def crossing_units(game: Game) -> NDArray[np.int64]:
+    """int64 (size + 1,): how many units below a bound are read at or above it."""
+    change = np.zeros(game.size + 2, dtype=np.int64)
+    last_read, weight = np.array(game.last_read, dtype=np.int64), np.array(game.weight, dtype=np.int64)
+    unit = np.arange(game.size)
+    crosses = last_read > unit
+    np.add.at(change, unit[crosses] + 1, weight[crosses])
+    np.add.at(change, last_read[crosses] + 1, -weight[crosses])
+    crossing: NDArray[np.int64] = np.cumsum(change)[: game.size + 1]
+    return crossing
 
 
 def _bounds(begin: int, end: int, count: int, ratio: float) -> list[int]:
@@ -68,6 +93,19 @@ def _bounds(begin: int, end: int, count: int, ratio: float) -> list[int]:
         bound = begin + round((end - begin) * part / whole)
         bounds.append(max(bounds[-1] + 1, min(bound, end - (count - 1 - i))))
     return [*bounds, end]
+
+
+def _moved(bounds: list[int], crossing: NDArray[np.int64], slack: float) -> list[int]:
+    """The inner bounds moved to the nearest place where fewest units cross, no part left empty."""
+    moved = [bounds[0]]
+    for i in range(1, len(bounds) - 1):
+        reach = int(slack * min(bounds[i] - bounds[i - 1], bounds[i + 1] - bounds[i]))
+        low = max(moved[-1] + 1, bounds[i] - reach)
+        high = max(low, min(bounds[-1] - (len(bounds) - 1 - i), bounds[i] + reach))
+        there = crossing[low : high + 1]
+        fewest = np.flatnonzero(there == there.min()) + low
+        moved.append(int(fewest[np.argmin(np.abs(fewest - bounds[i]))]))
+    return [*moved, bounds[-1]]
 
 
 def checkpointed(game: Game, whole: Range) -> list[Operation]:

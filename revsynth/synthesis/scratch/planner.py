@@ -17,6 +17,7 @@ from revsynth.logic.network import Network
 from revsynth.options import Effort, Oracle
 from revsynth.synthesis.scratch.checkpoints import (
     Range,
+    Shape,
     blocks,
     checkpointed,
     filled_bounds,
@@ -32,7 +33,7 @@ from revsynth.synthesis.scratch.units import Units, selected, units_of, with_tai
 
 SMALL_ANDS = 3_000
 """Up to so many ANDs all cuts and orders are tried, above only those that keep sums on lines."""
-WORK: dict[Effort, int] = {"low": 60_000, "normal": 300_000, "high": 3_000_000}
+WORK: dict[Effort, int] = {"low": 40_000, "normal": 160_000, "high": 2_000_000}
 """Units that trial plans may go through for one budget; a few plans are tried in any case."""
 FILLS = 48
 """Ways to fill one level of checkpoints that are looked at, for each variant."""
@@ -87,7 +88,11 @@ class Planner:
     def variants(self) -> list[Variant]:
         """The cuts and orders that are tried."""
         small = self.network.ands <= SMALL_ANDS
-        cuts = list(self._cuts(small))
+        cuts: list[Units] = []
+        for units in self._cuts(small):
+            # Without XORs to speak of, the ways to cut are one and the same.
+            if not any(units == other for other in cuts):
+                cuts.append(units)
         rules: list[tuple[Rule, int]] = [(rule, 0) for rule in (RULES if small else ("given", "large"))]
         if small and self.effort == "high":
             rules.extend(("any", self.seed + i) for i in range(8))
@@ -225,27 +230,31 @@ class Planner:
             size = len(variant.units)
             trials = max(6, WORK[self.effort] // (2 * len(self.variants) * max(1, size)))
             rows: list[tuple[int, int, Range]] = []
-            for parts, ratio in shapes(size, trials):
-                whole = nested(size, parts, ratio)
+            for shape in shapes(size, trials):
+                whole = nested(variant.game, shape)
                 plan = variant.plan(checkpointed(variant.game, whole), "nested checkpoints")
                 rows.append((plan.peak, plan.ands, whole))
             self._nested[number] = best_of_both(rows)
         return self._nested[number]
 
 
-def shapes(size: int, most: int) -> list[tuple[tuple[int, ...], float]]:
-    """Parts by level and their ratio, for `nested`: at most `most`, spread over what makes sense."""
-    found: list[tuple[tuple[int, ...], float]] = []
+def shapes(size: int, most: int) -> list[Shape]:
+    """At most `most` shapes for that many units, spread over what makes sense."""
+    found: list[Shape] = []
     for levels in (2, 3, 1, 4):
         for parts in product((2, 3, 4, 6), repeat=levels):
             count = 1
             for part in parts:
                 count *= part
             if count <= size:
-                found.extend((parts, ratio) for ratio in (1.0, 0.8, 0.65))
+                found.extend(
+                    Shape(parts, ratio, slack) for slack in (0.15, 0.3) for ratio in (1.0, 0.8, 0.65)
+                )
     if len(found) <= most:
         return found
-    return [found[i * len(found) // most] for i in range(most)]
+    # A step without a common factor with the length of a cycle, so that all kinds come up.
+    step = next(step for step in range(len(found) // most, 0, -1) if step == 1 or step % 6 in (1, 5))
+    return found[::step][:most]
 
 
 def best_of_both(rows: list[tuple[int, int, Range]]) -> list[tuple[int, int, Range]]:

@@ -57,7 +57,7 @@ class Units:
     flips: list[int]
     acts: list[Act]
     constants: list[int]
-    hints: list[Sum] = field(default_factory=list)
+    hints: list[Sum] = field(default_factory=list, compare=False)
 
     def __len__(self) -> int:
         return len(self.left)
