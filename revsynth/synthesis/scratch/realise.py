@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import dataclass
+from itertools import product
 
 import numpy as np
 
@@ -14,13 +14,16 @@ from revsynth.synthesis.interface import Block
 from revsynth.synthesis.scratch import homes, linear_state
 from revsynth.synthesis.scratch.blocks import block_of, cnots
 from revsynth.synthesis.scratch.landing import Landing, landed
+from revsynth.synthesis.scratch.orders import Rule, ordered
 from revsynth.synthesis.scratch.plan import act_ands, hold_everything
 from revsynth.synthesis.scratch.planner import Found
 from revsynth.synthesis.scratch.sheet import Sheet
-from revsynth.synthesis.scratch.units import Units, units_of, with_tails, without_sums
+from revsynth.synthesis.scratch.units import Units, selected, units_of, with_tails, without_sums
 
 LAZY_ANDS = 3_000
 """Up to so many ANDs the invertible linear state is tried, whose work grows with their square."""
+FEW_ANDS = (300, 1_000)
+"""Up to so many ANDs eight, or four, ways to look ahead are tried instead of one."""
 
 
 @dataclass(frozen=True)
@@ -64,38 +67,56 @@ class Realised:
 
 def held(network: Network, oracle: Oracle, positive: bool = False) -> list[Realised]:
     """Every AND held until the mirror, sums placed in different ways; fewest CNOTs first."""
+    phase = oracle == "phase"
 
     def prepared(units: Units) -> tuple[Units, Landing]:
         if oracle in ("fresh", "compute"):
             return landed(units, keep=oracle == "compute")
         return units, Landing()
 
-    def realised(units: Units, landing: Landing, sheet: Sheet, name: str) -> Realised:
+    def realised(units: Units, sheet: Sheet, name: str) -> Realised:
         block = block_of(sheet, units, oracle, f"network, {name}", positive)
-        return Realised(block, units.ands, act_ands(units, oracle == "phase"))
+        return Realised(block, units.ands, act_ands(units, phase))
 
-    phase = oracle == "phase"
     found: list[Realised] = []
     for threshold in (2, 3):
         units, landing = prepared(units_of(network, threshold))
         sheet = homes.carry_out(units, hold_everything(units).operations, landing, phase)
-        found.append(realised(units, landing, sheet, "hold"))
+        found.append(realised(units, sheet, "hold"))
     for cut in _cuts_without_sums(network):
-        units, landing = prepared(cut)
-        operations = hold_everything(units).operations
-        for hinted in (False, True) if units.hints else (False,):
-            sheet = linear_state.carry_out(units, operations, landing, phase, hinted=hinted)
-            found.append(realised(units, landing, sheet, "lazy"))
+        trials: list[Realised] = []
+        for rule, look_ahead, hinted in _trials(network.ands):
+            moved = cut if rule == "given" else selected(cut, ordered(cut, rule))
+            units, landing = prepared(moved)
+            operations = hold_everything(units).operations
+            sheet = linear_state.carry_out(units, operations, landing, phase, look_ahead, hinted)
+            trials.append(realised(units, sheet, "lazy"))
+        found.append(min(trials, key=lambda one: cnots(one.block)))
     return sorted(found, key=lambda one: (cnots(one.block), one.block.cascade.lines))
 
 
-def _cuts_without_sums(network: Network) -> Iterator[Units]:
-    if network.ands <= LAZY_ANDS:
-        try:
-            yield units_of(network, None)
-            yield without_sums(with_tails(units_of(network, 2)))
-        except OverflowError:
-            return
+def _cuts_without_sums(network: Network) -> list[Units]:
+    """The ways to cut in which every unit is an AND; none for large networks."""
+    if network.ands > LAZY_ANDS:
+        return []
+    try:
+        return [units_of(network, None), without_sums(with_tails(units_of(network, 2)))]
+    except OverflowError:
+        return []
+
+
+def _trials(ands: int) -> list[tuple[Rule, int, bool]]:
+    """Order, look-ahead, and whether hints are followed: more of them where they take no time."""
+    if ands > FEW_ANDS[1]:
+        return [("given", linear_state.LOOK_AHEAD, False)]
+    rules: tuple[Rule, ...] = ("given", "large")
+    found: list[tuple[Rule, int, bool]] = []
+    for rule, hinted in product(rules, (False, True)):
+        found.append((rule, linear_state.LOOK_AHEAD, hinted))
+    if ands <= FEW_ANDS[0]:
+        for rule, look_ahead in product(rules, (24, 200)):
+            found.append((rule, look_ahead, True))
+    return found
 
 
 def planned(found: Found, oracle: Oracle, positive: bool = False) -> list[Realised]:

@@ -307,5 +307,6 @@ def without_sums(units: Units) -> Units:
     acts = [
         Act(a.outputs, expanded(a.left), expanded(a.right) if a.right else (), a.flips) for a in units.acts
     ]
-    plain = Units(n, left, right, tail, units.flips, acts, units.constants)
+    hints = dict.fromkeys(whole[n + u] for u in range(len(units)) if not left[u])
+    plain = Units(n, left, right, tail, units.flips, acts, units.constants, [h for h in hints if len(h) > 1])
     return selected(plain, [unit for unit in range(len(units)) if plain.is_and(unit)])
