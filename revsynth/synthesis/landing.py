@@ -23,6 +23,7 @@ from revsynth.embed.half_free import wholly_fixed
 from revsynth.embed.in_place import tables
 from revsynth.embed.line_table import LineTable, beside
 from revsynth.embed.multiplicity import MAX_NUMBERED, most_frequent
+from revsynth.embed.shearing import sheared
 from revsynth.embed.support import on_fewest_lines, over_all_lines
 from revsynth.errors import BudgetError
 from revsynth.logic.completion import complete
@@ -204,6 +205,23 @@ class _Landing:
         cubes = minimise(part, prices, effort=self._task.effort, seed=self._task.seed)
         return cubes, values if part.is_complete else cubes.evaluate()[0] & last_word_mask(inputs)
 
+    def _shorten(self, values: Column, fixed: Column) -> tuple[Column, Column]:
+        """CNOTs among the open lines that make the sum for a condition shorter; the condition after them.
+
+        Nothing is done where the condition is partly free.
+        """
+        lines = self._table.lines
+        kept, few, sure = on_fewest_lines(values, fixed, lines)
+        if np.any(sure != last_word_mask(len(kept))):
+            return values, fixed
+        prices = prices_for(len(kept), self._task.uncompute, least_t=self._way.least_t)
+        taken = set(self._after.values())
+        changeable = [place for place, line in enumerate(kept) if line not in taken]
+        steps, few = sheared(few, len(kept), changeable, prices)
+        for place, other in steps:
+            self._cnot(kept[place], kept[other])
+        return over_all_lines(few, kept, lines), ones(lines)
+
     def _add_gates(self, gates: Sequence[Gate]) -> None:
         self._gates += gates
         if len(self._gates) > MAX_GATES:
@@ -249,6 +267,8 @@ class _Landing:
             self._spread_evenly(row, line)
         values, fixed = self._table.turning(row, line)
         self._after[self._table.drop(row)] = line
+        if self._way.folds:
+            values, fixed = self._shorten(values, fixed)
         self._turn(line, values, fixed)
         self._directed.clear()
 
