@@ -1,0 +1,375 @@
+"""Fewer ANDs by algebra alone: products with a common operand, and sums of products used only together.
+
+Of the products p l_1, p l_2, ... only sums that something reads matter, and p l_1 + p l_2 = p (l_1 + l_2):
+as many ANDs suffice as those sums have rank modulo 1 and p. Products that every reader reads together are one
+quadratic form, brought to half its rank in products by Dickson's reduction (L. E. Dickson, "Linear groups",
+1901). Both hold for any signals l, so nothing has to be simulated or proved.
+
+The basis is taken from the readers in topological order: what a reader needs is made of operands that stand
+before it, so that no cycle can arise.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+
+from revsynth.logic.and_reduction.form_builder import Form, FormBuilder, fits
+from revsynth.logic.network import Literal, Network
+
+Bits = int
+"""A set of ANDs or of readers, by number."""
+
+
+@dataclass
+class Forms:
+    """A network as products of forms. Bits of a form: 0 the constant, 1 ... the inputs, then the ANDs.
+
+    products[k]: the operands of AND k; outputs: the forms of the outputs.
+    """
+
+    inputs: int
+    products: list[tuple[Form, Form]]
+    outputs: list[Form]
+
+    @property
+    def first(self) -> int:
+        """The bit of AND 0."""
+        return 1 + self.inputs
+
+    def readers(self) -> Iterator[Form]:
+        """Both operands of AND 0, of AND 1, ..., and the outputs."""
+        for one, other in self.products:
+            yield one
+            yield other
+        yield from self.outputs
+
+
+@dataclass
+class Family:
+    """ANDs with the common operand `common`; members, a bit an AND, each common * rest + extra."""
+
+    common: Form
+    members: Bits
+    rests: dict[int, Form]
+    extras: dict[int, Form]
+    saved: int = 0
+    basis: dict[int, tuple[Form, Form]] = field(default_factory=dict)
+
+
+@dataclass
+class Bundle:
+    """ANDs that all readers read together, and the products that their sum needs.
+
+    products: pairs of sets; bit 2 i of a set is the first operand of the i-th member, bit 2 i + 1 the second.
+    affine: the set of operands to add.
+    """
+
+    members: list[int]
+    products: list[tuple[Bits, Bits]]
+    affine: Bits
+    constant: int
+
+    @property
+    def saved(self) -> int:
+        return len(self.members) - len(self.products)
+
+
+def forms_of(network: Network) -> Forms:
+    """The forms of a network, equal products merged."""
+    builder = FormBuilder(network.inputs)
+    outputs = builder.copy(network, [2 * i for i in range(1, network.inputs + 1)])
+    products = [operands for operands in builder.operands if operands is not None]
+    return Forms(network.inputs, products, [builder.form(literal) for literal in outputs])
+
+
+def merge_common_operands(network: Network) -> Network:
+    """The network with fewer ANDs where products share an operand or are always read together."""
+    if network.ands < 2 or not fits(network):
+        return network
+    forms = forms_of(network.reachable())
+    uses = _uses(forms)
+    families, taken = _families(forms, uses)
+    bundles = _bundles(forms, uses, taken)
+    if not families and not bundles:
+        return network
+    return _rebuilt(forms, families, bundles)
+
+
+def _uses(forms: Forms) -> list[Bits]:
+    """For each AND the readers that name it."""
+    uses = [0] * len(forms.products)
+    for number, form in enumerate(forms.readers()):
+        rest = form >> forms.first
+        while rest:
+            low = rest & -rest
+            uses[low.bit_length() - 1] |= 1 << number
+            rest ^= low
+    return uses
+
+
+def _families(forms: Forms, uses: list[Bits]) -> tuple[list[Family], Bits]:
+    """Families that save something, the best first, none sharing an AND; and the ANDs they take."""
+    by_operand: dict[Form, list[int]] = {}
+    for number, (one, other) in enumerate(forms.products):
+        for line in ((one & -2), (other & -2), (one ^ other) & -2):
+            by_operand.setdefault(line, []).append(number)
+    readers = list(forms.readers())
+    found = []
+    for common, members in by_operand.items():
+        if len(members) < 2:
+            continue
+        family = _family(forms, common, members)
+        rank = _rank(forms, family, uses, readers)
+        family.saved = len(members) - rank
+        if family.saved > 0:
+            found.append(family)
+    found.sort(key=lambda family: (-family.saved, family.members))
+    taken, chosen = 0, []
+    for family in found:
+        if not family.members & taken:
+            taken |= family.members
+            chosen.append(family)
+    return chosen, taken
+
+
+def _family(forms: Forms, common: Form, members: list[int]) -> Family:
+    """Writes each member as common * rest + extra."""
+    rests, extras = {}, {}
+    for number in members:
+        one, other = forms.products[number]
+        if one & -2 == common:
+            rests[number], extras[number] = other, other if one & 1 else 0
+        elif other & -2 == common:
+            rests[number], extras[number] = one, one if other & 1 else 0
+        else:
+            # one + other = common + c, so one * other = one * (one + common + c) = common * one + (1 + c) one
+            c = (one ^ other) & 1
+            rests[number], extras[number] = one, 0 if c else one
+    return Family(common, sum(1 << number for number in members), rests, extras)
+
+
+def _rank(forms: Forms, family: Family, uses: list[Bits], readers: list[Form]) -> int:
+    """How many products the readers of a family need."""
+    basis: dict[int, Form] = {}
+    for form in (1, family.common & -2):
+        basis[form.bit_length()] = form
+    seen, rank = set(), 0
+    together = 0
+    for number in family.rests:
+        together |= uses[number]
+    while together:
+        low = together & -together
+        together ^= low
+        part = readers[low.bit_length() - 1] >> forms.first & family.members
+        if part in seen:
+            continue
+        seen.add(part)
+        total = 0
+        for number in _members(part):
+            total ^= family.rests[number]
+        while total and (found := basis.get(total.bit_length())) is not None:
+            total ^= found
+        if total:
+            basis[total.bit_length()] = total
+            rank += 1
+    return rank
+
+
+def _members(part: Bits) -> Iterator[int]:
+    while part:
+        low = part & -part
+        yield low.bit_length() - 1
+        part ^= low
+
+
+def _bundles(forms: Forms, uses: list[Bits], taken: Bits) -> list[Bundle]:
+    """Sets of ANDs with the same readers whose sum needs fewer products than it has."""
+    alike: dict[Bits, list[int]] = {}
+    for number, readers in enumerate(uses):
+        if readers and not taken >> number & 1:
+            alike.setdefault(readers, []).append(number)
+    bundles = [_bundle(forms, members) for members in alike.values() if len(members) > 1]
+    return [bundle for bundle in bundles if bundle.saved > 0]
+
+
+def _bundle(forms: Forms, members: list[int]) -> Bundle:
+    """Dickson's reduction over independent sums of the members' operands."""
+    basis: dict[int, tuple[Form, int]] = {}
+    chosen: list[tuple[Bits, int]] = []
+    pairs: list[tuple[int, int]] = []
+    constants: list[tuple[int, int]] = []
+    for place, number in enumerate(members):
+        coordinates = []
+        for side, form in enumerate(forms.products[number]):
+            rest, mix, constant = form & -2, 0, form & 1
+            while rest and (found := basis.get(rest.bit_length())) is not None:
+                rest ^= found[0]
+                mix ^= found[1]
+            if rest:
+                basis[rest.bit_length()] = rest, mix ^ 1 << len(chosen)
+                mix = 1 << len(chosen)
+                chosen.append((1 << (2 * place + side), constant))
+            coordinates.append((mix, constant))
+        pairs.append((coordinates[0][0], coordinates[1][0]))
+        constants.append((coordinates[0][1], coordinates[1][1]))
+    products, affine, constant = _dickson(len(chosen), pairs, constants)
+
+    def operands(mix: Bits) -> tuple[Bits, int]:
+        names = flip = 0
+        for i in _members(mix):
+            names ^= chosen[i][0]
+            flip ^= chosen[i][1]
+        return names, flip
+
+    # Chosen operands carry their own constant: where it is 1 the variable is the operand plus 1.
+    named = []
+    for x, y in products:
+        (a, c), (b, d) = operands(x), operands(y)
+        named.append((a << 1 | c, b << 1 | d))
+    names, flip = operands(affine)
+    return Bundle(members, named, names, constant ^ flip)
+
+
+def _dickson(
+    variables: int, pairs: list[tuple[int, int]], constants: list[tuple[int, int]]
+) -> tuple[list[tuple[int, int]], int, int]:
+    """The sum of (a + c)(b + d) as products of independent linear forms, a linear form and a constant."""
+    meets = [0] * variables
+    affine = constant = 0
+    for (a, b), (c, d) in zip(pairs, constants, strict=True):
+        for i in _members(a):
+            meets[i] ^= b
+        for i in _members(b):
+            meets[i] ^= a
+        affine ^= a & b ^ (b if c else 0) ^ (a if d else 0)
+        constant ^= c & d
+    for i in range(variables):
+        meets[i] &= ~(1 << i)
+    products = []
+    while any(meets):
+        x = next(i for i in range(variables) if meets[i])
+        y = (meets[x] & -meets[x]).bit_length() - 1
+        one, other = meets[y], meets[x]
+        products.append((one, other))
+        affine ^= one & other
+        for i in _members(one):
+            meets[i] ^= other
+        for i in _members(other):
+            meets[i] ^= one
+        for i in range(variables):
+            meets[i] &= ~(1 << i)
+    return products, affine, constant
+
+
+def _rebuilt(forms: Forms, families: list[Family], bundles: list[Bundle]) -> Network:
+    """The network built anew from its forms, with the families' and bundles' own products."""
+    return _Rebuilding(forms, families, bundles).network()
+
+
+class _Rebuilding:
+    def __init__(self, forms: Forms, families: list[Family], bundles: list[Bundle]) -> None:
+        self._forms = forms
+        self._families = families
+        self._builder = FormBuilder(forms.inputs)
+        self._family_of = {number: family for family in families for number in family.rests}
+        self._in_families = sum(family.members for family in families) << forms.first
+        self._bundle_at = {bundle.members[-1]: bundle for bundle in bundles}
+        self._bundled = {number for bundle in bundles for number in bundle.members}
+        self._new: list[Form] = [1 << bit for bit in range(forms.first)]
+        self._operands: list[tuple[Form, Form]] = []
+
+    def network(self) -> Network:
+        """Goes through the ANDs in order, then the outputs."""
+        for number, (one, other) in enumerate(self._forms.products):
+            a, b = self._moved(one), self._moved(other)
+            self._operands.append((a, b))
+            if number in self._bundled:
+                bundle = self._bundle_at.get(number)
+                self._new.append(0 if bundle is None else self._bundle_sum(bundle))
+            elif number in self._family_of:
+                self._new.append(0)
+            else:
+                self._new.append(self._product(a, b))
+        literals: list[Literal] = [
+            self._builder.realise(self._moved(output)) for output in self._forms.outputs
+        ]
+        return self._builder.build(literals)
+
+    def _product(self, a: Form, b: Form) -> Form:
+        builder = self._builder
+        return builder.form(builder.and_(builder.realise(a), builder.realise(b)))
+
+    def _moved(self, form: Form) -> Form:
+        """A form over the old signals as one over the new ones."""
+        total = 0
+        for bit in _members(form & ~self._in_families):
+            total ^= self._new[bit]
+        if form & self._in_families:
+            for family in self._families:
+                part = form >> self._forms.first & family.members
+                if part:
+                    total ^= self._family_sum(family, part)
+        return total
+
+    def _member(self, family: Family, number: int, form: Form) -> Form:
+        """A family's rest or extra (an operand of the member, or 0) over the new signals."""
+        if not form:
+            return 0
+        a, b = self._operands[number]
+        return a if form == self._forms.products[number][0] else b
+
+    def _family_sum(self, family: Family, part: Bits) -> Form:
+        """The sum of some members: products there already, and one more where they do not suffice."""
+        rest = total = 0
+        common = self._moved_common(family, part)
+        for number in _members(part):
+            rest ^= self._member(family, number, family.rests[number])
+            total ^= self._member(family, number, family.extras[number])
+        # common * common = common, common * 1 = common
+        product = 0
+        basis = family.basis
+        if rest & 1:
+            rest ^= 1
+            product ^= common
+        while rest and (found := basis.get(rest.bit_length())) is not None:
+            rest ^= found[0]
+            product ^= found[1]
+            if rest & 1:
+                rest ^= 1
+                product ^= common
+        if rest:
+            made = self._product(common, rest)
+            basis[rest.bit_length()] = rest, made
+            product ^= made
+        return total ^ product
+
+    def _moved_common(self, family: Family, part: Bits) -> Form:
+        """The common operand over the new signals; its own square joins the basis."""
+        number = next(_members(part))
+        one, other = self._forms.products[number]
+        a, b = self._operands[number]
+        if one & -2 == family.common:
+            common = a ^ (one & 1)
+        elif other & -2 == family.common:
+            common = b ^ (other & 1)
+        else:
+            common = a ^ b ^ ((one ^ other) & 1)
+        if not family.basis and common & -2:
+            family.basis[common.bit_length()] = common & -2, 0 if common & 1 else common
+        return common
+
+    def _bundle_sum(self, bundle: Bundle) -> Form:
+        """The sum of a bundle's members."""
+        operands = [form for number in bundle.members for form in self._operands[number]]
+
+        def total(names: Bits) -> Form:
+            form = 0
+            for i in _members(names):
+                form ^= operands[i]
+            return form
+
+        result = total(bundle.affine) ^ bundle.constant
+        for one, other in bundle.products:
+            result ^= self._product(total(one >> 1) ^ (one & 1), total(other >> 1) ^ (other & 1))
+        return result

@@ -1,0 +1,112 @@
+"""The passes in several orders, each to a fixed point; the best network wins."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+from revsynth.logic.and_reduction.common_operands import merge_common_operands
+from revsynth.logic.and_reduction.cut_mapping import map_cuts
+from revsynth.logic.and_reduction.form_builder import FormBuilder, fits
+from revsynth.logic.and_reduction.resubstitution import Work, resubstitute
+from revsynth.logic.and_reduction.xor_sharing import share_xors
+from revsynth.logic.network import Network
+from revsynth.logic.network_builder import NetworkBuilder
+
+Progress = Callable[[str], None]
+Pass = Callable[[Network], Network]
+
+
+@dataclass(frozen=True)
+class Effort:
+    """How much work: rounds of one order of passes, cuts kept a node, the work of resubstitution, gates up to
+    which every order is tried, and up to which cuts of five leaves are used.
+    """
+
+    rounds: int
+    keep: int
+    work: Work
+    all_orders: int
+    five_leaves: int
+
+
+EFFORTS = {
+    "low": Effort(1, 6, Work(2_000_000_000, 200, 100, 50), 0, 0),
+    "normal": Effort(3, 10, Work(), 6_000, 120),
+    "high": Effort(8, 16, Work(400_000_000_000, 3000, 5000, 2000), 40_000, 5_000),
+}
+
+
+def fewest_ands(
+    network: Network,
+    *,
+    effort: str = "normal",
+    care: Network | None = None,
+    seed: int = 0,
+    progress: Progress | None = None,
+) -> Network:
+    """A network with never more ANDs and the same outputs wherever `care` is 1.
+
+    care: one output; None: everywhere. effort: `low`, `normal` or `high`, a fixed amount of work. Every
+    rewrite is proved: see the passes. Of equal numbers of ANDs the fewest XORs, then the least depth in ANDs
+    win. Raises ValueError for another effort or a `care` of another shape.
+    """
+    if effort not in EFFORTS:
+        raise ValueError(f"effort {effort!r}: one of {', '.join(EFFORTS)}")
+    if care is not None and (care.inputs, len(care.outputs)) != (network.inputs, 1):
+        raise ValueError("care must have the inputs of the network and one output")
+    limits = EFFORTS[effort]
+    start = _copied(network)
+    best = min(network.reachable(), start, key=_score)
+    if best.ands < 2 and best.xors < 2:
+        return best
+    for name, order in _orders(start, limits, care, seed):
+        found = _repeated(start, order, limits.rounds)
+        if progress is not None:
+            progress(f"{name}: {found.ands} ANDs")
+        best = min(best, found, key=_score)
+    return min(best, share_xors(best), key=_score)
+
+
+def _score(network: Network) -> tuple[int, int, int]:
+    return network.ands, network.xors, int(network.and_depth().max(initial=0))
+
+
+def _copied(network: Network) -> Network:
+    """The network with equal sums and products merged."""
+    builder = FormBuilder(network.inputs) if fits(network) else NetworkBuilder(network.inputs)
+    return builder.build(builder.copy(network, [2 * i for i in range(1, network.inputs + 1)]))
+
+
+def _orders(
+    network: Network, limits: Effort, care: Network | None, seed: int
+) -> Sequence[tuple[str, list[Pass]]]:
+    """Orders of passes worth trying on a network of this size."""
+
+    def linear(given: Network) -> Network:
+        return resubstitute(given, care=care, work=limits.work, seed=seed)
+
+    def cuts(k: int) -> Pass:
+        return lambda given: map_cuts(given, k=k, keep=limits.keep)
+
+    common: Pass = merge_common_operands
+    orders: list[tuple[str, list[Pass]]] = [("cuts first", [cuts(4), linear, common])]
+    if network.gates <= limits.all_orders:
+        orders.append(("sums first", [linear, common, cuts(4)]))
+    if network.gates <= limits.five_leaves:
+        orders.append(("wide cuts first", [cuts(5), linear, common]))
+    return orders
+
+
+def _repeated(network: Network, order: list[Pass], rounds: int) -> Network:
+    """The passes in this order until a round brings nothing; the best network met."""
+    best = network
+    for _ in range(rounds):
+        present = best
+        before = _score(best)
+        for step in order:
+            present = step(present)
+            best = min(best, present, key=_score)
+        if _score(best) >= before:
+            break
+    return best
