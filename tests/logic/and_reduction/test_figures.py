@@ -23,8 +23,8 @@ def aes() -> Network:
     return naive.table(8, [[value >> bit & 1 for value in box] for bit in range(8)])
 
 
-# Full adder 1 AND, a < b n, equality n - 1 ANDs: common practice. Weight of n bits n - ones(n), so majority of
-# 63 is 57: Boyar, Peralta, TCS 396, 2008. Schoolbook product at most 2 n^2 - n: counted by hand.
+# Full adder 1 AND, a < b n, equality n - 1 ANDs: common practice. Weight of n bits n - ones(n), so majority
+# of 63 is 57: Boyar, Peralta, TCS 396, 2008. Schoolbook product at most 2 n^2 - n: counted by hand.
 FIGURES: list[tuple[str, Callable[[], Network], int]] = [
     ("64-bit adder with carry", lambda: naive.adder(64), 64),
     ("128-bit adder with carry", lambda: naive.adder(128), 128),
