@@ -60,25 +60,30 @@ class FromNetwork:
 
     def _within(self, network: Network, task: Task, progress: Progress) -> list[Block]:
         """Blocks of plans for the lines allowed; for the aim `qubits` of the fewest lines."""
-        form: Oracle = "fresh" if task.oracle == "compute" else task.oracle
-        planner = Planner(network, form, task.effort, task.seed)
+        # Outputs of `compute` start in 0 and its garbage may stay: either no mirror is run, and products are
+        # added to outputs, or outputs are landed on and everything is cleaned up, which can do with less.
+        forms: tuple[Oracle, ...] = ("compute", "fresh") if task.oracle == "compute" else (task.oracle,)
         bare = _bare_lines(task)
-        scratch = None if task.lines is None else task.lines - bare
-        if task.aim == "qubits":
-            least = planner.least_scratch()
-            scratch = least if scratch is None else min(scratch, least)
-        assert scratch is not None
-        progress(f"network: planning {network.ands} ANDs on {scratch} scratch lines")
-        plans = planner.best(scratch)
-        if not plans and task.aim != "qubits":
-            raise BudgetError(
-                f"{network.ands} ANDs need at least {bare + planner.least_scratch()} lines with the plans "
-                f"that were tried, {task.lines} allowed"
-            )
         blocks: list[Block] = []
-        for plan in plans[: 2 if network.ands <= SMALL_ANDS else 1]:
-            blocks.extend(one.block for one in planned(plan, form, task.controls == "positive"))
-        return [block for block in blocks if task.lines is None or block.cascade.lines <= task.lines]
+        least: list[int] = []
+        for form in forms:
+            planner = Planner(network, form, task.effort, task.seed)
+            scratch = planner.least_scratch() if task.aim == "qubits" else task.lines or 0
+            if task.lines is not None:
+                scratch = min(scratch, task.lines - bare)
+            progress(f"network: planning {network.ands} ANDs on {scratch} scratch lines")
+            plans = planner.best(scratch)[: 2 if network.ands <= SMALL_ANDS else 1]
+            for plan in plans:
+                blocks.extend(one.block for one in planned(plan, form, task.controls == "positive"))
+            if not plans:
+                least.append(bare + planner.least_scratch())
+        blocks = [block for block in blocks if task.lines is None or block.cascade.lines <= task.lines]
+        if not blocks and task.aim != "qubits":
+            raise BudgetError(
+                f"{network.ands} ANDs need at least {min(least)} lines with the plans that were tried, "
+                f"{task.lines} allowed"
+            )
+        return blocks
 
 
 NETWORK = FromNetwork()

@@ -11,8 +11,10 @@ from revsynth.synthesis.scratch.sheet import GateRow, Sheet, cascade_of
 from revsynth.synthesis.scratch.units import Units
 
 
-def block_of(sheet: Sheet, units: Units, oracle: Oracle, method: str, positive: bool) -> Block:
-    """The run, its mirror, and the complements of outputs; kept lines move before the work lines.
+def block_of(
+    sheet: Sheet, units: Units, oracle: Oracle, method: str, positive: bool, mirrored: bool = True
+) -> Block:
+    """The run, its mirror (if mirrored), and the complements of outputs; kept lines move before work lines.
 
     Lines that no gate touches stay where they belong to inputs or outputs.
     """
@@ -20,7 +22,7 @@ def block_of(sheet: Sheet, units: Units, oracle: Oracle, method: str, positive: 
     for output, complement in enumerate(units.constants):
         if complement:
             last.append((PHASE if oracle == "phase" else units.inputs + output, -1, -1))
-    rows = np.concatenate([sheet.gates(), np.array(last, dtype=np.int64).reshape(-1, 3)])
+    rows = np.concatenate([sheet.gates(mirrored), np.array(last, dtype=np.int64).reshape(-1, 3)])
     front = sheet.inputs + sheet.outputs
     kept = sheet.kept
     others = sorted(set(range(front, sheet.lines)) - set(kept))

@@ -14,7 +14,8 @@ STEPS = 24
 def curve(network: Network, oracle: Oracle, effort: Effort = "normal", seed: int = 0) -> list[Point]:
     """Points of which no other has both fewer qubits and fewer T gates (measured), fewest qubits first.
 
-    oracle: `phase`, `bit` or `fresh`. A task with `lines` set to a point's qubits gives a block as good.
+    oracle: `phase`, `bit`, `fresh` or `compute`. A task with `lines` set to a point's qubits gives a block as
+    good.
     """
     planner = Planner(network.reachable(), oracle, effort, seed)
     base = network.inputs + (0 if oracle == "phase" else len(network.outputs))

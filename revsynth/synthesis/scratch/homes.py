@@ -17,16 +17,22 @@ _NEVER = 1 << 60
 
 def carry_out(units: Units, operations: list[Operation], landing: Landing, phase: bool) -> Sheet:
     """The forward run of a plan on lines inputs, outputs (none for phase), work."""
-    run = _Run(units, operations, landing, phase)
-    for time, operation in enumerate(operations):
-        run.now = time
-        index, kind = divmod(operation, 3)
-        if kind == ACT:
-            run.act(units.acts[index])
-        elif kind == ERASE:
-            run.erase(index)
-        else:
-            run.compute(index)
+    run = _Run(units, operations, landing, phase, _NEVER)
+    run.all(operations)
+    return run.sheet
+
+
+def carry_out_once(units: Units, operations: list[Operation]) -> Sheet:
+    """The forward run for outputs in 0, after which no mirror comes: the inputs are as they were.
+
+    The lines that still hold something are the sheet's `kept` ones.
+    """
+    run = _Run(units, operations, Landing(), False, len(operations))
+    run.all(operations)
+    run.now = len(operations)
+    for variable in range(units.inputs):
+        run.clean(variable)
+    run.sheet.kept = sorted({line for line in run.line[units.inputs :] if line >= 0})
     return run.sheet
 
 
@@ -37,7 +43,10 @@ class _Run:
     sharers[v]: variables onto whose lines v is folded; uses[v]: times at which v is needed, last first.
     """
 
-    def __init__(self, units: Units, operations: list[Operation], landing: Landing, phase: bool) -> None:
+    def __init__(
+        self, units: Units, operations: list[Operation], landing: Landing, phase: bool, inputs_needed: int
+    ) -> None:
+        """inputs_needed: a time after the last operation at which the inputs are needed, _NEVER for none."""
         variables = units.inputs + len(units)
         self.units = units
         self.landing = landing
@@ -50,11 +59,26 @@ class _Run:
         self.taken_over: dict[int, Variable] = {}
         self.now = 0
         self.uses: list[list[int]] = [[] for _ in range(variables)]
+        if inputs_needed < _NEVER:
+            for uses in self.uses[: units.inputs]:
+                uses.append(inputs_needed)
         for time in range(len(operations) - 1, -1, -1):
             for variable in reads_of(units, operations[time]):
                 self.uses[variable].append(time)
             for variable in landing.rest_at(operations[time]):
                 self.uses[variable].append(time)
+
+    def all(self, operations: list[Operation]) -> None:
+        """Do all operations."""
+        for time, operation in enumerate(operations):
+            self.now = time
+            index, kind = divmod(operation, 3)
+            if kind == ACT:
+                self.act(self.units.acts[index])
+            elif kind == ERASE:
+                self.erase(index)
+            else:
+                self.compute(index)
 
     def next_use(self, variable: Variable, after: int) -> int:
         """The first time from `after` on at which the variable is needed."""

@@ -75,7 +75,7 @@ class Found:
 
 
 class Planner:
-    """Plans of one network in one oracle form (`phase`, `bit` or `fresh`)."""
+    """Plans of one network in one oracle form (`phase`, `bit`, `fresh`, or `compute` without landing)."""
 
     def __init__(self, network: Network, oracle: Oracle, effort: Effort, seed: int) -> None:
         self.network = network

@@ -15,7 +15,7 @@ from revsynth.synthesis.scratch import homes, linear_state
 from revsynth.synthesis.scratch.blocks import block_of, cnots
 from revsynth.synthesis.scratch.landing import Landing, landed
 from revsynth.synthesis.scratch.orders import Rule, ordered
-from revsynth.synthesis.scratch.plan import act_ands, hold_everything
+from revsynth.synthesis.scratch.plan import COMPUTE, act_ands, hold_everything
 from revsynth.synthesis.scratch.planner import Found
 from revsynth.synthesis.scratch.sheet import Sheet
 from revsynth.synthesis.scratch.units import Units, selected, units_of, with_tails, without_sums
@@ -120,14 +120,20 @@ def _trials(ands: int) -> list[tuple[Rule, int, bool]]:
 
 
 def planned(found: Found, oracle: Oracle, positive: bool = False) -> list[Realised]:
-    """The block or blocks of a plan, fewest CNOTs first."""
+    """The block or blocks of a plan, fewest CNOTs first; `compute` has no mirror and keeps what is held."""
     units, landing = found.variant.units, found.variant.landing
+    name, operations = f"network, {found.plan.name}", found.plan.operations
+    if oracle == "compute":
+        sheet = homes.carry_out_once(units, operations)
+        block = block_of(sheet, units, oracle, name, positive, mirrored=False)
+        computed = sum(1 for one in operations if one % 3 == COMPUTE and units.is_and(one // 3))
+        return [Realised(block, computed, act_ands(units, phase=False))]
     engines = [homes.carry_out]
     if units.ands <= LAZY_ANDS and len(units) == units.ands:
         engines.append(linear_state.carry_out)
     result = []
     for carry_out in engines:
-        sheet = carry_out(units, found.plan.operations, landing, oracle == "phase")
-        block = block_of(sheet, units, oracle, f"network, {found.plan.name}", positive)
+        sheet = carry_out(units, operations, landing, oracle == "phase")
+        block = block_of(sheet, units, oracle, name, positive)
         result.append(Realised(block, found.plan.ands, act_ands(units, oracle == "phase")))
     return sorted(result, key=lambda one: (cnots(one.block), one.block.cascade.lines))
