@@ -34,6 +34,18 @@ FORBIDDEN = {
         "report",
         "cli",
     },
+    "elaborate": {
+        "circuit",
+        "embed",
+        "cascade",
+        "synthesis",
+        "reduction",
+        "lowering",
+        "qasm",
+        "verification",
+        "report",
+        "cli",
+    },
     "embed": {
         "circuit",
         "synthesis.transform",

@@ -44,20 +44,24 @@ def clause_networks(clauses: Clauses, effort: str = "normal", seed: int = 0) -> 
 
 @dataclass(frozen=True)
 class FreeInputs:
-    """variables: those that stay inputs, ascending; function: one output over them, variables[i] being input
-    i.
+    """A CNF over its free variables: variables[i], ascending, is input i of both networks.
+
+    function: one output, 1 where the extended assignment satisfies every clause.
+    extension: one output for each variable of the CNF, its value; variable i is output i - 1.
     """
 
     variables: tuple[int, ...]
     function: NetworkFunction
+    extension: Network
 
 
 def free_inputs(clauses: Clauses, effort: str = "normal", seed: int = 0) -> FreeInputs:
-    """The CNF over its free variables: others are defined by gates found in the clauses.
+    """The CNF over its free variables: the others are defined by gates found in the clauses.
 
-    The function is 1 where the free variables, extended by the definitions, satisfy every clause; there are
-    as many such inputs as the CNF has models. Variables in no clause are free.
+    The function is 1 where the free variables, extended by the definitions, satisfy every clause, and no two
+    models agree on all free variables: so there are as many such inputs as models. Variables in no clause are
+    free.
     """
     found = conjunction(clauses.clauses, clauses.xor_clauses)
-    free, network = free_form(found, range(1, clauses.variables + 1), RUNS[effort], seed)
-    return FreeInputs(free, NetworkFunction(network))
+    form = free_form(found, range(1, clauses.variables + 1), RUNS[effort], seed)
+    return FreeInputs(form.variables, NetworkFunction(form.holds), form.extension)

@@ -60,3 +60,11 @@ def _covering_row(cover: Cover, output: int, index: int, character: str) -> int:
         if fits and outputs[output] == character:
             return number
     return 0
+
+
+def conflict_error(cover: Cover, index: int, source: str) -> SpecError | None:
+    """The error where an output is on and off at once at an input; None where none is."""
+    for output in range(cover.outputs):
+        if all(_covering_row(cover, output, index, character) for character in "10"):
+            return SpecError(_conflict(cover, output, index), source=source)
+    return None

@@ -7,8 +7,9 @@ from collections.abc import Mapping
 import numpy as np
 from numpy.typing import NDArray
 
-from revsynth.spec.layout import value_range
-from revsynth.spec.model import Word
+from revsynth.errors import SpecError
+from revsynth.spec.layout import describe, value_range
+from revsynth.spec.model import Spec, Word
 from revsynth.spec.output_words import check_length
 from revsynth.spec.over_domain import OverDomain
 
@@ -43,21 +44,14 @@ def mapped_images(
     domain with one image; ExpressionError as `OverDomain.numbers` does.
     """
     images = np.arange(1 << over.inputs, dtype=np.int32)
-    registers = _registers(over.spec.inputs)
     for name, text in new_values.items():
-        if name not in registers:
-            raise over.error(_no_such_word(name, over.spec.inputs), "[permutation] map")
+        shift, word = register_of(over.spec, name)
         place = f"[permutation] map {name}"
-        shift, word = registers[name]
         values = over.numbers(text, place)
         lowest, highest = value_range(word)
         at = over.first((values < lowest) | (values > highest))
         if at is not None:
-            raise over.error(
-                f"the new value is {values[at]} at {over.named(at)}, but {name} holds {lowest} to {highest}: "
-                f"write {_wrapped(text, word)} or restrict the domain",
-                place,
-            )
+            raise unfit_error(over.spec, (name, word), text, int(values[at]), at)
         pattern = (values & ((1 << word.bits) - 1)).astype(np.int32)
         images = (images & ~np.int32(((1 << word.bits) - 1) << shift)) | (pattern << shift)
     fixed = np.ones(1 << over.inputs, dtype=bool) if over.needed is None else over.needed
@@ -70,6 +64,29 @@ def _wrapped(text: str, word: Word) -> str:
     """How to write an expression so that its values wrap around within the word."""
     shown, size = " ".join(text.split()), 1 << word.bits
     return f"(({shown}) + {size // 2}) % {size} - {size // 2}" if word.signed else f"({shown}) % {size}"
+
+
+def unfit_error(spec: Spec, word: tuple[str, Word], text: str, value: int, index: int) -> SpecError:
+    """The error for a new value that does not fit its word (given by its name and size) at an input."""
+    name, size = word
+    lowest, highest = value_range(size)
+    return SpecError(
+        f"the new value is {value} at {describe(spec.inputs, index)}, but {name} holds {lowest} to "
+        f"{highest}: write {_wrapped(text, size)} or restrict the domain",
+        source=spec.source,
+        place=f"[permutation] map {name}",
+    )
+
+
+def register_of(spec: Spec, name: str) -> tuple[int, Word]:
+    """The lowest bit of a word or array element in the combined index, and how wide it is.
+
+    Raises SpecError where there is none.
+    """
+    found = _registers(spec.inputs).get(name)
+    if found is None:
+        raise SpecError(_no_such_word(name, spec.inputs), source=spec.source, place="[permutation] map")
+    return found
 
 
 def _registers(words: tuple[Word, ...]) -> dict[str, tuple[int, Word]]:

@@ -63,14 +63,7 @@ class OverDomain:
             wrong = (values != 0) & (values != 1)
             at = self.first(wrong)
             if at is not None:
-                shown = " ".join(expression.text.split())
-                fix = f"({shown}) != 0" if len(shown) <= 60 else "(...) != 0"
-                raise ExpressionError(
-                    f"the value is {values[at]} at {self.named(at)}: a condition is true or false, "
-                    f"or 0 or 1; write {fix} if every other number shall count as true",
-                    source=self.spec.source,
-                    place=place,
-                )
+                raise condition_error(expression, values[at], self.named(at))
             values = values == 1
         return pack(np.asarray(values, dtype=bool)) & self.domain
 
@@ -107,3 +100,15 @@ class OverDomain:
         values, warnings = evaluate_with_warnings(expression, self.needed)
         self.warnings.extend(warnings)
         return expression, values
+
+
+def condition_error(expression: Expression, value: int, named: str) -> ExpressionError:
+    """The error for a condition that is neither 0 nor 1 at an input, given in words."""
+    shown = " ".join(expression.text.split())
+    fix = f"({shown}) != 0" if len(shown) <= 60 else "(...) != 0"
+    return ExpressionError(
+        f"the value is {value} at {named}: a condition is true or false, "
+        f"or 0 or 1; write {fix} if every other number shall count as true",
+        source=expression.source,
+        place=expression.place,
+    )

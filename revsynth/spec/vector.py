@@ -58,7 +58,9 @@ def evaluate_with_warnings(
     found = []
     for key, seen in comparisons.items():
         if not (seen.ever and seen.never) and (seen.everywhere or _constant(expression, key, needed)):
-            found.append((expression.origin.position(key[0]), key[1], _warning(expression, key, seen.ever)))
+            found.append(
+                (expression.origin.position(key[0]), key[1], constant_comparison(expression, key, seen.ever))
+            )
     return values, tuple(dict.fromkeys(text for _, _, text in sorted(found)))
 
 
@@ -164,7 +166,8 @@ def _functions(*parts: ast.expr) -> set[str]:
     return {function.id for function in calls if isinstance(function, ast.Name)}
 
 
-def _warning(expression: Expression, key: tuple[ast.Compare, int], always: bool) -> str:
+def constant_comparison(expression: Expression, key: tuple[ast.Compare, int], always: bool) -> str:
+    """The warning for a comparison (a pair of a chain by its node and place) that has one answer only."""
     node, origin = key[0], expression.origin
     shown = origin.shown(node)
     if len(node.ops) > 1:
