@@ -7,6 +7,8 @@ what sits in the states, and the columns with it; the gates themselves act befor
 
 from __future__ import annotations
 
+from collections.abc import Iterable
+
 import numpy as np
 
 from revsynth.logic.structure import doubled, halves
@@ -25,21 +27,26 @@ class LineTable:
         self.outputs = list(outputs)
         self.values = [row.copy() for row in values]
         self.fixed = [row.copy() for row in fixed]
-        self._profiles: list[tuple[list[int], list[int]] | None] = [None] * len(self.outputs)
+        self._profiles: list[list[tuple[int, int] | None]] = [[None] * lines for _ in self.outputs]
 
-    def apply(self, line: int, condition: Column) -> None:
-        """The gate that turns `line` where `condition`, which must not depend on that line, holds."""
+    def apply(self, line: int, condition: Column, looked_at: Iterable[int]) -> None:
+        """The gate that turns `line` where `condition` holds, which depends on the lines `looked_at` alone.
+
+        Pairs of states that differ in any other line stay pairs (`line` is never looked at).
+        """
+        looked_at = tuple(looked_at)
         for row in range(len(self.outputs)):
             for columns in (self.values, self.fixed):
                 change = columns[row] ^ turned(columns[row], self.lines, line)
                 change &= condition
                 if change.any():
                     columns[row] ^= change
-                    self._profiles[row] = None
+                    for other in looked_at:
+                        self._profiles[row][other] = None
 
     def add(self, line: int, other: int) -> None:
         """The gate that turns `line` where `other` is 1."""
-        self.apply(line, variable(self.lines, other))
+        self.apply(line, variable(self.lines, other), (other,))
 
     def drop(self, row: int) -> int:
         """Forget a row, which has its line now; the number of its output."""
@@ -51,23 +58,20 @@ class LineTable:
 
         Without any, the row is the line itself, turned by a function of the others.
         """
-        return self._profile(row)[0]
+        return [self._pairs(row, line)[0] for line in range(self.lines)]
 
     def changes(self, row: int) -> list[int]:
         """For each line: in how many such pairs the row differs. Without any, the row does not need it."""
-        return self._profile(row)[1]
+        return [self._pairs(row, line)[1] for line in range(self.lines)]
 
-    def _profile(self, row: int) -> tuple[list[int], list[int]]:
-        found = self._profiles[row]
+    def _pairs(self, row: int, line: int) -> tuple[int, int]:
+        found = self._profiles[row][line]
         if found is None:
-            found = ([], [])
-            for line in range(self.lines):
-                low, high = halves(self.values[row], self.lines, line)
-                both = np.bitwise_and(*halves(self.fixed[row], self.lines, line))
-                differ = count_ones((low ^ high) & both)
-                found[0].append(count_ones(both) - differ)
-                found[1].append(differ)
-            self._profiles[row] = found
+            low, high = halves(self.values[row], self.lines, line)
+            both = np.bitwise_and(*halves(self.fixed[row], self.lines, line))
+            differ = count_ones((low ^ high) & both)
+            found = (count_ones(both) - differ, differ)
+            self._profiles[row][line] = found
         return found
 
     def turning(self, row: int, line: int) -> tuple[Column, Column]:

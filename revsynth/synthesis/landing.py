@@ -193,7 +193,7 @@ class _Landing:
         moved = [(line, _on_lines(cube, kept)) for cube in cubes]
         self._add_gates(list(conjugated(moved, self._task.controls)))
         column = over_all_lines(actual, kept, lines)
-        self._table.apply(line, column)
+        self._table.apply(line, column, kept)
         return column
 
     def _sum(self, values: Column, fixed: Column, inputs: int) -> tuple[ExclusiveSum, Column]:

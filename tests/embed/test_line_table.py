@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 
 from revsynth.embed.line_table import LineTable, beside, spread_up, turned
 from revsynth.embed.support import on_fewest_lines, over_all_lines
-from revsynth.logic.truth_table import pack, unpack
+from revsynth.logic.truth_table import ones, pack, unpack
 from tests.logic.tables import random_function
 
 
@@ -23,15 +23,16 @@ def test_a_gate_moves_what_sits_in_the_states(lines: int, seed: int, data: st.Da
     table = table_of(lines, seed)
     line = data.draw(st.integers(0, lines - 1))
     state = np.arange(1 << lines)
-    other = np.random.default_rng(seed).integers(0, 2, 1 << lines)
-    condition = other[state & ~(1 << line)]
+    some = data.draw(st.integers(0, (1 << lines) - 1)) & ~(1 << line)
+    condition = np.random.default_rng(seed).integers(0, 2, 1 << lines)[state & some]
     before = [unpack(row, lines) for row in (*table.values, *table.fixed)]
     assert (
         unpack(turned(table.values[0], lines, line), lines).tolist()
         == before[0][state ^ (1 << line)].tolist()
     )
-    table.clashes(0)
-    table.apply(line, pack(condition))
+    check_profiles(table)
+    looked_at = on_fewest_lines(pack(condition), ones(lines), lines)[0]
+    table.apply(line, pack(condition), looked_at)
     source = state ^ (condition << line)
     for row, old in zip((*table.values, *table.fixed), before, strict=True):
         assert unpack(row, lines).tolist() == old[source].tolist()
