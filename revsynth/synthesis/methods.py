@@ -4,8 +4,12 @@ from __future__ import annotations
 
 from revsynth.synthesis.interface import Method
 from revsynth.synthesis.linear import LINEAR
+from revsynth.synthesis.network import NETWORK
 from revsynth.synthesis.products import PRODUCTS
 from revsynth.synthesis.transform import TRANSFORM
 
-METHODS: tuple[Method, ...] = (LINEAR, PRODUCTS, TRANSFORM)
+METHODS: tuple[Method, ...] = (LINEAR, NETWORK, PRODUCTS, TRANSFORM)
 """Tried in this order; `auto` keeps the cheapest result for the aim."""
+
+WIDE: tuple[Method, ...] = (NETWORK,)
+"""Those that need no truth table."""
