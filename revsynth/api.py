@@ -217,13 +217,19 @@ class Build:
 
     @property
     def counts(self) -> dict[str, int | None]:
-        """Inputs inside the domain, certainly marked (None but for predicates), and free."""
-        function = self._built.understanding.function
+        """Inputs inside the domain, certainly marked (of predicates), and free; None: not counted."""
+        function = self._built.understanding.tabulated
+        if function is None:
+            return {"domain": self._domain(), "marked": None, "free": None}
         return {
             "domain": count_ones(function.domain),
             "marked": function.marked if self.spec.kind == "predicate" else None,
             "free": function.free,
         }
+
+    def _domain(self) -> int | None:
+        """Inputs of a wide spec inside its domain, where no condition makes that a matter of counting."""
+        return None if self.spec.domain is not None else 1 << self.spec.input_bits
 
     @property
     def options(self) -> BuildOptions:

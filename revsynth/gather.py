@@ -10,9 +10,10 @@ from revsynth.choice import Trial
 from revsynth.errors import BudgetError, UsageError
 from revsynth.options import BuildOptions, Effort
 from revsynth.shortening import shorten
+from revsynth.spec.limits import MAX_INPUT_BITS
 from revsynth.synthesis.interface import Block, Method, Task
 from revsynth.synthesis.keeping import keep_products
-from revsynth.synthesis.methods import METHODS
+from revsynth.synthesis.methods import METHODS, WIDE
 
 _LADDER: dict[Effort, tuple[Effort, ...]] = {
     "low": ("low",),
@@ -57,7 +58,7 @@ class Gathering:
         fit = []
         for method in METHODS:
             if asked_for(method, self.options):
-                reason = method.unfit(self.task)
+                reason = unfit(method, self.task)
                 if reason is None:
                     fit.append(method)
                 else:
@@ -93,13 +94,20 @@ class Gathering:
     def _nothing_serves(self) -> BudgetError | UsageError:
         """A budget that is too small where more qubits would do, else options that do not suit the spec."""
         roomy = replace(self.task, lines=None)
-        short = {m.name for m in METHODS if asked_for(m, self.options) and not m.unfit(roomy)}
+        short = {m.name for m in METHODS if asked_for(m, self.options) and not unfit(m, roomy)}
         if short and not self._too_large:
             misses = (f"{trial.method}: {trial.failed}" for trial in self.trials if trial.method in short)
             return BudgetError("nothing fits the budget: " + "; ".join(misses))
         reasons = "; ".join(f"{trial.method}: {trial.failed}" for trial in self.trials)
         text = f"no method serves this spec with oracle '{self.task.oracle}': {reasons}"
         return BudgetError(text) if self._too_large else UsageError(text)
+
+
+def unfit(method: Method, task: Task) -> str | None:
+    """Why a method cannot serve the task, in words for the user; None where it can."""
+    if task.tabulated is None and method not in WIDE:
+        return f"works from a truth table, which goes up to {MAX_INPUT_BITS} input bits"
+    return method.unfit(task)
 
 
 def asked_for(method: Method, options: BuildOptions) -> bool:

@@ -23,6 +23,7 @@ from revsynth.qasm import Program, read, write
 from revsynth.qasm.names import register_names
 from revsynth.spec.model import Spec
 from revsynth.spec.understand import Understanding, understand
+from revsynth.structure import structure_of
 from revsynth.synthesis.interface import Block, Task
 from revsynth.verification import verify_program
 from revsynth.verification.evidence import Evidence, Verdict
@@ -61,10 +62,11 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
     oracle = options.oracle or natural_oracle(spec)
     check_oracle(spec, oracle)
     _check_widths(understanding, oracle)
+    understanding, network = structure_of(understanding, options)
     clock.lap("read")
 
     task = Task(
-        understanding.function,
+        understanding.tabulated,
         oracle,
         controls=options.controls,
         uncompute=options.uncompute,
@@ -72,6 +74,7 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
         effort=options.effort,
         seed=options.seed,
         lines=options.qubits,
+        network=network,
     )
     layout = register_layout(understanding, oracle, options)
     gathering = Gathering(task, options, progress)
@@ -131,11 +134,11 @@ def check_oracle(spec: Spec, oracle: Oracle) -> None:
 
 
 def _check_widths(understanding: Understanding, oracle: Oracle) -> None:
-    function = understanding.function
-    if oracle == "inplace" and function.inputs != function.outputs:
+    inputs, outputs = understanding.input_bits, understanding.output_bits
+    if oracle == "inplace" and inputs != outputs:
         raise UsageError(
             f"{understanding.spec.source}: oracle 'inplace' needs as many output bits as input bits, "
-            f"not {function.outputs} and {function.inputs}: use bit, fresh, compute or embedded"
+            f"not {outputs} and {inputs}: use bit, fresh, compute or embedded"
         )
 
 

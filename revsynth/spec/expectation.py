@@ -38,7 +38,7 @@ class Expectation:
     def __init__(self, understanding: Understanding) -> None:
         self.spec = understanding.spec
         self.words = understanding.outputs
-        self.size = understanding.function.outputs
+        self.size = understanding.output_bits
         self._scope = Scope({word.name: word for word in self.spec.inputs}, self.spec.constants)
         self._domain = None if self.spec.domain is None else self._number(self.spec.domain)
         self._rule = self._rule_for(self.spec.body)

@@ -112,7 +112,7 @@ class Outputs:
 
 @dataclass(frozen=True)
 class Permutation:
-    """A reversible block in place: images of 0, 1, 2, ... (None where free), new values of words, or steps."""
+    """A reversible block in place: images of 0, 1, 2, ... (None: free), new values of words, or steps."""
 
     values: tuple[int | None, ...] | None = None
     map: Mapping[str, str] | None = None

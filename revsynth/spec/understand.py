@@ -9,7 +9,6 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from revsynth.errors import SpecError
 from revsynth.logic.function import Function
 from revsynth.logic.truth_table import Column, Columns, pack, pack_values
 from revsynth.spec.clause_columns import clauses_column
@@ -30,6 +29,7 @@ from revsynth.spec.output_words import (
 )
 from revsynth.spec.over_domain import OverDomain
 from revsynth.spec.pla import OUTPUT_WORD
+from revsynth.spec.wide import wide_outputs
 
 
 @dataclass(frozen=True)
@@ -67,13 +67,14 @@ class Understanding:
 
 
 def understand(spec: Spec) -> Understanding:
-    """Tabulate a spec's function.
+    """Tabulate a spec's function, up to MAX_INPUT_BITS input bits; wider ones are only read (see `wide`).
 
-    Raises SpecError for more than MAX_INPUT_BITS input bits (before any memory is used), an empty domain,
-    tables of the wrong length, values that do not fit, permutations that are not one-to-one; and
-    ExpressionError where an expression is not allowed or is undefined at an input of the domain.
+    Raises SpecError for an empty domain, tables of the wrong length, values that do not fit, permutations
+    that are not one-to-one; and ExpressionError where an expression is not allowed or is undefined at an
+    input of the domain.
     """
-    check_input_bits(spec)
+    if spec.input_bits > MAX_INPUT_BITS:
+        return Understanding(spec, None, wide_outputs(spec), ())
     over = OverDomain(spec)
     body = spec.body
     if isinstance(body, Predicate):
@@ -88,17 +89,6 @@ def understand(spec: Spec) -> Understanding:
     values &= care
     function = Function(spec.input_bits, len(values), values, care, over.domain)
     return Understanding(spec, function, outputs, tuple(over.warnings))
-
-
-def check_input_bits(spec: Spec) -> None:
-    """Raise SpecError where a spec has too many input bits to be tabulated."""
-    bits = spec.input_bits
-    if bits > MAX_INPUT_BITS:
-        raise SpecError(
-            f"{bits} input bits: this version tabulates functions and takes up to {MAX_INPUT_BITS}; "
-            "more come with a later version",
-            source=spec.source,
-        )
 
 
 def _predicate(body: Predicate, over: OverDomain) -> tuple[Columns, Columns]:

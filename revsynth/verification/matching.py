@@ -96,7 +96,7 @@ class _Matcher:
         if kind == "predicate":
             return "bit" if self.circuit.register("mark") is not None else "phase"
         present = any(self._find(name) is not None for name, _ in self.outputs)
-        fits = self.understanding.function.outputs == self.understanding.function.inputs
+        fits = self.understanding.output_bits == self.understanding.input_bits
         return "bit" if present or not fits else "inplace"
 
     def _find(self, name: str) -> str | None:
@@ -119,10 +119,10 @@ class _Matcher:
                 outputs = self._qubits_of(self.outputs)
                 taken |= {self._find(name) for name, _ in self.outputs}
         elif form == "inplace":
-            if self.understanding.function.outputs != len(inputs):
+            if self.understanding.output_bits != len(inputs):
                 raise self.error(
                     f"oracle 'inplace' needs as many output bits as input bits, not "
-                    f"{self.understanding.function.outputs} and {len(inputs)}"
+                    f"{self.understanding.output_bits} and {len(inputs)}"
                 )
             outputs = inputs
         kept = self._members("keep") if form == "compute" else ()
