@@ -15,9 +15,8 @@ import numpy as np
 from revsynth.logic.affine_classes import classes
 from revsynth.logic.and_reduction import cut_steps
 from revsynth.logic.and_reduction.form_builder import FormBuilder, fits
-from revsynth.logic.and_reduction.small_circuits import build_function
+from revsynth.logic.and_reduction.small_circuits import CutBuilder, build_function
 from revsynth.logic.network import Network
-from revsynth.logic.network_builder import NetworkBuilder
 
 COMPILED_FROM = 1500
 """Gates from which on compiled loops pay for their start."""
@@ -39,7 +38,7 @@ class Cover:
 def map_cuts(network: Network, *, k: int = 4, keep: int = 10, passes: int = 3) -> Network:
     """The network rebuilt from a cover by cuts of at most k leaves; it may have more ANDs than before."""
     chosen = cover(network, k=k, keep=keep, passes=passes)
-    builder = FormBuilder(network.inputs) if fits(network) else NetworkBuilder(network.inputs)
+    builder = FormBuilder(network.inputs) if fits(network) else CutBuilder(network.inputs)
     here = [0, *(2 * i for i in range(1, network.inputs + 1)), *([0] * network.gates)]
     for node, leaves, table in zip(chosen.nodes, chosen.leaves, chosen.tables, strict=True):
         here[node] = build_function(builder, [here[leaf] for leaf in leaves], table)

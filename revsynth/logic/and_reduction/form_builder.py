@@ -46,6 +46,10 @@ class FormBuilder(NetworkBuilder):
         found = self._by_form.get(form & -2)
         return None if found is None else found ^ (form & 1)
 
+    def xor_at_hand(self, a: Literal, b: Literal) -> bool:
+        """Whether a XOR b is there already."""
+        return (self.form(a) ^ self.form(b)) & -2 in self._by_form
+
     def xor(self, a: Literal, b: Literal) -> Literal:
         form = self.form(a) ^ self.form(b)
         found = self._by_form.get(form & -2)

@@ -13,6 +13,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 
 from revsynth.logic.affine_classes import circuit
+from revsynth.logic.and_reduction.form_builder import FormBuilder
 from revsynth.logic.network import FALSE, Literal, Network
 from revsynth.logic.network_builder import NetworkBuilder
 
@@ -22,12 +23,25 @@ Affine = int
 
 @dataclass(frozen=True)
 class Plan:
-    """value = constant part + the sum of products; a nested product is an affine form times a plan."""
+    """value = affine + the sum of products + the sum of nested products, an affine form times a plan each.
+
+    variants: other (affine, products) of one cost with the same value, where there is one product.
+    """
 
     affine: Affine
     products: tuple[tuple[Affine, Affine], ...]
     nested: tuple[tuple[Affine, Plan], ...] = ()
     other: Network | None = None
+    variants: tuple[tuple[Affine, tuple[tuple[Affine, Affine], ...]], ...] = ()
+
+
+class CutBuilder(NetworkBuilder):
+    """A builder that can be asked for an XOR without making it."""
+
+    def xor_at_hand(self, a: Literal, b: Literal) -> bool:
+        """Whether a XOR b is there already."""
+        a, b = (a & -2, b & -2) if a < b else (b & -2, a & -2)
+        return a << 32 | b in self._xors
 
 
 def build_function(builder: NetworkBuilder, leaves: Sequence[Literal], table: int) -> Literal:
@@ -38,8 +52,11 @@ def build_function(builder: NetworkBuilder, leaves: Sequence[Literal], table: in
 def _place(builder: NetworkBuilder, leaves: Sequence[Literal], plan: Plan) -> Literal:
     if plan.other is not None:
         return builder.copy(plan.other, leaves)[0]
-    total = _sum(builder, leaves, plan.affine)
-    for one, other in plan.products:
+    affine, products = plan.affine, plan.products
+    if plan.variants and isinstance(builder, (CutBuilder, FormBuilder)):
+        affine, products = min(plan.variants, key=lambda variant: _missing(builder, leaves, variant))
+    total = _sum(builder, leaves, affine)
+    for one, other in products:
         product = builder.and_(_sum(builder, leaves, one), _sum(builder, leaves, other))
         total = builder.xor(total, product)
     for factor, rest in plan.nested:
@@ -48,11 +65,40 @@ def _place(builder: NetworkBuilder, leaves: Sequence[Literal], plan: Plan) -> Li
     return total
 
 
+def _terms(leaves: Sequence[Literal], affine: Affine) -> list[Literal]:
+    return [leaf for i, leaf in enumerate(leaves) if affine >> (1 + i) & 1]
+
+
+def _missing(
+    builder: CutBuilder | FormBuilder,
+    leaves: Sequence[Literal],
+    variant: tuple[Affine, tuple[tuple[Affine, Affine], ...]],
+) -> int:
+    """XORs that a variant would add."""
+    affine, products = variant
+    missing = 0
+    for form in (affine, *products[0]):
+        terms = _terms(leaves, form)
+        missing += max(len(terms) - 1, 0)
+        if any(builder.xor_at_hand(a, b) for k, a in enumerate(terms) for b in terms[:k]):
+            missing -= 1
+    return missing
+
+
 def _sum(builder: NetworkBuilder, leaves: Sequence[Literal], affine: Affine) -> Literal:
+    """The literal of an affine form, beginning with two terms whose XOR is there already."""
+    terms = _terms(leaves, affine)
+    if len(terms) > 2 and isinstance(builder, (CutBuilder, FormBuilder)):
+        for k, a in enumerate(terms):
+            partner = next((b for b in terms[:k] if builder.xor_at_hand(a, b)), None)
+            if partner is not None:
+                terms.remove(a)
+                terms.remove(partner)
+                terms = [builder.xor(a, partner), *terms]
+                break
     total: Literal = FALSE ^ (affine & 1)
-    for i, leaf in enumerate(leaves):
-        if affine >> (1 + i) & 1:
-            total = builder.xor(total, leaf)
+    for term in terms:
+        total = builder.xor(total, term)
     return total
 
 
@@ -154,7 +200,26 @@ def _quadratic(inputs: int, form: int) -> Plan:
                 meets[i] ^= other & ~(1 << i)
             if other >> i & 1:
                 meets[i] ^= one & ~(1 << i)
-    return Plan(affine, tuple(products))
+    return Plan(affine, tuple(products), variants=_variants(affine, products))
+
+
+def _variants(
+    affine: Affine, products: list[tuple[Affine, Affine]]
+) -> tuple[tuple[Affine, tuple[tuple[Affine, Affine], ...]], ...]:
+    """The ways of fewest terms to write affine + one product: p q, p (p + q), q (p + q), complements."""
+    if len(products) != 1:
+        return ()
+    p, q = products[0]
+    found = []
+    for one, other, extra in ((p, q, 0), (p, p ^ q, p), (q, p ^ q, q)):
+        for c in (0, 1):
+            for d in (0, 1):
+                # (one + c)(other + d) = one other + d one + c other + c d
+                rest = affine ^ extra ^ (one if d else 0) ^ (other if c else 0) ^ (c & d)
+                weight = sum(max((form >> 1).bit_count() - 1, 0) for form in (one, other))
+                found.append((weight + (rest >> 1).bit_count(), (rest, ((one ^ c, other ^ d),))))
+    least = min(weight for weight, _ in found)
+    return tuple(variant for weight, variant in found if weight == least)
 
 
 def normal_form(inputs: int, table: int) -> int:
