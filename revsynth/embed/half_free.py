@@ -17,6 +17,10 @@ def wholly_fixed(function: Function, most: int) -> Function:
     No value is given to more than `most` inputs. `most` must be at least what `output_multiplicity` gives;
     ValueError where it is too small. Free bits become 0 where that does it.
     """
+    if np.array_equal(
+        np.bitwise_or.reduce(function.care, axis=0), np.bitwise_and.reduce(function.care, axis=0)
+    ):
+        return function
     values, care = tables(function)
     full = (1 << function.outputs) - 1
     cared = care != 0

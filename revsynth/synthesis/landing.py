@@ -135,7 +135,7 @@ class _Landing:
         difficulty = [min(table.clashes(row)) if table.lines else 0 for row in range(function.outputs)]
         order = sorted(range(function.outputs), key=lambda output: (-difficulty[output], -output))
         chosen, rest = order[:new], order[new:]
-        if not rest:
+        if not new or not rest:
             return chosen, 0
         values, care = tables(function)
         values = values[care != 0]
