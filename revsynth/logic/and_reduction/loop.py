@@ -6,6 +6,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 from revsynth.logic.and_reduction.common_operands import merge_common_operands
+from revsynth.logic.and_reduction.conjuncts import propagate_conjuncts
 from revsynth.logic.and_reduction.cut_mapping import map_cuts
 from revsynth.logic.and_reduction.form_builder import FormBuilder, fits
 from revsynth.logic.and_reduction.resubstitution import Work, resubstitute
@@ -19,11 +20,12 @@ Pass = Callable[[Network], Network]
 
 @dataclass(frozen=True)
 class Effort:
-    """How much work: rounds of one order of passes, cuts kept a node, the work of resubstitution, gates up to
-    which every order is tried, and up to which cuts of five leaves are used.
+    """How much work: rounds of one order of passes, and of conjunct propagation; cuts kept a node, the work of
+    resubstitution, gates up to which every order is tried, and up to which cuts of five leaves are used.
     """
 
     rounds: int
+    conjunctions: int
     keep: int
     work: Work
     all_orders: int
@@ -31,9 +33,9 @@ class Effort:
 
 
 EFFORTS = {
-    "low": Effort(1, 6, Work(2_000_000_000, 200, 100, 50), 0, 0),
-    "normal": Effort(3, 10, Work(), 6_000, 120),
-    "high": Effort(8, 16, Work(400_000_000_000, 3000, 5000, 2000), 40_000, 5_000),
+    "low": Effort(1, 1, 6, Work(2_000_000_000, 200, 100, 50), 0, 0),
+    "normal": Effort(3, 3, 10, Work(), 6_000, 120),
+    "high": Effort(8, 8, 16, Work(400_000_000_000, 3000, 5000, 2000), 40_000, 5_000),
 }
 
 
@@ -65,6 +67,25 @@ def fewest_ands(
         if progress is not None:
             progress(f"{name}: {found.ands} ANDs")
         best = min(best, found, key=_score)
+    best = min(best, share_xors(best), key=_score)
+    for _ in range(limits.conjunctions):
+        found = _assumed(best, limits, care, seed)
+        if progress is not None and found is not best:
+            progress(f"terms of conjunctions assumed: {found.ands} ANDs")
+        if _score(found) >= _score(best):
+            break
+        best = found
+    return best
+
+
+def _assumed(network: Network, limits: Effort, care: Network | None, seed: int) -> Network:
+    """Conjunct propagation and then all orders of passes; the network itself where no term can assume any."""
+    start = propagate_conjuncts(network, care)
+    if start is network:
+        return network
+    best = start
+    for _, order in _orders(start, limits, care, seed):
+        best = min(best, _repeated(start, order, limits.rounds), key=_score)
     return min(best, share_xors(best), key=_score)
 
 

@@ -1,0 +1,167 @@
+"""Conjunct propagation: in a conjunction every term may assume the terms before it.
+
+Where t_1 t_2 ... is wanted, t_2 only matters where t_1 is 1. A term is a sum over GF(2) of inputs and ANDs
+(its form), so that "t_1 is 1" is a linear equation between them: its last signal is replaced by the others in
+all later terms. A literal thus becomes a constant, an XOR ties one variable to the rest, an AND that was asked
+for is 1 and one that was excluded is 0, wherever they occur. Terms are rewritten one after the other, each
+under the equations of the terms as they now stand, so that the product stays the same: the proof is the order.
+The terms of a care network are assumed likewise, without being computed.
+"""
+
+from __future__ import annotations
+
+from revsynth.logic.and_reduction.form_builder import Form, FormBuilder, fits
+from revsynth.logic.network import FALSE, TRUE, Literal, Network
+
+MOST_STEPS = 3_000_000
+"""Terms times gates up to which terms are rewritten."""
+
+
+def propagate_conjuncts(network: Network, care: Network | None = None) -> Network:
+    """The network, each output that is a conjunction (or its complement) rewritten term by term.
+
+    The outputs are the same wherever `care` is 1. May have more ANDs than before: what outputs shared is
+    rewritten for each of them under its own assumptions.
+    """
+    if not fits(network) or (care is not None and not fits(care)):
+        return network
+    trees = {literal >> 1: conjunction(network, literal & -2) for literal in network.outputs.tolist()}
+    terms = sum(len(tree) for tree in trees.values())
+    if terms * network.gates > MOST_STEPS or (care is None and terms <= len(trees)):
+        return network
+    rewriting = _Rewriting(network)
+    given = Equations(rewriting.builder)
+    if care is not None and not rewriting.assume_care(care, given):
+        return rewriting.builder.build([FALSE] * len(network.outputs))
+    made = {node: rewriting.product(tree, given.copy()) for node, tree in trees.items()}
+    return rewriting.builder.build([made[o >> 1] ^ (o & 1) for o in network.outputs.tolist()])
+
+
+def conjunction(network: Network, literal: Literal) -> list[Literal]:
+    """The terms of an AND tree, those with fewest ANDs below first; ANDs read elsewhere too stay whole."""
+    first = 1 + network.inputs
+    readers = [0] * network.nodes
+    for array in (network.left, network.right, network.outputs):
+        for operand in array.tolist():
+            readers[operand >> 1] += 1
+    terms: dict[Literal, None] = {}
+    waiting = [literal]
+    while waiting:
+        top = waiting.pop()
+        gate = (top >> 1) - first
+        whole = top == literal or readers[top >> 1] == 1
+        if gate < 0 or top & 1 or network.is_xor[gate] or not whole:
+            terms[top] = None
+        else:
+            waiting += [int(network.left[gate]), int(network.right[gate])]
+    below = {term: _ands_below(network, term >> 1) for term in terms}
+    return sorted(terms, key=lambda term: (below[term], term))
+
+
+class Equations:
+    """What is assumed: some signals of a builder as sums of signals before them."""
+
+    def __init__(self, builder: FormBuilder) -> None:
+        self._builder = builder
+        self._tied: dict[int, Form] = {}
+        self._mask = 0
+
+    def copy(self) -> Equations:
+        """A copy that can be added to alone."""
+        twin = Equations(self._builder)
+        twin._tied, twin._mask = dict(self._tied), self._mask
+        return twin
+
+    def reduced(self, form: Form) -> Form:
+        """The form without the signals that are tied to others."""
+        while found := form & self._mask:
+            top = found.bit_length() - 1
+            form ^= 1 << top ^ self._tied[top]
+        return form
+
+    def assume(self, form: Form) -> bool | None:
+        """Adds "this form is 1"; True where that was known, False where it cannot be, None otherwise."""
+        rest = self.reduced(form)
+        if rest < 2:
+            return bool(rest)
+        top = rest.bit_length() - 1
+        self._tied[top] = rest ^ 1 << top ^ 1
+        self._mask |= 1 << top
+        return None
+
+
+class _Rewriting:
+    def __init__(self, network: Network) -> None:
+        self.builder = FormBuilder(network.inputs)
+        self._network = network
+
+    def assume_care(self, care: Network, equations: Equations) -> bool:
+        """Adds the terms of the care network; False where they contradict each other."""
+        literal = int(care.outputs[0])
+        if literal < 2:
+            return bool(literal)
+        terms = conjunction(care, literal) if not literal & 1 else [literal]
+        for term in terms:
+            value = self._copied(care, term, equations)
+            if equations.assume(self.builder.form(value)) is False:
+                return False
+        return True
+
+    def product(self, terms: list[Literal], equations: Equations) -> Literal:
+        """The conjunction, every term under the equations of those before it."""
+        values = []
+        for number, term in enumerate(terms):
+            value = self._copied(self._network, term, equations)
+            # The last term is assumed by none.
+            if number < len(terms) - 1:
+                known = equations.assume(self.builder.form(value))
+            else:
+                known = {FALSE: False, TRUE: True}.get(value)
+            if known is False:
+                return FALSE
+            if known is None:
+                values.append(value)
+        return self.builder.all_of(values)
+
+    def _copied(self, network: Network, literal: Literal, equations: Equations) -> Literal:
+        """A signal of the network, built with every sum reduced by the equations."""
+        builder = self.builder
+        first = 1 + network.inputs
+        here: dict[int, Literal] = {0: FALSE}
+        for node in _cone(network, literal >> 1):
+            if node < first:
+                here[node] = self._settled(2 * node, equations)
+                continue
+            gate = node - first
+            left, right = int(network.left[gate]), int(network.right[gate])
+            a, b = here[left >> 1] ^ (left & 1), here[right >> 1] ^ (right & 1)
+            made = builder.xor(a, b) if network.is_xor[gate] else builder.and_(a, b)
+            here[node] = self._settled(made, equations)
+        return here[literal >> 1] ^ (literal & 1)
+
+    def _settled(self, literal: Literal, equations: Equations) -> Literal:
+        form = self.builder.form(literal)
+        reduced = equations.reduced(form)
+        return literal if reduced == form else self.builder.realise(reduced)
+
+
+def _ands_below(network: Network, node: int) -> int:
+    first = 1 + network.inputs
+    return sum(1 for below in _cone(network, node) if below >= first and not network.is_xor[below - first])
+
+
+def _cone(network: Network, node: int) -> list[int]:
+    """The nodes that a node depends on, itself included, ascending; the constant left out."""
+    first = 1 + network.inputs
+    seen = {node}
+    waiting = [node]
+    while waiting:
+        gate = waiting.pop() - first
+        if gate < 0:
+            continue
+        for operand in (int(network.left[gate]), int(network.right[gate])):
+            if operand >> 1 not in seen:
+                seen.add(operand >> 1)
+                waiting.append(operand >> 1)
+    seen.discard(0)
+    return sorted(seen)
