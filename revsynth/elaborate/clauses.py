@@ -62,6 +62,6 @@ def free_inputs(clauses: Clauses, effort: str = "normal", seed: int = 0) -> Free
     models agree on all free variables: so there are as many such inputs as models. Variables in no clause are
     free.
     """
-    found = conjunction(clauses.clauses, clauses.xor_clauses)
+    found = conjunction(clauses.clauses, clauses.xor_clauses, keep=True)
     form = free_form(found, range(1, clauses.variables + 1), RUNS[effort], seed)
     return FreeInputs(form.variables, NetworkFunction(form.holds), form.extension)

@@ -126,7 +126,8 @@ def shifted_down(builder: NetworkBuilder, x: Number, places: int) -> Number:
     lo, hi = bounds_of(known)
     if isinstance(known, int) or lo >> places == hi >> places:
         return lo >> places
-    return settled(known.literals[places:], lo >> places, hi >> places)
+    kept = known.literals[places:] or known.literals[-1:]  # at least the sign
+    return settled(kept, lo >> places, hi >> places)
 
 
 def _remainder_by(x: Number, divisor: int, reach: Reach) -> Number:
