@@ -73,6 +73,34 @@ def test_free_inputs_have_as_many_models_and_the_same_ones(variables: int, size:
     )
     marked = [x for x in range(1 << network.inputs) if unpack(tabulate(network)[0], network.inputs)[x]]
     assert projected == marked  # no two models agree on the free variables
+    for x in models:
+        bits = [x >> (variable - 1) & 1 for variable in found.variables]
+        assert evaluate(found.extension, bits) == [x >> place & 1 for place in range(variables)]
+    for x in range(1 << network.inputs):
+        bits = [x >> place & 1 for place in range(network.inputs)]
+        extended = sum(bit << place for place, bit in enumerate(evaluate(found.extension, bits)))
+        assert column[extended] == evaluate(network, bits)[0]
+        assert [extended >> (variable - 1) & 1 for variable in found.variables] == bits
+
+
+@given(st.integers(4, 9), st.integers(0, 7), st.integers(0, 2**32))
+def test_linear_systems_are_solved(variables: int, size: int, seed: int) -> None:
+    rng = Random(seed)
+    sums = [tuple(rng.sample(range(1, variables + 1), rng.randint(2, 4))) for _ in range(size)]
+    coded = [place for place in range(size) if rng.random() < 0.5]
+    clauses = tuple(
+        tuple(v if sign else -v for v, sign in zip(sums[place], signs, strict=True))
+        for place in coded
+        for signs in product((0, 1), repeat=len(sums[place]))
+        if (len(sums[place]) - sum(signs)) % 2 == place % 2
+    )
+    cnf = Clauses(variables, clauses, tuple(entry for place, entry in enumerate(sums) if place not in coded))
+    found = free_inputs(cnf, "low", seed)
+    models = count_ones(clauses_column(cnf))
+    assert count_ones(tabulate(found.function.values)[0]) == models
+    if models:
+        assert len(found.variables) == max(1, models.bit_length() - 1)
+        assert found.function.values.ands == 0
 
 
 def test_unused_variables_are_free() -> None:

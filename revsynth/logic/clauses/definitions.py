@@ -6,6 +6,7 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 
 from revsynth.logic.clauses.gates import Gate
+from revsynth.logic.clauses.linear_forms import Form, Forms
 
 MOST_VISITS = 20_000_000
 """Definitions that are looked through for circles; beyond, variables stay free."""
@@ -25,12 +26,35 @@ def choose_definitions(gates: Sequence[Gate], variables: Iterable[int]) -> Defin
     """Give gates to variables that they define. Several orders are tried; the fewest free variables win.
 
     Every choice is sound: operands never depend on the variable itself, and a gate defines one variable.
+    Sums that define none are linear equations between what is free and what is not linear, and are solved
+    for free variables by elimination.
     """
     every = sorted(variables)
     budget = [MOST_VISITS]
     tries = [_choose(gates, prefer, budget) for prefer in (1, -1)]
-    best = max(tries, key=len)
+    best = _in_order(max(tries, key=len))
+    used = {id(gate) for gate in best.values()}
+    unused = [gate for gate in gates if gate.kind == "sum" and id(gate) not in used]
+    _eliminate(best, unused, budget)
     return Definitions(_in_order(best), tuple(variable for variable in every if variable not in best))
+
+
+def _eliminate(chosen: dict[int, Gate], sums: Sequence[Gate], budget: list[int]) -> None:
+    """Add a definition for each sum that can be solved for a free variable."""
+    system = Forms(chosen, sums)
+    rows: list[tuple[Form, Form]] = []
+    for gate in sums:
+        form = system.of_sum(gate)
+        for pivot, row in rows:
+            if form & pivot:
+                form ^= row
+        within = system.within(form)
+        for variable in within:
+            others = [other for other in within if other != variable]
+            if variable not in chosen and not _depends(others, variable, chosen, budget):
+                chosen[variable] = Gate("sum", tuple(within), (variable,), inverted=not form & 1)
+                rows.append((1 << system.place[variable], form))
+                break
 
 
 def _choose(gates: Sequence[Gate], prefer: int, budget: list[int]) -> dict[int, Gate]:

@@ -14,6 +14,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from functools import cache
 from itertools import combinations
 from typing import Literal, TypeAlias
 
@@ -34,7 +35,7 @@ class Gate:
     kind: "window": `table` has bit p set where the clauses hold, variables[i] being bit i of p.
           "product": outputs[0] is the AND of `literals` (its complement is, where `inverted`).
           "sum": the exclusive sum of the variables is 1, or 0 where `inverted`.
-    clauses: those that hold once the definition does, by number.
+    clauses: of windows and products, by number; those of a product hold once the definition does.
     """
 
     kind: Literal["window", "product", "sum"]
@@ -55,17 +56,46 @@ def find_gates(found: Conjunction) -> list[Gate]:
     numbers: dict[Variables, list[int]] = {}
     for number, clause in enumerate(found.clauses):
         numbers.setdefault(tuple(sorted(map(abs, clause))), []).append(number)
+    sums = {entry: Gate("sum", entry[0], entry[0], inverted=not entry[1]) for entry in found.sums}
     gates: list[Gate] = []
     known: dict[int, list[frozenset[int]]] = {}
     for variables in sorted(_windows(numbers), key=lambda window: (len(window), window)):
-        gate = _window_gate(variables, numbers, found.clauses, known)
-        if gate is not None:
-            gates.append(gate)
-            for output in gate.outputs:
-                known.setdefault(output, []).append(frozenset(gate.operands(output)))
-    gates += _products(found.clauses)
-    gates += [Gate("sum", variables, variables, inverted=not value) for variables, value in found.sums]
-    return gates
+        inside = _inside(variables, numbers)
+        table = window_table(variables, [found.clauses[number] for number in inside])
+        linear = implied_sums(variables, table)
+        for entry in linear:
+            sums.setdefault(entry, Gate("sum", entry[0], entry[0], inverted=not entry[1]))
+        outputs = _outputs(variables, table, linear, known)
+        if outputs or linear:
+            gates.append(Gate("window", variables, outputs, table=table, clauses=inside))
+        for output in outputs:
+            known.setdefault(output, []).append(frozenset(variables) - {output})
+    return [*gates, *_products(found.clauses), *sums.values()]
+
+
+def _inside(variables: Variables, numbers: dict[Variables, list[int]]) -> tuple[int, ...]:
+    """The clauses over a window's variables."""
+    sizes = range(2, len(variables) + 1)
+    parts = [part for size in sizes for part in combinations(variables, size)]
+    return tuple(number for part in parts for number in numbers.get(part, ()))
+
+
+def _outputs(
+    variables: Variables,
+    table: int,
+    linear: Sequence[tuple[Variables, int]],
+    known: dict[int, list[frozenset[int]]],
+) -> Variables:
+    """The variables that a window defines, but for those of its sums and of smaller windows."""
+    by_sum = {variable for part, _ in linear for variable in part}
+    found = []
+    for place, variable in enumerate(variables):
+        zero, one = cofactors(table, place, len(variables))
+        others = frozenset(variables) - {variable}
+        fewer = any(other <= others for other in known.get(variable, ()))
+        if zero & one == 0 and variable not in by_sum and not fewer:
+            found.append(variable)
+    return tuple(found)
 
 
 def _windows(numbers: dict[Variables, list[int]]) -> dict[Variables, None]:
@@ -103,29 +133,25 @@ def window_table(variables: Variables, clauses: Sequence[Clause]) -> int:
     return table
 
 
-def _window_gate(
-    variables: Variables,
-    numbers: dict[Variables, list[int]],
-    clauses: Sequence[Clause],
-    known: dict[int, list[frozenset[int]]],
-) -> Gate | None:
-    inside = [
-        number
-        for size in range(2, len(variables) + 1)
-        for part in combinations(variables, size)
-        for number in numbers.get(part, ())
-    ]
-    table = window_table(variables, [clauses[number] for number in inside])
-    outputs = []
-    for place, variable in enumerate(variables):
-        zero, one = cofactors(table, place, len(variables))
-        if zero & one == 0:
-            others = frozenset(variables) - {variable}
-            if not any(fewer <= others for fewer in known.get(variable, ())):
-                outputs.append(variable)
-    if not outputs:
-        return None
-    return Gate("window", variables, tuple(outputs), table=table, clauses=tuple(inside))
+def implied_sums(variables: Sequence[int], table: int) -> list[tuple[tuple[int, ...], int]]:
+    """The sums that hold wherever a window's table is 1, as (variables, value); none where it never is."""
+    size = len(variables)
+    if not table or 2 * table.bit_count() > 1 << size:
+        return []
+    found = []
+    for count in range(1, size + 1):
+        for places in combinations(range(size), count):
+            odd = odd_points(size, sum(1 << place for place in places))
+            for value in (0, 1):
+                if not table & (odd if value == 0 else ~odd):
+                    found.append((tuple(variables[place] for place in places), value))
+    return found
+
+
+@cache
+def odd_points(variables: int, mask: int) -> int:
+    """Bit p is 1 where p has an odd number of ones within the mask."""
+    return sum(1 << point for point in range(1 << variables) if (point & mask).bit_count() & 1)
 
 
 def cofactors(table: int, place: int, variables: int) -> tuple[int, int]:

@@ -152,25 +152,31 @@ class Conjunction:
     consistent: bool = True
 
 
-def conjunction(clauses: Iterable[Sequence[int]], sums: Iterable[Sequence[int]]) -> Conjunction:
-    """Clauses and XOR clauses in short form: the same models, over the same variables."""
-    given = normal(clauses)
+def conjunction(
+    clauses: Iterable[Sequence[int]], sums: Iterable[Sequence[int]], *, keep: bool = False
+) -> Conjunction:
+    """Clauses and XOR clauses in short form: the same models, over the same variables.
+
+    keep: the clauses as given (but for units) stay beside the short ones, which hide gates.
+    """
+    given = original = normal(clauses)
     linear = [_sum_of(literals) for literals in sums]
     units: dict[int, None] = {}
     while True:
-        given += [
-            (variables[0] if value else -variables[0],) for variables, value in linear if len(variables) == 1
-        ]
+        single = [(v[0] if value else -v[0],) for v, value in linear if len(v) == 1]
         if any(not variables and value for variables, value in linear):
             return Conjunction((), [], [], consistent=False)
         linear = list(dict.fromkeys(entry for entry in linear if len(entry[0]) > 1))
-        step = propagate(given)
+        step = propagate([*given, *single])
         if not step.consistent:
             return Conjunction((), [], [], consistent=False)
         units.update(dict.fromkeys(step.units))
         shorter = strengthened(step.clauses)
         fixed = [_with_units(entry, units) for entry in linear]
         if fixed == linear and not any(len(clause) < 2 for clause in shorter):
+            if keep:
+                unit_clauses: list[Clause] = [(unit,) for unit in units]
+                shorter = list(dict.fromkeys([*shorter, *propagate([*original, *unit_clauses]).clauses]))
             return Conjunction(tuple(units), shorter, linear)
         given, linear = shorter, fixed
 
