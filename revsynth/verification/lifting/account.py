@@ -123,6 +123,9 @@ class _Accountant:
         for _, literal in lifted.outcome_signs:
             why = "the sign depends on the start and on outcomes"
             self.claims.append(Claim("phase", literal, constant=True, why=why))
+        for literal in lifted.steady:
+            why = "the phase depends on the start and is no sign"
+            self.claims.append(Claim("phase", literal, constant=True, why=why))
         for operation, literal in lifted.revealed:
             why = "the outcome of a measurement depends on the start"
             self.claims.append(Claim("phase", literal, operation=operation, constant=True, why=why))

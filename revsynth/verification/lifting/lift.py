@@ -10,14 +10,18 @@ from numpy.typing import NDArray
 
 from revsynth.circuit.model import Circuit, Kind
 from revsynth.verification.elementary import ANGLE, FLIP, HADAMARD, MEASURE, RESET, TURN, Step, elementary
+from revsynth.verification.lifting.graph import Graph
 from revsynth.verification.lifting.linear_proofs import GuessError
 from revsynth.verification.lifting.model import NO_PATHS, Lifted, NotClosedError, Value
 from revsynth.verification.lifting.parities import TRUE, Literal, Parities
 from revsynth.verification.lifting.path_sum import PathSum
-from revsynth.verification.lifting.residue import sign_of
+from revsynth.verification.lifting.residue import counted, simplified
 
 ATTEMPTS = 5
 """Wrong guesses from signatures are about as likely as 2**-20 in the largest circuits."""
+
+MOST_PHASES = 10_000
+"""Phases that may be left to be shown to be signs by a prover."""
 
 TOLERANCE = 1e-11
 """An angle this close to a multiple of pi/8, in radians, is that multiple."""
@@ -199,11 +203,16 @@ class _Lifting:
         if left:
             raise NotClosedError(f"{left} path variables are left in the sum")
         state.settle_outcomes()
-        signs = sign_of(parities, state.plain)
-        if signs is None:
-            raise NotClosedError(f"{len(state.plain)} phases are left that are not shown to be signs")
+        signs, phases = simplified(parities, state.plain)
+        if len(phases) > MOST_PHASES:
+            raise NotClosedError(f"{len(phases)} phases are left that are not shown to be signs")
+        low, middle, high = counted(parities, phases)
+        signs.append(high)
+        steady = [literal for literal in (low, middle) if literal > TRUE]
         sign = parities.parity((*(2 * node for node in sorted(state.sign_nodes)), *signs)) ^ state.sign_flip
         parities.proofs.finish()
+        at_zero = self._at_zero([low, middle])
+        state.sixteenths += 2 * at_zero[0] + 4 * at_zero[1]
         minus, sixteenths = divmod(state.sixteenths % 16, 8)
         outcome_signs = sorted(state.signs.items(), key=lambda item: sorted(item[0]))
         return Lifted(
@@ -216,8 +225,19 @@ class _Lifting:
             sixteenths=sixteenths,
             radians=state.radians,
             revealed=tuple(item for item in state.revealed if item[1] > TRUE),
+            steady=tuple(steady),
             outcome_signs=tuple(item for item in outcome_signs if item[1] > TRUE),
         )
+
+    def _at_zero(self, literals: Sequence[Literal]) -> list[int]:
+        """The literals where all variables are 0."""
+        if all(literal <= TRUE for literal in literals):
+            return list(literals)
+        variables = (*self.variables, *self.state.outcome_atoms.values())
+        graph = Graph.below(self.parities, variables, literals)
+        return [
+            int(row[0] & np.uint64(1)) for row in graph.simulate(np.zeros((len(variables), 1), np.uint64))
+        ]
 
 
 def part_of(circuit: Circuit, operations: NDArray[np.intp]) -> Circuit:

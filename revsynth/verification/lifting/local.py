@@ -10,8 +10,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import lru_cache
+from itertools import product
 
-from revsynth.verification.lifting.parities import FALSE, TRUE, Literal, Parities
+from revsynth.verification.lifting.parities import AND, TRUE, Literal, Parities
 from revsynth.verification.lifting.residue import sign_of
 
 MOST_PARITIES = 7
@@ -21,6 +22,8 @@ MOST_PARITIES = 7
 Terms = tuple[tuple[int, int], ...]
 Plane = tuple[int, int]
 """A product of two parities, each a mask of basis elements."""
+Product = tuple[int, int, int, int]
+"""(one, other, flip one, flip other): a product of two parities or their complements."""
 
 
 @dataclass(frozen=True)
@@ -55,7 +58,7 @@ def solve(terms: Terms, size: int) -> Shape | None:
 
 @dataclass(frozen=True)
 class Beside:
-    """Half turns: plane k times the parity `factors[k]` (0: none), products of two parities, and a parity."""
+    """Half turns: product k times the parity `factors[k]`, products of two parities, and a parity."""
 
     factors: tuple[int, ...]
     planes: tuple[Plane, ...]
@@ -63,19 +66,40 @@ class Beside:
 
 
 @lru_cache(maxsize=4096)
-def rest_beside(rest: tuple[int, ...], planes: tuple[Plane, ...]) -> Beside | None:
-    """`rest` as -2 times every product of the planes, and half turns; None where it is not that."""
+def absorbed(planes: tuple[Plane, ...], straight: int) -> tuple[tuple[Product, ...], int]:
+    """The products with complements so that they take in the parity `straight`, and what is left of it.
+
+    (u ^ f)(v ^ g) = uv ^ gu ^ fv ^ fg.
+    """
+    for flips in product((0, 1), repeat=2 * len(planes)):
+        total = straight
+        for (one, other), flip_one, flip_other in zip(planes, flips[::2], flips[1::2], strict=True):
+            total ^= (one if flip_other else 0) ^ (other if flip_one else 0)
+        if total == 0:
+            pairs = zip(planes, flips[::2], flips[1::2], strict=True)
+            return tuple((one, other, f, g) for (one, other), f, g in pairs), 0
+    return tuple((one, other, 0, 0) for one, other in planes), straight
+
+
+@lru_cache(maxsize=4096)
+def rest_beside(rest: tuple[int, ...], products: tuple[Product, ...]) -> Beside | None:
+    """`rest` as -2 times every product, a constant, and half turns; None where it is not that."""
     left = list(rest)
     for case in range(len(left)):
-        for one, other in planes:
-            left[case] += 2 * ((one & case).bit_count() & (other & case).bit_count() & 1)
+        for one, other, flip_one, flip_other in products:
+            first, second = (
+                (one & case).bit_count() & 1 ^ flip_one,
+                (other & case).bit_count() & 1 ^ flip_other,
+            )
+            left[case] += 2 * ((first & second) - (flip_one & flip_other))
     if any(value & 3 for value in left):
         return None
     form = _normal_form([value >> 2 & 1 for value in left])
-    factors = []
-    for plane in planes:
-        factors.append(_factor(form, plane, len(left)))
-        form = form ^ _times(plane, factors[-1])
+    # The product that is written, the last one, first: the qubit's other sign is a multiple of it.
+    factors: list[int] = []
+    for each in reversed(products):
+        factors.insert(0, _factor(form, each, len(left)))
+        form = form ^ _times(each, factors[0])
     if any(mask.bit_count() > 2 for mask in form):
         return None
     rows = alternating(tuple(sorted(form)))
@@ -97,13 +121,14 @@ def _normal_form(table: list[int]) -> frozenset[int]:
     return frozenset(mask for mask, value in enumerate(table) if value)
 
 
-def _times(plane: Plane, factor: int) -> frozenset[int]:
+def _times(pair: Product, factor: int) -> frozenset[int]:
     """The normal form of the product of three parities."""
+    one, other, flip_one, flip_other = pair
     found: frozenset[int] = frozenset()
-    for i in _bits(plane[0]):
-        for j in _bits(plane[1]):
-            for k in _bits(factor):
-                found = found ^ {1 << i | 1 << j | 1 << k}
+    for i in [*(1 << bit for bit in _bits(one)), *([0] * flip_one)]:
+        for j in [*(1 << bit for bit in _bits(other)), *([0] * flip_other)]:
+            for bit in _bits(factor):
+                found = found ^ {i | j | 1 << bit}
     return found
 
 
@@ -111,12 +136,12 @@ def _bits(mask: int) -> list[int]:
     return [i for i in range(mask.bit_length()) if mask >> i & 1]
 
 
-def _factor(form: frozenset[int], plane: Plane, cases: int) -> int:
-    """The parity that, times the plane, takes most products of three out of a normal form."""
+def _factor(form: frozenset[int], pair: Product, cases: int) -> int:
+    """The parity that, times a product, takes most products of three out of a normal form."""
     before = sum(1 for mask in form if mask.bit_count() > 2)
     best, least = 0, before
     for factor in range(1, cases if before else 1):
-        after = sum(1 for mask in form ^ _times(plane, factor) if mask.bit_count() > 2)
+        after = sum(1 for mask in form ^ _times(pair, factor) if mask.bit_count() > 2)
         if after < least:
             best, least = factor, after
     return best
@@ -136,6 +161,7 @@ def alternating(quotient: tuple[int, ...]) -> tuple[int, ...]:
 def peeled(rows: tuple[int, ...], plane: Plane) -> tuple[int, ...]:
     """The matrix less that of one product."""
     one, other = plane
+    rows += (0,) * (max(one.bit_length(), other.bit_length()) - len(rows))
     return tuple(
         row ^ (other if one >> i & 1 else 0) ^ (one if other >> i & 1 else 0) for i, row in enumerate(rows)
     )
@@ -207,11 +233,19 @@ class Local:
             return self.basis[mask.bit_length() - 1] if mask else TRUE
         return self.parities.all_of(self.basis[i] for i in range(mask.bit_length()) if mask >> i & 1)
 
-    def planes(self) -> tuple[Plane, ...]:
-        """The products of two in Q as few products of parities, those met before if possible."""
+    def planes(self, before: Literal) -> tuple[Plane, ...]:
+        """The products of two in Q as few products of parities, those met before if possible.
+
+        before: what the qubit held before its first Hadamard. If that is a product of such parities, it comes
+        first: it is being erased, and Q may join it with another that is being written.
+        """
         assert self.shape is not None
         rows = alternating(self.shape.quotient)
         found: list[Plane] = []
+        erased = self._plane_of(before >> 1)
+        if erased and any(rows):
+            found.append(erased)
+            rows = peeled(rows, erased)
         while any(rows):
             plane = any_plane(rows)
             if rank(rows) > 2:
@@ -219,6 +253,16 @@ class Local:
             found.append(plane)
             rows = peeled(rows, plane)
         return tuple(found)
+
+    def _plane_of(self, node: int) -> Plane | None:
+        """The operands of an AND, if both are sums of basis elements without the first one."""
+        parities = self.parities
+        if parities.kind[node] != AND:
+            return None
+        one, other = self._span.get(2 * parities.left[node]), self._span.get(2 * parities.right[node])
+        if one is None or other is None:
+            return None
+        return (one << 1, other << 1) if self.first else (one, other)
 
     def _known_plane(self, rows: tuple[int, ...]) -> Plane | None:
         """A product met before that lowers the rank, best one that leaves another such."""
@@ -247,12 +291,12 @@ class Slope:
     (`residue.sign_of`): the coefficient is the sum of c less 2 c s.
     """
 
-    def __init__(self, parities: Parities, phases: dict[int, int]) -> None:
+    def __init__(self, parities: Parities, phases: dict[int, int], before: Literal) -> None:
         self.local = local = Local(parities, phases)
         self.constant = 0
         self.quotient: Literal | None = None
         self.products: list[tuple[Literal, Literal]] = []
-        self.planes: tuple[Plane, ...] = ()
+        self._products: tuple[Product, ...] = ()
         shape = local.shape
         if shape is None:
             signs = sign_of(parities, {node: -2 * eighths for node, eighths in phases.items()})
@@ -266,18 +310,17 @@ class Slope:
         if any(mask.bit_count() > 2 for mask in shape.quotient):
             self.quotient = parities.parity(local.product(mask) for mask in shape.quotient)
             return
-        self.planes = local.planes()
+        planes = local.planes(before)
         straight = sum(linear)
-        for one, other in self.planes:
-            self.products.append((local.element(one), local.element(other)))
+        for one, other in planes:
             straight ^= one & other
-        self.quotient = parities.parity(
-            [
-                local.element(straight),
-                *(parities.and_(*pair) for pair in self.products),
-                FALSE ^ (0 in shape.quotient),
-            ]
-        )
+        self._products, straight = absorbed(planes, straight)
+        flip = int(0 in shape.quotient)
+        for one, other, flip_one, flip_other in self._products:
+            self.products.append((local.element(one) ^ flip_one, local.element(other) ^ flip_other))
+            flip ^= flip_one & flip_other
+        products = [parities.and_(*pair) for pair in self.products]
+        self.quotient = parities.parity([local.element(straight), *products]) ^ flip
 
     def touches_first(self) -> bool:
         """Whether bit 0 of the basis is in a product, not alone."""
@@ -289,11 +332,12 @@ class Slope:
         shape = self.local.shape
         if shape is None:
             return None
-        beside = rest_beside(shape.rest, self.planes)
+        beside = rest_beside(shape.rest, self._products)
         if beside is None:
             return None
         parities, element = self.local.parities, self.local.element
         found = [(element(beside.straight), 4)]
+        found += [(TRUE, 2) for _, _, flip_one, flip_other in self._products if flip_one & flip_other]
         found += [(parities.and_(element(one), element(other)), 4) for one, other in beside.planes]
         for pair, factor in zip(self.products, beside.factors, strict=True):
             product = parities.and_(*pair)

@@ -34,10 +34,12 @@ class Value(NamedTuple):
 class Lifted:
     """|start> goes to exp(i phase) (-1)^sign |values>, for every record of outcomes up to a constant phase.
 
-    This holds exactly and for every start, if each literal of `revealed` has one value for all starts.
+    This holds exactly and for every start, if the literals of `revealed` and `steady` are constant over all.
 
     variables: free literals, the start's first (as `lift` was told), then those outcomes that are read by
     ANDs. values: by qubit; a path variable in one is the outcome of a measurement, uniformly random.
+    steady: literals that must be constant, or else the phase is no sign; their value for the start 0 is in
+    the constant phase.
     revealed: (operation, literal): a measurement or reset there has an outcome that depends on the literal.
     outcome_signs: (outcomes, literal): where all these outcomes are 1 there is a further sign, which must be
     constant. sixteenths, radians: the constant phase is sixteenths pi/8 + radians, beside the sign.
@@ -51,6 +53,7 @@ class Lifted:
     sign: Literal
     sixteenths: int
     radians: float
+    steady: tuple[Literal, ...]
     revealed: tuple[tuple[int, Literal], ...]
     outcome_signs: tuple[tuple[Paths, Literal], ...]
 

@@ -178,6 +178,7 @@ class Parities:
         self._relate(p, [(q, (node,)), (node, (node,))])
         self._relate(q, [(p, (node,)), (node, (node,))])
         self._relate(third, [(p, (p, node)), (node, ())])
+        self._relate(node, [(p, (node,)), (q, (node,))])
         return 2 * node
 
     def _relate(self, p: int, known: list[tuple[int, tuple[int, ...]]]) -> None:

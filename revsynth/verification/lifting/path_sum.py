@@ -229,7 +229,7 @@ class PathSum:
         total = self.signs.get(single, FALSE)
         slope = None
         if phases:
-            slope = Slope(self.parities, phases)
+            slope = Slope(self.parities, phases, total)
             if slope.quotient is None or slope.constant:
                 return False
             total = self.parities.xor(total, slope.quotient)
@@ -295,7 +295,7 @@ class PathSum:
         if groups:
             if len(groups) > 1:
                 return False
-            slope = Slope(self.parities, self.phases[groups[0]])
+            slope = Slope(self.parities, self.phases[groups[0]], literal)
             tail = groups[0] - single
             if slope.quotient is None or slope.constant & 1:
                 return False
@@ -385,7 +385,7 @@ class PathSum:
                 continue
             if len(paths) > 1 and list(phases) == [0]:
                 continue
-            slope = Slope(self.parities, phases)
+            slope = Slope(self.parities, phases, self.signs.get(paths, FALSE))
             if len(paths) > 1 or slope.quotient is None:
                 raise NotClosedError("phases of measured qubits are left that are not shown to be signs")
             self.add_sign(paths, slope.quotient)

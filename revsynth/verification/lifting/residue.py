@@ -11,7 +11,7 @@ from __future__ import annotations
 from heapq import heappop, heappush
 from itertools import combinations
 
-from revsynth.verification.lifting.parities import Literal, Parities
+from revsynth.verification.lifting.parities import FALSE, Literal, Parities
 
 MOST_MONOMIALS = 1_000_000
 """Over all phases; a second is enough for about three million."""
@@ -26,16 +26,37 @@ Phases = dict[int, int]
 
 def sign_of(parities: Parities, phases: Phases) -> list[Literal] | None:
     """Literals whose XOR is the sign that all the phases (eighths by node) amount to; None if not shown."""
+    signs, left = simplified(parities, phases)
+    return None if left else signs
+
+
+def simplified(parities: Parities, phases: Phases) -> tuple[list[Literal], Phases]:
+    """The same phases as literals whose XOR gives a sign, and fewer phases."""
     residue = _Residue(parities)
     for node in sorted(phases):
         residue.add(2 * node, phases[node])
     for _ in range(MOST_ROUNDS):
         residue.take_apart()
-        if not residue.phases:
-            return residue.signs
-        if not residue.expand():
-            return None
-    return None
+        if not residue.phases or not residue.expand():
+            break
+    residue.take_apart()
+    return residue.signs, residue.phases
+
+
+def counted(parities: Parities, phases: Phases) -> tuple[Literal, Literal, Literal]:
+    """The sum of the eighths at nodes that are 1, modulo 8, as three bits, lowest first: two ANDs a phase."""
+    and_, xor = parities.and_, parities.xor
+    low = middle = high = FALSE
+    for node, eighths in sorted(phases.items()):
+        literal = 2 * node
+        one, two, four = (literal if eighths >> bit & 1 else FALSE for bit in range(3))
+        carry = and_(low, one)
+        low = xor(low, one)
+        # The carry is 1 only where the literal is, so it and `two` make middle + two + carry.
+        both = xor(two, carry)
+        high = parities.parity((high, four, and_(two, carry), and_(middle, both)))
+        middle = xor(middle, both)
+    return low, middle, high
 
 
 class _Residue:
