@@ -45,6 +45,8 @@ def verify_program(
     """
     understanding = understand(spec)
     roles = match(understanding, program, oracle, placement)
+    if understanding.tabulated is None:
+        return _verify_wide(understanding, program, roles, exact_phase, progress or (lambda _: None))
     checked = cross_check(understanding)
     decision = decide(program.circuit, roles, understanding.function, progress or (lambda _: None))
     links = (*checked, *_links(decision, roles, program.circuit))
@@ -60,6 +62,36 @@ def verify_program(
     return Verdict(holds, evidence, decision.global_phase, counterexample, roles.oracle)
 
 
+def _verify_wide(
+    understanding: Understanding,
+    program: Program,
+    roles: Roles,
+    exact_phase: bool,
+    progress: Callable[[str], None],
+) -> Verdict:
+    """By proof, for specs that no table holds."""
+    from revsynth.verification.proof.telling import WideTeller
+    from revsynth.verification.proof.wide import decide_wide
+
+    decision = decide_wide(understanding, program.circuit, roles, progress)
+    counterexample, holds = None, decision.holds
+    if decision.failure is not None and decision.lifted is not None and decision.translation is not None:
+        teller = WideTeller(understanding, program.circuit, roles, decision.lifted, decision.translation)
+        counterexample = teller.tell(decision.failure)
+    links = list(decision.links)
+    if roles.foreign:
+        links.insert(0, _foreign(roles))
+    if holds and exact_phase and abs(decision.global_phase) > PHASE_TOLERANCE:
+        holds = False
+        links.append("every phase is off by one constant, and the phase is to be exact")
+    evidence = Evidence(decision.level, decision.samples, tuple(links), decision.detail)
+    return Verdict(holds, evidence, decision.global_phase if holds else 0.0, counterexample, roles.oracle)
+
+
+def _foreign(roles: Roles) -> str:
+    return "registers: " + ", ".join(roles.foreign) + " not in the spec, taken as scratch from 0 to 0"
+
+
 def _marked(understanding: Understanding, decision: Decision, roles: Roles) -> bool:
     reference = decision.demand.reference or 0
     row = understanding.function.values[0]
@@ -70,9 +102,7 @@ def _links(decision: Decision, roles: Roles, circuit: Circuit) -> list[str]:
     """What the verdict rests on, one line each."""
     links = []
     if roles.foreign:
-        links.append(
-            "registers: " + ", ".join(roles.foreign) + " not in the spec, taken as scratch from 0 to 0"
-        )
+        links.append(_foreign(roles))
     if decision.engine:
         links.append(f"circuit: {decision.engine}, {len(circuit)} operations, form {roles.oracle}")
     if decision.measurements:

@@ -103,7 +103,7 @@ class Arithmetic:
         for x, y in zip(self.extended(a, size), self.extended(b, size), strict=True):
             half = self.gates.differ(x, y)
             found.append(self.gates.differ(half, carry))
-            carry = either(self.gates, self.gates.both(x, y), self.gates.both(half, carry))
+            carry = self.gates.differ(self.gates.both(x, y), self.gates.both(half, carry))
         return trimmed(found)
 
     def add(self, a: Number, b: Number) -> Number:

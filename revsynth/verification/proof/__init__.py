@@ -1,0 +1,1 @@
+"""Proofs about wide circuits: what was lifted from the file against the spec's own translation."""
