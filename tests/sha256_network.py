@@ -1,8 +1,8 @@
 """One block of SHA-256 (FIPS 180-4, sections 4.1.2, 4.2.2, 5.3.3 and 6.2.2) as a network.
 
 512 inputs: word 0 of the block first, each word from its least significant bit on; 256 outputs: the words of
-the hash value likewise. The constants are worked out from their definition: the first 32 bits of the fractional
-parts of square and cube roots of the first primes.
+the hash value likewise. The constants are worked out from their definition: the first 32 bits of the
+fractional parts of square and cube roots of the first primes.
 """
 
 from __future__ import annotations
@@ -89,9 +89,7 @@ class NaiveOperations(Operations):
     def majority(self, x: Word, y: Word, z: Word) -> Word:
         """Three ANDs, and an OR of three."""
         or_, and_ = self.builder.or_, self.builder.and_
-        return [
-            or_(or_(and_(a, b), and_(a, c)), and_(b, c)) for a, b, c in zip(x, y, z, strict=True)
-        ]
+        return [or_(or_(and_(a, b), and_(a, c)), and_(b, c)) for a, b, c in zip(x, y, z, strict=True)]
 
 
 def constant_word(value: int) -> Word:

@@ -28,7 +28,7 @@ def run(network: Network, indices: Sequence[int]) -> list[int]:
 
 
 def some_inputs(words: Sequence[Word], seed: int, count: int = 64) -> list[int]:
-    """Combined indices: each word is random, near an end of its range, small, a power of two, or as another."""
+    """Combined indices: each word is random, near an end, small, a power of two, or near another word."""
     draw = random.Random(seed)
     found = []
     for _ in range(count):

@@ -115,7 +115,9 @@ def test_samples_are_what_the_reference_says(text: str, seed: int) -> None:
     check(text, seed)
 
 
-@pytest.mark.parametrize("divisor", [3, 5, 7, 9, 10, 11, 12, 13, 60, 100, 127, 255, 641, 1000, 65537, 2**31 - 1])
+@pytest.mark.parametrize(
+    "divisor", [3, 5, 7, 9, 10, 11, 12, 13, 60, 100, 127, 255, 641, 1000, 65537, 2**31 - 1]
+)
 def test_constant_divisors_of_either_sign(divisor: int) -> None:
     check(f"x // {divisor} + (x % {divisor}) * 2**70 + (s // {divisor}) * 2**150", divisor)
     check(f"s % {divisor} + (x // -{divisor}) * 2**70 + (s % -{divisor}) * 2**150 + t % {divisor}", divisor)
