@@ -120,7 +120,7 @@ def test_covers(kind: Any, seed: int) -> None:
     )
     cover = Cover(5, 2, kind, rows)
     spec = Spec((Word("v", 5),), Outputs(cover=cover))
-    if elaborate(spec).checks:
+    if any(tabulate(check.network).any() for check in elaborate(spec).checks):
         found, wanted = error_of(spec)
         assert wanted in found
     else:

@@ -86,7 +86,7 @@ def wide(draw: Callable[..., Any], depth: int = 3) -> str:
                 f"(not {one})",
                 f"popcount(abs({one}))",
                 f"parity(abs({one}))",
-                f"sum(c * 3 - {other} for c in cell if c != {one})",
+                f"sum(c{depth} * 3 - {other} for c{depth} in cell if c{depth} != {one})",
                 f"table[({one}) % 11]",
                 f"(({one}) in [1, 5, 2**30, 77, 1000])",
                 f"(({one}) % 256) ** 3",
