@@ -38,7 +38,7 @@ from revsynth.synthesis.product_gates import conjugated, onto_outputs, output_gr
 MAX_GATES = 1 << 20
 """More gates than this are not made."""
 TABLE_LINES = 26
-"""Lines that single sums may look at: beyond, no sum of at most MAX_GATES products is to be expected."""
+"""Lines that single sums may be over: their columns have 2**lines bits, and longer ones hardly stay short."""
 FREE_INPUTS = 13
 """Free values stay free in the search for a sum up to here; then they are settled before."""
 ALL_VARIANTS: dict[Effort, int] = {"low": 0, "normal": 6, "high": 12}
@@ -145,8 +145,8 @@ class _Landing:
                 break
         if function.inputs + watched > TABLE_LINES:
             raise BudgetError(
-                f"in place some sums of products would look at {function.inputs + watched} lines; beyond "
-                f"{TABLE_LINES} they would come to more than {MAX_GATES:,} gates"
+                f"in place some sums of products would be over {function.inputs + watched} lines, "
+                f"and they are looked for over at most {TABLE_LINES}"
             )
         return chosen, watched
 
