@@ -91,28 +91,23 @@ def _quotient_by(x: Number, divisor: int, reach: Reach) -> Number:
 def _exactly(builder: NetworkBuilder, x: Number, rest: Number, odd: int, width: int) -> list[Literal]:
     """The low bits of q where odd * q = x - rest.
 
-    Bit i of q is bit i of (x - rest) - (odd - 1) * q, and of (odd + 1) * q - (x - rest): the even multiple of
-    q needs lower bits only. The one with fewer digits is taken.
+    With t = ~x + rest = rest - x - 1, q is ~(t + (odd - 1) * q), and t + 1 + (odd + 1) * q: its bit i needs
+    lower bits of q only, since the multiple of q is even. The one with fewer digits is taken.
     """
     down, up = signed_digits(odd - 1), signed_digits(odd + 1)
-    sign = 1 if len(down) <= len(up) else -1
-    columns = Columns(builder, width)
-    for number, factor in ((x, sign), (rest, -sign)):
-        known = plain(builder, number)
-        for place, literal in enumerate(pattern_of(known, width)):
-            if factor > 0:
-                columns.add(literal, place)
-            else:
-                columns.subtract(literal, place)
+    flip = len(down) <= len(up)
+    columns = Columns(builder, width, 0 if flip else 1)
+    columns.add_word([literal ^ 1 for literal in pattern_of(plain(builder, x), width)])
+    columns.add_word(pattern_of(plain(builder, rest), width))
     quotient: list[Literal] = []
     for place in range(width):
-        bit = columns.bit(place)
+        bit = columns.bit(place) ^ flip
         quotient.append(bit)
-        for digit, negative in down if sign > 0 else up:
-            if negative == (sign > 0):
-                columns.add(bit, place + digit)
-            else:
+        for digit, negative in down if flip else up:
+            if negative:
                 columns.subtract(bit, place + digit)
+            else:
+                columns.add(bit, place + digit)
     return quotient
 
 
@@ -268,9 +263,10 @@ def _steps(
     """
     size = max(bounds_of(divisor)[1], 1).bit_length()
     word = pattern_of(divisor, size)
-    rest: list[Literal] = [FALSE] * (size + 1)
-    quotient: list[Literal] = []
-    for bit in reversed(dividend):
+    downward = dividend[::-1]
+    quotient, known = _first_steps(builder, downward, word)
+    rest = known + [FALSE] * (size + 1 - len(known))
+    for bit in downward[len(quotient) :]:
         upward = rest[-1] ^ 1
         columns = Columns(builder, size + 1)
         columns.add_word([bit, *rest[:size]])
@@ -284,3 +280,33 @@ def _steps(
     columns.add_word([builder.and_(literal, rest[-1]) for literal in word])
     left = settled(columns.bits(), 0, max(bounds_of(divisor)[1] - 1, 0))
     return quotient[::-1], left
+
+
+def _first_steps(
+    builder: NetworkBuilder, downward: list[Literal], word: list[Literal]
+) -> tuple[list[Literal], list[Literal]]:
+    """The first bits of the quotient, highest first, and what remains of the dividend so far, never negative.
+
+    After k steps there are k bits to compare with the divisor, which is greater where it has higher bits: at
+    most 2 k ANDs a step and one for those, while k is small.
+    """
+    size = len(word)
+    steps = max(min((size - 1) // 2, len(downward)), 0)
+    above = [FALSE] * (steps + 1)
+    if steps:
+        above[steps] = builder.any_of(word[steps:])
+        for place in range(steps - 1, 0, -1):
+            above[place] = builder.or_(above[place + 1], word[place])
+    quotient: list[Literal] = []
+    rest: list[Literal] = []
+    for step in range(1, steps + 1):
+        rest = [downward[step - 1], *rest]
+        columns = Columns(builder, step + 1)
+        columns.add_word(rest)
+        for place, literal in enumerate(word[:step]):
+            columns.subtract(literal, place)
+        less = columns.bits()
+        fits = builder.and_(less[-1] ^ 1, above[step] ^ 1)
+        rest = [builder.mux(fits, one, other) for one, other in zip(less, rest, strict=False)]
+        quotient.append(fits)
+    return quotient, rest

@@ -2,14 +2,12 @@
 
 from __future__ import annotations
 
-from revsynth.elaborate.clauses import clause_networks
 from revsynth.elaborate.covers import cover_literals
 from revsynth.elaborate.explain import OfCover
 from revsynth.elaborate.expressions import Expressions
 from revsynth.elaborate.formulas import formula_literal
 from revsynth.elaborate.linear import modulo_power, plain
 from revsynth.elaborate.model import Check, Elaboration
-from revsynth.elaborate.netlists import netlist_network
 from revsynth.elaborate.numbers import pattern_of
 from revsynth.elaborate.tables import listed_literals
 from revsynth.errors import SpecError
@@ -20,6 +18,7 @@ from revsynth.spec.formula import parse_formula
 from revsynth.spec.images import register_of
 from revsynth.spec.limits import MAX_INPUT_BITS
 from revsynth.spec.model import Cover, Outputs, Permutation, Predicate, Spec, Word
+from revsynth.spec.netlist import Netlist
 from revsynth.spec.output_words import resolve_width, tabulate
 from revsynth.spec.over_domain import OverDomain
 from revsynth.spec.pla import OUTPUT_WORD
@@ -81,9 +80,11 @@ class _Elaborator:
         if body.cover is not None:
             return self._cover(body.cover)
         if body.clauses is not None:
+            from revsynth.elaborate.clauses import clause_networks
+
             return self._copied(clause_networks(body.clauses)[0][1]), TRUE
         if body.netlist is not None:
-            return self._copied(netlist_network(body.netlist)), TRUE
+            return self._netlist(body.netlist), TRUE
         place = "[predicate] formula"
         formula = parse_formula(body.formula or "", self.spec.inputs, source=self.spec.source, place=place)
         return [formula_literal(self.builder, formula)], TRUE
@@ -107,7 +108,7 @@ class _Elaborator:
         if body.cover is not None:
             return self._cover(body.cover)
         if body.netlist is not None:
-            return self._copied(netlist_network(body.netlist)), TRUE
+            return self._netlist(body.netlist), TRUE
         values: list[Literal] = []
         cares: list[Literal] = []
         for output, word in zip(body.words, words, strict=True):
@@ -153,6 +154,11 @@ class _Elaborator:
             network = self.builder.build([found.both])
             self.checks.append(Check(network, message, OfCover(cover, self.spec.source)))
         return found.on, self.builder.any_of(found.care)
+
+    def _netlist(self, netlist: Netlist) -> list[Literal]:
+        from revsynth.elaborate.netlists import netlist_network
+
+        return self._copied(netlist_network(netlist))
 
     def _copied(self, network: Network) -> list[Literal]:
         return self.builder.copy(network, [self.builder.input(place) for place in range(self.builder.inputs)])

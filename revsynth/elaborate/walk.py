@@ -19,6 +19,7 @@ from revsynth.elaborate.modular_power import power_modulo
 from revsynth.elaborate.numbers import Bits, Number, Sum, is_truth, truth_number
 from revsynth.elaborate.operators import add_all, binary, compare, unary
 from revsynth.elaborate.reach import Reach
+from revsynth.elaborate.repeated import repeated_operands
 from revsynth.elaborate.values import Items, Stepped, Value, as_number, is_number
 from revsynth.logic.network import FALSE, TRUE, Literal
 from revsynth.spec.expression import Expression
@@ -37,10 +38,12 @@ class Walk:
 
     expression: Expression
     answers: dict[Pair, set[Literal]] = field(default_factory=dict)
+    _repeated: frozenset[ast.expr] = field(init=False, repr=False)
     _visits: dict[type[ast.expr], Callable[[Any, Reach], Value]] = field(init=False, repr=False)
     _calls: dict[str, Callable[[ast.Call, Reach], Value]] = field(init=False, repr=False)
 
     def __post_init__(self) -> None:
+        self._repeated = repeated_operands(self.expression.tree)
         loops = Loops(self)
         self._visits = {
             ast.Constant: lambda node, reach: int(node.value),
@@ -149,11 +152,11 @@ class Walk:
     def _compare(self, node: ast.Compare, reach: Reach) -> Value:
         found: list[Literal] = []
         on: Reach | None = reach
-        left = self.value(node.left, reach)
+        left = self._operand(node.left, reach)
         for place, (op, part) in enumerate(zip(node.ops, node.comparators, strict=True)):
             if on is None:
                 break
-            right = self.value(part, on)
+            right = self._operand(part, on)
             if place + 1 < len(node.ops):
                 right = known(right, on)
             answer = _answer(op, left, right, on)
@@ -162,6 +165,11 @@ class Walk:
             found.append(answer)
             left, on = right, on.narrow(answer)
         return truth_number(reach.builder.all_of(found))
+
+    def _operand(self, node: ast.expr, reach: Reach) -> Value:
+        """A side of a comparison, added up where it is compared again elsewhere."""
+        value = self.value(node, reach)
+        return known(value, reach) if node in self._repeated else value
 
     def _subscript(self, node: ast.Subscript, reach: Reach) -> Value:
         base = self.value(node.value, reach)
