@@ -2,9 +2,9 @@
 
 Where t_1 t_2 ... is wanted, t_2 only matters where t_1 is 1. A term is a sum over GF(2) of inputs and ANDs
 (its form), so that "t_1 is 1" is a linear equation between them: its last signal is replaced by the others in
-all later terms. A literal thus becomes a constant, an XOR ties one variable to the rest, an AND that was asked
-for is 1 and one that was excluded is 0, wherever they occur. Terms are rewritten one after the other, each
-under the equations of the terms as they now stand, so that the product stays the same: the proof is the order.
+all later terms. A literal thus becomes a constant, an XOR ties one variable to the rest, an AND that was
+asked for is 1 and one that was excluded is 0, wherever they occur. Terms are rewritten one after the other,
+each under the equations of the terms as they now stand, so that the product stays the same.
 The terms of a care network are assumed likewise, without being computed.
 """
 
@@ -92,7 +92,7 @@ class Equations:
 
 class _Rewriting:
     def __init__(self, network: Network) -> None:
-        self.builder = FormBuilder(network.inputs)
+        self.builder = FormBuilder(network.inputs, shortest=True)
         self._network = network
 
     def assume_care(self, care: Network, equations: Equations) -> bool:

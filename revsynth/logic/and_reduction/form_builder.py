@@ -27,10 +27,15 @@ def fits(network: Network) -> bool:
 
 
 class FormBuilder(NetworkBuilder):
-    """As `NetworkBuilder`; forms[node] is the form of each node."""
+    """As `NetworkBuilder`; forms[node] is the form of each node.
 
-    def __init__(self, inputs: int) -> None:
+    shortest: of the three sums in the plane of an AND's operands the two shortest are joined. Where sums are
+    rewritten anyway that keeps them short; otherwise it breaks up XORs that are shared.
+    """
+
+    def __init__(self, inputs: int, *, shortest: bool = False) -> None:
         super().__init__(inputs)
+        self._shortest = shortest
         self.forms: list[Form] = [0, *(1 << i for i in range(1, inputs + 1))]
         self.atoms: list[Literal] = [TRUE, *(2 * i for i in range(1, inputs + 1))]
         self.operands: list[tuple[Form, Form] | None] = [None] * (1 + inputs)
@@ -82,6 +87,9 @@ class FormBuilder(NetworkBuilder):
         simple = self._absorbed(one, other)
         if simple is not None:
             made = self.realise(simple)
+        elif self._shortest and r.bit_count() < max(p.bit_count(), q.bit_count()):
+            self.and_(self.realise(r), (a if p.bit_count() < q.bit_count() else b) & -2)
+            return self.and_(a, b)
         else:
             made = super().and_(a, b)
             if made >> 1 == len(self.forms):

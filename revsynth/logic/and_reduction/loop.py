@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from revsynth.logic.and_reduction.common_operands import merge_common_operands
 from revsynth.logic.and_reduction.conjuncts import propagate_conjuncts
 from revsynth.logic.and_reduction.cut_mapping import map_cuts
 from revsynth.logic.and_reduction.form_builder import FormBuilder, fits
-from revsynth.logic.and_reduction.resubstitution import Work, resubstitute
+from revsynth.logic.and_reduction.resubstitution import EXHAUSTIVE, Work, resubstitute
 from revsynth.logic.and_reduction.xor_sharing import share_xors
 from revsynth.logic.network import Network
 from revsynth.logic.network_builder import NetworkBuilder
@@ -20,22 +20,28 @@ Pass = Callable[[Network], Network]
 
 @dataclass(frozen=True)
 class Effort:
-    """How much work: rounds of one order of passes, and of conjunct propagation; cuts kept a node, the work of
-    resubstitution, gates up to which every order is tried, and up to which cuts of five leaves are used.
+    """How much work: rounds of one order of passes, and of conjunct propagation; cuts kept a node, work of
+    resubstitution, gates up to which every order is tried, and up to which cuts of five leaves are used;
+    whether sums may come first even where a solver has to prove them.
     """
 
     rounds: int
     conjunctions: int
     keep: int
-    work: Work
+    work: Work | None
     all_orders: int
     five_leaves: int
+    always_sums: bool = False
 
 
+LARGE = 50_000
+"""Gates from which on a third of the rounds are made."""
+SMALL = 300
+"""Gates up to which few cuts are kept: small networks are done in milliseconds."""
 EFFORTS = {
     "low": Effort(1, 1, 6, Work(2_000_000_000, 200, 100, 50), 0, 0),
     "normal": Effort(3, 3, 10, Work(), 6_000, 120),
-    "high": Effort(8, 8, 16, Work(400_000_000_000, 3000, 5000, 2000), 40_000, 5_000),
+    "high": Effort(8, 8, 16, Work(400_000_000_000, 3000, 5000, 2000), 40_000, 5_000, True),
 }
 
 
@@ -44,20 +50,24 @@ def fewest_ands(
     *,
     effort: str = "normal",
     care: Network | None = None,
+    by_values: bool = True,
     seed: int = 0,
     progress: Progress | None = None,
 ) -> Network:
     """A network with never more ANDs and the same outputs wherever `care` is 1.
 
-    care: one output; None: everywhere. effort: `low`, `normal` or `high`, a fixed amount of work. Every
-    rewrite is proved: see the passes. Of equal numbers of ANDs the fewest XORs, then the least depth in ANDs
-    win. Raises ValueError for another effort or a `care` of another shape.
+    care: one output; None: everywhere. effort: `low`, `normal` or `high`, a fixed amount of work. by_values:
+    whether sums may be looked for in the values of all signals; together with conjunct propagation that may
+    go as far as finding the marked inputs of a small predicate, which comparing structures does not want.
+
+    Every rewrite is proved: see the passes. Of equal numbers of ANDs the fewest XORs, then the least depth in
+    ANDs win. Raises ValueError for another effort or a `care` of another shape.
     """
     if effort not in EFFORTS:
         raise ValueError(f"effort {effort!r}: one of {', '.join(EFFORTS)}")
     if care is not None and (care.inputs, len(care.outputs)) != (network.inputs, 1):
         raise ValueError("care must have the inputs of the network and one output")
-    limits = EFFORTS[effort]
+    limits = EFFORTS[effort] if by_values else replace(EFFORTS[effort], work=None)
     start = _copied(network)
     best = min(network.reachable(), start, key=_score)
     if best.ands < 2 and best.xors < 2:
@@ -105,14 +115,15 @@ def _orders(
     """Orders of passes worth trying on a network of this size."""
 
     def linear(given: Network) -> Network:
-        return resubstitute(given, care=care, work=limits.work, seed=seed)
+        return given if limits.work is None else resubstitute(given, care=care, work=limits.work, seed=seed)
 
     def cuts(k: int) -> Pass:
-        return lambda given: map_cuts(given, k=k, keep=limits.keep)
+        keep = limits.keep if network.gates > SMALL else min(limits.keep, 6)
+        return lambda given: map_cuts(given, k=k, keep=keep)
 
     common: Pass = merge_common_operands
     orders: list[tuple[str, list[Pass]]] = [("cuts first", [cuts(4), linear, common])]
-    if network.gates <= limits.all_orders:
+    if network.gates <= limits.all_orders and (network.inputs <= EXHAUSTIVE or limits.always_sums):
         orders.append(("sums first", [linear, common, cuts(4)]))
     if network.gates <= limits.five_leaves:
         orders.append(("wide cuts first", [cuts(5), linear, common]))
@@ -122,7 +133,7 @@ def _orders(
 def _repeated(network: Network, order: list[Pass], rounds: int) -> Network:
     """The passes in this order until a round brings nothing; the best network met."""
     best = network
-    for _ in range(rounds):
+    for _ in range(rounds if network.gates < LARGE else max(rounds // 3, 1)):
         present = best
         before = _score(best)
         for step in order:
