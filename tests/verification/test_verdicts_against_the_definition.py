@@ -131,17 +131,22 @@ def mutated(draw: st.DrawFn, circuit: Circuit) -> Circuit:
 
 
 def engine(mode: str) -> contextlib.AbstractContextManager[object]:
-    """Forces an engine: the general one, its complex arithmetic, or the changed order of steps."""
+    """Forces an engine: the general one, its complex arithmetic, a changed order of steps, the compiled one."""
     if mode == "sparse":
         return patch.object(engines.Engines, "_bitsliced", side_effect=NotUniformError)
     if mode == "floating":
         return patch.object(engines, "has_angles", return_value=True)
     if mode == "reordered":
         return patch.object(engines, "FEW", 0)
+    if mode.startswith("compiled"):
+        few = 0 if mode.endswith("reordered") else engines.FEW
+        return patch.multiple(engines, COMPILED_FROM=0, COMPILED_LOADED=0, FEW=few)
     return contextlib.nullcontext()
 
 
-@pytest.mark.parametrize("mode", ["as it comes", "sparse", "floating", "reordered"])
+@pytest.mark.parametrize(
+    "mode", ["as it comes", "sparse", "floating", "reordered", "compiled", "compiled and reordered"]
+)
 @given(data=st.data())
 def test_the_verdict_is_that_of_the_definition(mode: str, data: st.DataObject) -> None:
     draw = data.draw
