@@ -10,32 +10,40 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
+from revsynth.errors import SpecError
 from revsynth.logic.network import FALSE, TRUE, Literal
 from revsynth.logic.network_builder import NetworkBuilder
 
 MOST_PRODUCT_BITS = 11
 """Lower index bits at most."""
+MOST_GATES = 8_000_000
+"""Gates of a network while it is built: about 2 GB."""
 
 
 def look_up(builder: NetworkBuilder, index: Sequence[Literal], tables: Sequence[int]) -> list[Literal]:
     """One literal a table: bit i of a table is the output where the index is i, index[0] the lowest bit.
 
-    Takes memory and time proportional to tables * 2**len(index).
+    Takes memory and time proportional to tables * 2**len(index). Raises SpecError where it would take more
+    than MOST_GATES gates.
     """
-    split = _best_split(len(index), tables)
+    split, gates = _best_split(len(index), tables)
+    if gates > MOST_GATES:
+        raise SpecError(
+            f"a table of {1 << len(index)} entries would need a network of more than {gates:,} gates"
+        )
     table = _Table(builder, index, split)
     return [table.function(bits, len(index)) for bits in tables]
 
 
-def _best_split(bits: int, tables: Sequence[int]) -> int:
-    """How many index bits are lower: the least sum of selections and products."""
-    best, least = 0, -1
+def _best_split(bits: int, tables: Sequence[int]) -> tuple[int, int]:
+    """How many index bits are lower, for the least sum of selections and products; how many gates it takes."""
+    best, least, gates = 0, -1, 0
     for lower in range(min(bits, MOST_PRODUCT_BITS) + 1):
         choices, leaves = _choices(bits, lower, tables)
         cost = choices + len(products(lower, leaves))
         if least < 0 or cost < least:
-            best, least = lower, cost
-    return best
+            best, least, gates = lower, cost, cost + choices + (len(leaves) << lower >> 1)
+    return best, gates
 
 
 def _choices(bits: int, lower: int, tables: Sequence[int]) -> tuple[int, list[int]]:

@@ -10,14 +10,12 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 
+from revsynth.elaborate.look_up import MOST_GATES
 from revsynth.elaborate.values import Value
 from revsynth.errors import SpecError
 from revsynth.logic.network import FALSE, TRUE, Literal
 from revsynth.logic.network_builder import NetworkBuilder
 from revsynth.spec.refusals import Refusal
-
-MOST_GATES = 8_000_000
-"""Gates of a network while it is built: about 2 GB."""
 
 
 class Path:

@@ -20,6 +20,7 @@ from revsynth.elaborate.numbers import Bits, Number, Sum, is_truth, truth_number
 from revsynth.elaborate.operators import add_all, binary, compare, unary
 from revsynth.elaborate.reach import Reach
 from revsynth.elaborate.repeated import repeated_operands
+from revsynth.elaborate.rotations import LINKS, rotated, rotation_at
 from revsynth.elaborate.values import Items, Stepped, Value, as_number, is_number
 from revsynth.logic.network import FALSE, TRUE, Literal
 from revsynth.spec.expression import Expression
@@ -106,7 +107,11 @@ class Walk:
         position = 0
         while position < len(operations):
             here = operations[position]
-            if isinstance(here.op, ast.Add | ast.Sub):
+            turned = self._rotation(operations, position, result, reach)
+            if turned is not None:
+                result = turned
+                position += LINKS
+            elif isinstance(here.op, ast.Add | ast.Sub):
                 terms: list[tuple[Number, int]] = [(result, 1)]
                 while position < len(operations) and isinstance(operations[position].op, ast.Add | ast.Sub):
                     here = operations[position]
@@ -117,6 +122,17 @@ class Walk:
                 result = binary(type(here.op), result, self.number(here.right, reach), reach)
                 position += 1
         return result
+
+    def _rotation(self, operations: list[ast.BinOp], position: int, x: Number, reach: Reach) -> Number | None:
+        """The rotation that begins at an operation of a chain; None where there is none."""
+        found = rotation_at(operations, position)
+        if found is None:
+            return None
+        bits = self.number(found.bits, reach)
+        if not found.fits(bits, self.number(found.cut, reach), x):
+            return None
+        assert isinstance(bits, int)
+        return rotated(x, self.number(found.count, reach), bits, found.upward, reach)
 
     def _logic(self, node: ast.BoolOp, reach: Reach) -> Value:
         """`and` and `or`: an operand, which for truth values is their AND or OR."""

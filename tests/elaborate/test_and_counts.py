@@ -91,6 +91,15 @@ def test_tables_share_their_products() -> None:
     assert output("x >> r", 16, x=16, r=4).ands <= 64
 
 
+@pytest.mark.parametrize("join", ["|", "+", "^"])
+def test_rotations_take_one_selection_a_bit_and_bit_of_the_count(join: str) -> None:
+    """The selections of a half turn are shared by two bits each."""
+    for text in (f"(x << r) {join} (x >> (16 - r))", f"(x << (16 - r)) {join} (x >> r)"):
+        assert output(f"({text}) % 2**16", 16, x=16, r=4).ands == 56
+        assert output(f"({text}) & 65535", 16, x=16, r=4).ands == 56
+    assert output(f"((x << r) {join} (x >> (16 - r))) % 2**17", 17, x=16, r=4).ands > 64
+
+
 def test_min_and_max_share_their_selections() -> None:
     assert output("max(a, b) * 256 + min(a, b)", 16, a=8, b=8).ands == 16
     assert output("max(a, b) * 2 + min(a, b)", 2, a=1, b=1).ands == 1

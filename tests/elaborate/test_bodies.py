@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import random
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -10,15 +11,17 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from revsynth.elaborate import elaborate
+from revsynth.elaborate import elaborate, look_up
 from revsynth.errors import SpecError
 from revsynth.logic.network_simulation import tabulate
 from revsynth.spec.dimacs import parse_dimacs
 from revsynth.spec.model import Cover, Output, Outputs, Permutation, Predicate, Spec, Word
 from revsynth.spec.pla import parse_pla
+from revsynth.spec.read import read_spec
 from revsynth.spec.understand import understand
 from tests.elaborate.samples import run
 
+SPECS = Path(__file__).parents[2] / "specs"
 WORDS = (Word("a", 4), Word("k", 3, signed=True), Word("lamp", 1))
 FORMULAS = (
     "a[0] & ~a[1] | (a[2] ^ a[3])",
@@ -45,6 +48,15 @@ def agrees(spec: Spec) -> None:
 
 def spec_of(body: Any, **more: Any) -> Spec:
     return Spec(WORDS, body, **more)
+
+
+@pytest.mark.parametrize("path", sorted(SPECS.iterdir()), ids=lambda path: path.name)
+def test_the_specs_that_come_with_the_project(path: Path) -> None:
+    spec = read_spec(str(path))
+    if spec.input_bits > 16:
+        elaborate(spec)
+    else:
+        agrees(spec)
 
 
 @pytest.mark.parametrize("text", FORMULAS)
@@ -187,6 +199,15 @@ def test_widths_left_out_are_refused_beyond_tables() -> None:
         elaborate(Spec((Word("a", 4000),), Predicate(where="a * a * a % 2**4096 == 1")))
     with pytest.raises(SpecError, match="negative exponent"):
         elaborate(Spec(wide, Predicate(where="pow(a, -1, b) == 1")))
+
+
+def test_tables_that_would_become_too_large_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
+    draw = random.Random(1)
+    spec = Spec((Word("v", 12),), Predicate(table=tuple(draw.randrange(2) for _ in range(1 << 12))))
+    assert elaborate(spec).function.values.ands <= 130
+    monkeypatch.setattr(look_up, "MOST_GATES", 1000)
+    with pytest.raises(SpecError, match="a table of 4096 entries would need a network of more than"):
+        elaborate(spec)
 
 
 def test_steps_have_no_function_here() -> None:

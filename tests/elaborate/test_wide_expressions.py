@@ -110,6 +110,9 @@ def wide(draw: Callable[..., Any], depth: int = 3) -> str:
 @example("pow(x, 65537, 2**31 - 1)", 9)
 @example("pow(t, -1, 1009)", 10)
 @example("t ** (n % 4) - cell[0] ** 2", 11)
+@example("(x << n | x >> (64 - n)) % 2**64 + (x >> n + 1 ^ x << (64 - (n + 1))) % 2**64 * 2**70", 13)
+@example("(cell[0] >> n) + (cell[0] << (24 - n)) & 0xFFFFFF", 14)
+@example("((t >> n % 9) + (t << (24 - n % 9)) & 0xFFFFFF) + (x << n | x >> (63 - n)) % 2**64", 15)
 @example("x // 2**63 - (x % 3) * (y // 641)", 12)
 def test_samples_are_what_the_reference_says(text: str, seed: int) -> None:
     check(text, seed)
