@@ -20,6 +20,9 @@ from revsynth.synthesis.scratch.realise import held, planned
 
 MOST_TABLE_INPUTS = 16
 """Tables of more inputs are not turned into networks here."""
+SEARCHED_GATES = 6_000
+"""Up to so many gates ANDs are reduced by all means, above by mapping cuts alone, which takes seconds."""
+XORS_AN_AND = 64
 
 
 class FromNetwork:
@@ -41,31 +44,41 @@ class FromNetwork:
         return None
 
     def synthesise(self, task: Task, progress: Progress = silent) -> list[Block]:
-        """Blocks of one network with different numbers of lines and CNOTs, the better guess first.
+        """Blocks with different numbers of ANDs, lines and CNOTs, the better guess for the aim first.
 
         Raises BudgetError where no plan was found that fits `task.lines`.
         """
-        function = network_function(task.function) if task.network is None else task.network
-        network = function.values.reachable()
         positive = task.controls == "positive"
-        progress(f"network: placing {network.ands} ANDs and {network.xors} XORs on lines")
+        networks = candidates(task, progress)
         found: list[Block] = []
-        if task.lines is None or task.inputs + network.ands - task.outputs <= task.lines:
-            found = [one.block for one in held(network, task.oracle, positive)]
+        for network in networks if task.aim == "gates" else networks[:1]:
+            # What is held at once are all ANDs but those that act straight on the outputs.
+            if task.lines is None or task.inputs + network.ands - task.outputs <= task.lines:
+                progress(f"network: placing {network.ands} ANDs and {network.xors} XORs on lines")
+                found.extend(one.block for one in held(network, task.oracle, positive))
         if task.lines is not None:
             found = [block for block in found if block.cascade.lines <= task.lines]
-        if not found or task.aim == "qubits":
-            found.extend(self._within(network, task, progress))
+        misses: list[int] = []
+        for network in networks:
+            if not found or (task.aim == "qubits" and network is networks[0]):
+                found.extend(self._within(network, task, progress, misses))
+        if not found:
+            raise BudgetError(
+                f"{networks[0].ands} ANDs need at least {min(misses)} lines with the plans that were tried, "
+                f"{task.lines} allowed"
+            )
         return _worth_it(found, task.aim)
 
-    def _within(self, network: Network, task: Task, progress: Progress) -> list[Block]:
-        """Blocks of plans for the lines allowed; for the aim `qubits` of the fewest lines."""
+    def _within(self, network: Network, task: Task, progress: Progress, misses: list[int]) -> list[Block]:
+        """Blocks of plans for the lines allowed; for the aim `qubits` of the fewest lines.
+
+        misses: gets the lines that would be needed, where there is no plan.
+        """
         # Outputs of `compute` start in 0 and its garbage may stay: either no mirror is run, and products are
         # added to outputs, or outputs are landed on and everything is cleaned up, which can do with less.
         forms: tuple[Oracle, ...] = ("compute", "fresh") if task.oracle == "compute" else (task.oracle,)
         bare = _bare_lines(task)
         blocks: list[Block] = []
-        least: list[int] = []
         for form in forms:
             planner = Planner(network, form, task.effort, task.seed)
             scratch = planner.least_scratch() if task.aim == "qubits" else task.lines or 0
@@ -76,17 +89,34 @@ class FromNetwork:
             for plan in plans:
                 blocks.extend(one.block for one in planned(plan, form, task.controls == "positive"))
             if not plans:
-                least.append(bare + planner.least_scratch())
-        blocks = [block for block in blocks if task.lines is None or block.cascade.lines <= task.lines]
-        if not blocks and task.aim != "qubits":
-            raise BudgetError(
-                f"{network.ands} ANDs need at least {min(least)} lines with the plans that were tried, "
-                f"{task.lines} allowed"
-            )
-        return blocks
+                misses.append(bare + planner.least_scratch())
+        return [block for block in blocks if task.lines is None or block.cascade.lines <= task.lines]
 
 
 NETWORK = FromNetwork()
+
+
+def candidates(task: Task, progress: Progress = silent) -> list[Network]:
+    """The networks to compile, the cheapest first; this is the one place where ANDs are reduced.
+
+    The network as given is among them: its structure may allow fewer lines. An AND weighs as much as
+    XORS_AN_AND XORs, since fewer ANDs at the price of any number of XORs are no gain.
+    """
+    function = network_function(task.function) if task.network is None else task.network
+    given = function.values.reachable()
+    progress(f"network: reducing {given.ands} ANDs")
+    if given.gates <= SEARCHED_GATES:
+        from revsynth.logic.and_reduction import fewest_ands
+
+        least = fewest_ands(given, effort=task.effort, care=function.care, seed=task.seed, progress=progress)
+    else:
+        from revsynth.logic.and_reduction.cut_mapping import map_cuts
+
+        least = map_cuts(given)
+    least = least.reachable()
+    if least == given:
+        return [given]
+    return sorted((least, given), key=lambda network: network.ands + network.xors / XORS_AN_AND)
 
 
 def _bare_lines(task: Task) -> int:

@@ -10,11 +10,13 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from revsynth.cascade.model import PHASE, Cascade
+from revsynth.logic.function import Function
 from revsynth.logic.network import Network
 from revsynth.logic.network_function import NetworkFunction
 from revsynth.options import Controls, Oracle
 from revsynth.synthesis.interface import Block, Task
 from revsynth.synthesis.network import NETWORK
+from revsynth.synthesis.scratch.from_table import network_function
 from revsynth.synthesis.scratch.realise import held
 from tests.synthesis.checks import check_block, from_table
 from tests.synthesis.random_networks import as_function, networks
@@ -60,6 +62,20 @@ def test_a_bare_table_with_free_values_is_enough(oracle: Oracle, data: st.DataOb
     entry = st.none() | st.integers(0, (1 << outputs) - 1)
     values = data.draw(st.lists(entry, min_size=size, max_size=size))
     task = Task(from_table(inputs, outputs, values), oracle)
+    for block in NETWORK.synthesise(task):
+        if block.cascade.lines <= SLOW_LINES:
+            check_block(task, block)
+
+
+@given(data=st.data())
+def test_values_that_do_not_count_are_free(data: st.DataObject) -> None:
+    network = data.draw(networks(1))
+    draw = data.draw(st.lists(st.integers(0, 1), min_size=1 << network.inputs, max_size=1 << network.inputs))
+    care = network_function(from_table(network.inputs, 1, draw)).values
+    table = as_function(network).values
+    fixed = as_function(care).values
+    function = Function(network.inputs, 1, table & fixed, fixed, fixed[0])
+    task = Task(function, "phase", network=NetworkFunction(network, care))
     for block in NETWORK.synthesise(task):
         if block.cascade.lines <= SLOW_LINES:
             check_block(task, block)
