@@ -21,7 +21,6 @@ from revsynth.verification.branches import (
     turn,
 )
 from revsynth.verification.classical import Column
-from revsynth.verification.elementary import ANGLE, FLIP, HADAMARD, MEASURE, RESET, TURN, Step
 from revsynth.verification.outcome import (
     Bits,
     Final,
@@ -35,6 +34,7 @@ from revsynth.verification.outcome import (
 )
 from revsynth.verification.phases import chosen, constant, difference
 from revsynth.verification.plan import Plan
+from revsynth.verification.steps import ANGLE, FLIP, HADAMARD, MEASURE, RESET, TURN, Step
 
 
 class CrowdedError(Exception):

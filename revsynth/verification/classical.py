@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TypeAlias
 
-from revsynth.verification.elementary import FLIP, Step
+from revsynth.verification.steps import FLIP, Step
 
 Column: TypeAlias = int
 """Bit i is the value in lane i."""

@@ -12,7 +12,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from revsynth.verification.elementary import FLIP, HADAMARD, MEASURE, RESET, TURN, Step
+from revsynth.verification.steps import FLIP, HADAMARD, MEASURE, RESET, TURN, Step
 
 
 def commuting(steps: Sequence[Step], qubits: int, wanted: Sequence[int]) -> list[int]:

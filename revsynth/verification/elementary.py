@@ -10,60 +10,115 @@ needs the controls. Literals are those of the circuit model: 2 * qubit, + 1 wher
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Sequence
-from typing import Final, NamedTuple
+from collections.abc import Callable
 
-from revsynth.circuit.model import Circuit, Kind, Op
+import numpy as np
+from numpy.typing import NDArray
 
-FLIP: Final = 0
-"""NOT on `target` where all literals hold."""
-TURN: Final = 1
-"""The phase omega**amount, omega = exp(i pi/4), where all literals hold."""
-ANGLE: Final = 2
-"""The phase exp(i angle), no multiple of pi/4, where all literals hold."""
-HADAMARD: Final = 3
-"""H on `target`."""
-MEASURE: Final = 4
-"""`target` is measured in the Z basis into `bit`."""
-RESET: Final = 5
-"""`target` is measured, the outcome is lost, and it is set to 0."""
+from revsynth.circuit.model import TARGETS, Circuit, Kind, Op
+from revsynth.verification.steps import (
+    ANGLE,
+    FLIP,
+    HADAMARD,
+    MEASURE,
+    RESET,
+    TURN,
+    Step,
+    Steps,
+    starts,
+)
+
+__all__ = [
+    "ANGLE",
+    "FLIP",
+    "HADAMARD",
+    "MEASURE",
+    "RESET",
+    "TURN",
+    "Step",
+    "Steps",
+    "elementary",
+    "has_angles",
+    "is_classical",
+]
 
 ANGLE_TOLERANCE = 1e-11
 """An angle this close to a multiple of pi/4, in radians, is that multiple."""
 
 
-class Step(NamedTuple):
-    """One elementary step. `condition` indexes the circuit's conditions, `source` its operations."""
+def elementary(circuit: Circuit) -> Steps:
+    """The steps of a circuit in order; a step that does nothing is left out.
 
-    act: int
-    literals: tuple[int, ...]
-    target: int
-    amount: int
-    angle: float
-    condition: int
-    bit: int
-    source: int
-
-
-def elementary(circuit: Circuit) -> list[Step]:
-    """The steps of a circuit in order; a step that does nothing is left out."""
+    Operations that are one step are taken over from the circuit's arrays at once, the others one by one.
+    """
+    kind = circuit.kind
+    plain = (_ACT[kind] != _SEVERAL) & ((kind != Kind.H) | (np.diff(circuit.offset) == 1))
+    steps = _taken_over(circuit, np.flatnonzero(plain))
+    rest = np.flatnonzero(~plain).tolist()
+    if not rest:
+        return steps
     writer = _Writer()
-    for index, op in enumerate(circuit):
+    for index in rest:
+        op = _operation(circuit, index)
         writer.begin(op.condition, index)
         _WRITE[op.kind](writer, op)
-    return writer.steps
+    both = steps.followed_by(Steps.of(writer.steps))
+    return both.take(np.argsort(both.source, kind="stable"))
 
 
-def is_classical(steps: Sequence[Step]) -> bool:
+def is_classical(steps: Steps) -> bool:
     """Only NOTs with controls and signs, nothing measured, nothing under a condition."""
-    return all(
-        step.condition < 0 and (step.act == FLIP or (step.act == TURN and step.amount == 4)) for step in steps
+    sign = (steps.act == TURN) & (steps.amount == 4)
+    return bool((((steps.act == FLIP) | sign) & (steps.condition < 0)).all())
+
+
+def has_angles(steps: Steps) -> bool:
+    """Whether a phase that is no multiple of pi/4 depends on the state."""
+    return bool(((steps.act == ANGLE) & (np.diff(steps.offset) > 0)).any())
+
+
+def _taken_over(circuit: Circuit, chosen: NDArray[np.int64]) -> Steps:
+    """Operations of kinds that are one step: NOTs, the diagonal ones, H without controls, measurements.
+
+    A diagonal one has its target as one more literal and no target.
+    """
+    width = np.diff(circuit.offset)[chosen]
+    offset = starts(width)
+    within = np.arange(offset[-1], dtype=np.int64) - np.repeat(offset[:-1], width)
+    operand = circuit.operand[np.repeat(circuit.offset[:-1][chosen], width) + within]
+    act = _ACT[circuit.kind[chosen]]
+    turning = act == TURN
+    last = offset[1:] - 1
+    target = np.where(turning, np.int32(-1), operand[last])
+    operand[last[turning]] *= 2
+    is_literal = np.ones(len(operand), dtype=bool)
+    is_literal[last[~turning]] = False
+    return Steps(
+        act=act,
+        target=target,
+        amount=_AMOUNT[circuit.kind[chosen]],
+        angle=np.zeros(len(chosen), dtype=np.float64),
+        condition=circuit.condition[chosen],
+        bit=circuit.bit[chosen],
+        source=chosen.astype(np.int32),
+        offset=starts(width - ~turning),
+        literal=operand[is_literal],
     )
 
 
-def has_angles(steps: Sequence[Step]) -> bool:
-    """Whether a phase that is no multiple of pi/4 depends on the state."""
-    return any(step.act == ANGLE and step.literals for step in steps)
+def _operation(circuit: Circuit, index: int) -> Op:
+    kind = Kind(int(circuit.kind[index]))
+    start, end = int(circuit.offset[index]), int(circuit.offset[index + 1])
+    operand = circuit.operand[start:end].tolist()
+    split = len(operand) - TARGETS[kind]
+    return Op(
+        kind,
+        tuple(operand[:split]),
+        tuple(operand[split:]),
+        circuit.angles.get(index, ()),
+        int(circuit.condition[index]),
+        int(circuit.bit[index]),
+    )
 
 
 class _Writer:
@@ -197,3 +252,12 @@ _WRITE: dict[Kind, Callable[[_Writer, Op], None]] = {
     Kind.MEASURE: lambda writer, op: writer.outside(MEASURE, op.targets[0], op.bit),
     Kind.RESET: lambda writer, op: writer.outside(RESET, op.targets[0], -1),
 }
+
+_SEVERAL = 255
+_AMOUNTS = {Kind.Z: 4, Kind.S: 2, Kind.SDG: 6, Kind.T: 1, Kind.TDG: 7}
+_ACT = np.full(len(Kind), _SEVERAL, dtype=np.uint8)
+"""By kind: the act of the one step that it is."""
+_ACT[[Kind.X, Kind.H, Kind.MEASURE, Kind.RESET]] = FLIP, HADAMARD, MEASURE, RESET
+_ACT[list(_AMOUNTS)] = TURN
+_AMOUNT = np.zeros(len(Kind), dtype=np.uint8)
+_AMOUNT[list(_AMOUNTS)] = list(_AMOUNTS.values())

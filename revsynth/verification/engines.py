@@ -1,24 +1,38 @@
 """Chooses how a circuit is simulated by what it is made of, and runs it on sets of inputs.
 
 Classical circuits go through `classical`, Clifford+T through `bitsliced`, everything else, and what
-`bitsliced` cannot follow, through `sparse`.
+`bitsliced` cannot follow, through `sparse`. Where there is enough work to pay for it, `compiled` stands in
+for the first two; what it finds wrong they run again and explain.
 """
 
 from __future__ import annotations
 
+import sys
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import cached_property
+from typing import TYPE_CHECKING
 
 from revsynth.circuit.model import Circuit
 from revsynth.verification.bitsliced import CrowdedError, run_bitsliced
 from revsynth.verification.branches import NotUniformError
-from revsynth.verification.classical import compile_gates, run_classical
-from revsynth.verification.elementary import MEASURE, RESET, elementary, has_angles, is_classical
+from revsynth.verification.classical import Gate, compile_gates, run_classical
+from revsynth.verification.elementary import elementary, has_angles, is_classical
 from revsynth.verification.forms import Chunk, Demand
-from revsynth.verification.order import close_early
+from revsynth.verification.order import early_order
 from revsynth.verification.outcome import Final, Finals, OutgrownError, RevealsError, TooLargeError
-from revsynth.verification.plan import plan
+from revsynth.verification.plan import Plan, plan
+from revsynth.verification.steps import Steps
 
+if TYPE_CHECKING:
+    from revsynth.verification.compiled import Compiled
+
+BLOCK_BITS = 16
+"""Inputs a block, as a power of two: a column takes 8 kB, so a state of some dozens stays in the cache."""
+COMPILED_FROM = 200_000
+"""Steps times blocks of inputs from which the compiled engine pays for its half second of loading."""
+COMPILED_LOADED = 20_000
+"""The same where its library is loaded anyway."""
 FEW = 8
 """Branches or runs up to which the circuit's own order of steps is good enough."""
 MANY = 128
@@ -29,32 +43,69 @@ SPARSE_BITS = 11
 
 @dataclass(frozen=True)
 class Part:
-    """One set of lanes and their final states, or the measurement that gives an input away."""
+    """One set of lanes and their final states, or the measurement that gives an input away.
+
+    brief: without records of outcomes; `Engines.told` has them.
+    """
 
     chunk: Chunk
     finals: Finals | None = None
     reveals: RevealsError | None = None
+    brief: bool = False
 
 
 class Engines:
     """The engines for one circuit. `name` says which one the last part went through."""
 
     def __init__(self, circuit: Circuit) -> None:
-        self.steps = elementary(circuit)
-        self.measurements = sum(step.act in (MEASURE, RESET) for step in self.steps)
+        self.steps: Steps = elementary(circuit)
+        self.measurements = self.steps.measurements
         self._circuit = circuit
         self._exact = not has_angles(self.steps)
-        self._gates = compile_gates(self.steps) if is_classical(self.steps) else None
-        self._plan = plan(self.steps, circuit.conditions)
+        self._classical = is_classical(self.steps)
         self._limit = FEW
         self._use_sparse = not self._exact
         self._sparse_bits = SPARSE_BITS
         self._ordered = False
+        self._compiled: Compiled | None = None
         self.name = ""
 
+    def block_bits(self, bits: int) -> int:
+        """How many of 2**bits lanes to take at a time, as a power of two; decides whether to compile."""
+        blocks = 1 << max(0, bits - BLOCK_BITS)
+        least = COMPILED_LOADED if "numba" in sys.modules else COMPILED_FROM
+        if self._use_sparse or len(self.steps) * blocks < least:
+            return min(bits, BLOCK_BITS)
+        from revsynth.verification.compiled import block_bits
+
+        self._compile()
+        return min(bits, block_bits(self._circuit.qubits))
+
+    def _compile(self) -> None:
+        from revsynth.verification.compiled import Compiled
+
+        circuit = self._circuit
+        self._compiled = Compiled(self.steps, circuit.qubits, circuit.bits, circuit.conditions)
+
+    @cached_property
+    def _gates(self) -> list[Gate]:
+        return compile_gates(self.steps)
+
+    @cached_property
+    def _plan(self) -> Plan:
+        return plan(self.steps, self._circuit.conditions)
+
     def fast(self, chunk: Chunk) -> Part | None:
-        """The final states through a fast engine; None, and never again, where neither can follow."""
-        return None if self._use_sparse else self._fast(chunk)
+        """The final states through a fast engine; None, and never again, where none can follow."""
+        if self._use_sparse:
+            return None
+        if self._compiled is None:
+            return self._fast(chunk)
+        return self._through_compiled(chunk)
+
+    def told(self, chunk: Chunk) -> Part:
+        """The final states with records of outcomes, for lanes that the compiled engine has run."""
+        return (None if self._use_sparse else self._fast(chunk)) or self._sparse(chunk)
 
     def run_chosen(self, chunk: Chunk) -> Part:
         """The final states through whichever engine fits; raises TooLargeError."""
@@ -78,12 +129,40 @@ class Engines:
             yield part
             base += 1 << size
 
+    def _through_compiled(self, chunk: Chunk) -> Part | None:
+        from revsynth.verification.compiled import RevealsSomewhereError
+
+        self._name_fast()
+        while True:
+            assert self._compiled is not None
+            try:
+                finals = self._compiled.run(
+                    chunk.start, chunk.lanes + 1, most_branches=self._limit, most_runs=self._limit
+                )
+                return Part(chunk, finals, brief=True)
+            except RevealsSomewhereError:
+                return self.told(chunk)
+            except NotUniformError:
+                break
+            except CrowdedError:
+                if self._ordered:
+                    break
+                self._reorder()
+        self._use_sparse = True
+        return None
+
+    def _name_fast(self) -> None:
+        self.name = (
+            "bit-parallel simulation of the gates"
+            if self._classical
+            else "bit-parallel simulation of branches, phases exact in eighths of a turn"
+        )
+
     def _fast(self, chunk: Chunk) -> Part | None:
-        if self._gates is not None:
+        self._name_fast()
+        if self._classical:
             columns, sign = run_classical(self._gates, chunk.start, chunk.ones)
-            self.name = "bit-parallel simulation of the gates"
             return Part(chunk, Finals([Final(columns, (0, 0, sign))]))
-        self.name = "bit-parallel simulation of branches, phases exact in eighths of a turn"
         try:
             return Part(chunk, self._bitsliced(chunk))
         except RevealsError as reveals:
@@ -105,10 +184,13 @@ class Engines:
 
     def _reorder(self) -> None:
         circuit = self._circuit
-        steps = close_early(self.steps, circuit.qubits, circuit.conditions)
-        self._plan = plan(steps, circuit.conditions)
+        order = early_order(self.steps, circuit.qubits, circuit.conditions)
+        self.steps = self.steps.take(order)
+        self.__dict__.pop("_plan", None)
         self._limit = MANY
         self._ordered = True
+        if self._compiled is not None:
+            self._compile()
 
     def _sparse(self, chunk: Chunk) -> Part:
         """Exactly, or with complex numbers from where exact integers outgrow their words."""

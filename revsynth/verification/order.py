@@ -11,8 +11,11 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
+import numpy as np
+from numpy.typing import NDArray
+
 from revsynth.circuit.model import Condition
-from revsynth.verification.elementary import FLIP, HADAMARD, MEASURE, RESET, Step
+from revsynth.verification.steps import FLIP, HADAMARD, MEASURE, RESET, Step
 
 _ALONG_Z = 0
 _ALONG_X = 1
@@ -21,16 +24,23 @@ _OTHER = 2
 
 def close_early(steps: Sequence[Step], qubits: int, conditions: Sequence[Condition]) -> list[Step]:
     """The same steps in an order with the same meaning, superpositions closed as early as possible."""
+    every = list(steps)
+    return [every[index] for index in early_order(every, qubits, conditions).tolist()]
+
+
+def early_order(steps: Sequence[Step], qubits: int, conditions: Sequence[Condition]) -> NDArray[np.int64]:
+    """The indices of the steps in that order."""
+    steps = list(steps)
     nodes = _dependencies(steps, qubits, conditions)
     readers = _readers(steps, conditions)
-    order: list[Step] = []
+    order: list[int] = []
     done = bytearray(len(nodes))
     for index in _events(steps, qubits):
         for wanted in (index, *readers.get(index, ())):
-            _run(wanted, nodes, done, steps, order)
+            _run(wanted, nodes, done, len(steps), order)
     for index in range(len(steps)):
-        _run(index, nodes, done, steps, order)
-    return order
+        _run(index, nodes, done, len(steps), order)
+    return np.array(order, dtype=np.int64)
 
 
 def bits_read(step: Step, conditions: Sequence[Condition]) -> list[int]:
@@ -108,9 +118,7 @@ def _events(steps: Sequence[Step], qubits: int) -> list[int]:
     return events
 
 
-def _run(
-    wanted: int, nodes: list[list[int]], done: bytearray, steps: Sequence[Step], order: list[Step]
-) -> None:
+def _run(wanted: int, nodes: list[list[int]], done: bytearray, steps: int, order: list[int]) -> None:
     """Append a step after everything it still needs, in the order of the circuit where that is free."""
     stack = [wanted]
     while stack:
@@ -124,5 +132,5 @@ def _run(
             continue
         stack.pop()
         done[node] = 1
-        if node < len(steps):
-            order.append(steps[node])
+        if node < steps:
+            order.append(node)

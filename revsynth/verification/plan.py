@@ -5,9 +5,11 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+import numpy as np
+
 from revsynth.circuit.model import Condition
-from revsynth.verification.elementary import HADAMARD, MEASURE, RESET, Step
 from revsynth.verification.order import bits_read
+from revsynth.verification.steps import HADAMARD, MEASURE, RESET, Step, Steps
 
 MOST_LIVE = 256
 """With more bits still to be read, runs are not compared: they would hardly agree in all of them."""
@@ -20,6 +22,27 @@ class Plan:
     steps: Sequence[Step]
     conditions: Sequence[Condition]
     live: dict[int, tuple[int, ...]]
+
+
+def deaths(steps: Steps, conditions: Sequence[Condition]) -> list[tuple[int, int]]:
+    """(step, bit) in order: after that step, which reads or writes the bit, nobody reads what it holds."""
+    reads = [sorted({literal >> 1 for guard in guards for literal in guard.bits}) for guards in conditions]
+    touching = np.flatnonzero((steps.condition >= 0) | (steps.act == MEASURE))
+    rows = zip(
+        touching.tolist(),
+        *(a[touching].tolist() for a in (steps.act, steps.condition, steps.bit)),
+        strict=True,
+    )
+    live: set[int] = set()
+    found: list[tuple[int, int]] = []
+    for index, act, condition, bit in reversed(list(rows)):
+        read = reads[condition] if condition >= 0 else []
+        touched = {*read, bit} if act == MEASURE else read
+        found.extend((index, other) for other in sorted(touched, reverse=True) if other not in live)
+        if act == MEASURE and condition < 0:
+            live.discard(bit)
+        live.update(read)
+    return found[::-1]
 
 
 def plan(steps: Sequence[Step], conditions: Sequence[Condition]) -> Plan:

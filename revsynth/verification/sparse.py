@@ -16,7 +16,6 @@ from numpy.typing import NDArray
 
 from revsynth.verification.amplitudes import Exact, Floating, Rows
 from revsynth.verification.classical import Column
-from revsynth.verification.elementary import ANGLE, FLIP, HADAMARD, MEASURE, RESET, TURN, Step
 from revsynth.verification.outcome import (
     Bits,
     Final,
@@ -29,6 +28,7 @@ from revsynth.verification.outcome import (
     with_bit,
 )
 from revsynth.verification.plan import Plan
+from revsynth.verification.steps import ANGLE, FLIP, HADAMARD, MEASURE, RESET, TURN, Step
 
 MOST_ROWS = 1 << 21
 """Rows of all runs together; a row takes about 100 bytes while it is sorted."""

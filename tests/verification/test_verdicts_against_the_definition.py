@@ -131,7 +131,7 @@ def mutated(draw: st.DrawFn, circuit: Circuit) -> Circuit:
 
 
 def engine(mode: str) -> contextlib.AbstractContextManager[object]:
-    """Forces an engine: the general one, its complex arithmetic, a changed order of steps, the compiled one."""
+    """Forces an engine: the general one, complex arithmetic, a changed order of steps, the compiled one."""
     if mode == "sparse":
         return patch.object(engines.Engines, "_bitsliced", side_effect=NotUniformError)
     if mode == "floating":
