@@ -25,37 +25,68 @@ def propagate_conjuncts(network: Network, care: Network | None = None) -> Networ
     """
     if not fits(network) or (care is not None and not fits(care)):
         return network
-    trees = {literal >> 1: conjunction(network, literal & -2) for literal in network.outputs.tolist()}
+    gates = Gates(network)
+    trees = {literal >> 1: gates.conjunction(literal & -2) for literal in gates.outputs}
     terms = sum(len(tree) for tree in trees.values())
     if terms * network.gates > MOST_STEPS or (care is None and terms <= len(trees)):
         return network
-    rewriting = _Rewriting(network)
+    rewriting = _Rewriting(network.inputs)
     given = Equations(rewriting.builder)
-    if care is not None and not rewriting.assume_care(care, given):
+    if care is not None and not rewriting.assume_care(Gates(care), given):
         return rewriting.builder.build([FALSE] * len(network.outputs))
-    made = {node: rewriting.product(tree, given.copy()) for node, tree in trees.items()}
-    return rewriting.builder.build([made[o >> 1] ^ (o & 1) for o in network.outputs.tolist()])
+    made = {node: rewriting.product(gates, tree, given.copy()) for node, tree in trees.items()}
+    return rewriting.builder.build([made[o >> 1] ^ (o & 1) for o in gates.outputs])
 
 
-def conjunction(network: Network, literal: Literal) -> list[Literal]:
-    """The terms of an AND tree, those with fewest ANDs below first; ANDs read elsewhere too stay whole."""
-    first = 1 + network.inputs
-    readers = [0] * network.nodes
-    for array in (network.left, network.right, network.outputs):
-        for operand in array.tolist():
-            readers[operand >> 1] += 1
-    terms: dict[Literal, None] = {}
-    waiting = [literal]
-    while waiting:
-        top = waiting.pop()
-        gate = (top >> 1) - first
-        whole = top == literal or readers[top >> 1] == 1
-        if gate < 0 or top & 1 or network.is_xor[gate] or not whole:
-            terms[top] = None
-        else:
-            waiting += [int(network.left[gate]), int(network.right[gate])]
-    below = {term: _ands_below(network, term >> 1) for term in terms}
-    return sorted(terms, key=lambda term: (below[term], term))
+class Gates:
+    """A network in plain lists, and how often each node is read."""
+
+    def __init__(self, network: Network) -> None:
+        self.first = 1 + network.inputs
+        self.is_xor: list[bool] = network.is_xor.tolist()
+        self.left: list[Literal] = network.left.tolist()
+        self.right: list[Literal] = network.right.tolist()
+        self.outputs: list[Literal] = network.outputs.tolist()
+        self.readers = [0] * network.nodes
+        for operand in (*self.left, *self.right, *self.outputs):
+            self.readers[operand >> 1] += 1
+
+    def conjunction(self, literal: Literal) -> list[Literal]:
+        """The terms of an AND tree, fewest ANDs below first; ANDs read elsewhere too stay whole."""
+        terms: dict[Literal, None] = {}
+        waiting = [literal]
+        while waiting:
+            top = waiting.pop()
+            gate = (top >> 1) - self.first
+            whole = top == literal or self.readers[top >> 1] == 1
+            if gate < 0 or top & 1 or self.is_xor[gate] or not whole:
+                terms[top] = None
+            else:
+                waiting += [self.left[gate], self.right[gate]]
+        if len(terms) == 1:
+            return list(terms)
+        below = {term: self._ands_below(term >> 1) for term in terms}
+        return sorted(terms, key=lambda term: (below[term], term))
+
+    def _ands_below(self, node: int) -> int:
+        first, is_xor = self.first, self.is_xor
+        return sum(1 for below in self.cone(node) if below >= first and not is_xor[below - first])
+
+    def cone(self, node: int) -> list[int]:
+        """The nodes that a node depends on, itself included, ascending; the constant left out."""
+        first, left, right = self.first, self.left, self.right
+        seen = {0, node}
+        waiting = [node]
+        while waiting:
+            gate = waiting.pop() - first
+            if gate < 0:
+                continue
+            for operand in (left[gate] >> 1, right[gate] >> 1):
+                if operand not in seen:
+                    seen.add(operand)
+                    waiting.append(operand)
+        seen.discard(0)
+        return sorted(seen)
 
 
 class Equations:
@@ -91,27 +122,26 @@ class Equations:
 
 
 class _Rewriting:
-    def __init__(self, network: Network) -> None:
-        self.builder = FormBuilder(network.inputs, shortest=True)
-        self._network = network
+    def __init__(self, inputs: int) -> None:
+        self.builder = FormBuilder(inputs, shortest=True)
 
-    def assume_care(self, care: Network, equations: Equations) -> bool:
+    def assume_care(self, care: Gates, equations: Equations) -> bool:
         """Adds the terms of the care network; False where they contradict each other."""
-        literal = int(care.outputs[0])
+        literal = care.outputs[0]
         if literal < 2:
             return bool(literal)
-        terms = conjunction(care, literal) if not literal & 1 else [literal]
+        terms = care.conjunction(literal) if not literal & 1 else [literal]
         for term in terms:
             value = self._copied(care, term, equations)
             if equations.assume(self.builder.form(value)) is False:
                 return False
         return True
 
-    def product(self, terms: list[Literal], equations: Equations) -> Literal:
+    def product(self, gates: Gates, terms: list[Literal], equations: Equations) -> Literal:
         """The conjunction, every term under the equations of those before it."""
         values = []
         for number, term in enumerate(terms):
-            value = self._copied(self._network, term, equations)
+            value = self._copied(gates, term, equations)
             # The last term is assumed by none.
             if number < len(terms) - 1:
                 known = equations.assume(self.builder.form(value))
@@ -123,19 +153,18 @@ class _Rewriting:
                 values.append(value)
         return self.builder.all_of(values)
 
-    def _copied(self, network: Network, literal: Literal, equations: Equations) -> Literal:
-        """A signal of the network, built with every sum reduced by the equations."""
+    def _copied(self, gates: Gates, literal: Literal, equations: Equations) -> Literal:
+        """A signal of a network, built with every sum reduced by the equations."""
         builder = self.builder
-        first = 1 + network.inputs
         here: dict[int, Literal] = {0: FALSE}
-        for node in _cone(network, literal >> 1):
-            if node < first:
+        for node in gates.cone(literal >> 1):
+            gate = node - gates.first
+            if gate < 0:
                 here[node] = self._settled(2 * node, equations)
                 continue
-            gate = node - first
-            left, right = int(network.left[gate]), int(network.right[gate])
+            left, right = gates.left[gate], gates.right[gate]
             a, b = here[left >> 1] ^ (left & 1), here[right >> 1] ^ (right & 1)
-            made = builder.xor(a, b) if network.is_xor[gate] else builder.and_(a, b)
+            made = builder.xor(a, b) if gates.is_xor[gate] else builder.and_(a, b)
             here[node] = self._settled(made, equations)
         return here[literal >> 1] ^ (literal & 1)
 
@@ -143,25 +172,3 @@ class _Rewriting:
         form = self.builder.form(literal)
         reduced = equations.reduced(form)
         return literal if reduced == form else self.builder.realise(reduced)
-
-
-def _ands_below(network: Network, node: int) -> int:
-    first = 1 + network.inputs
-    return sum(1 for below in _cone(network, node) if below >= first and not network.is_xor[below - first])
-
-
-def _cone(network: Network, node: int) -> list[int]:
-    """The nodes that a node depends on, itself included, ascending; the constant left out."""
-    first = 1 + network.inputs
-    seen = {node}
-    waiting = [node]
-    while waiting:
-        gate = waiting.pop() - first
-        if gate < 0:
-            continue
-        for operand in (int(network.left[gate]), int(network.right[gate])):
-            if operand >> 1 not in seen:
-                seen.add(operand >> 1)
-                waiting.append(operand >> 1)
-    seen.discard(0)
-    return sorted(seen)

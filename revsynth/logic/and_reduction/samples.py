@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 from random import Random
 
+import numpy as np
+
 from revsynth.logic.network import Network
 from revsynth.logic.truth_table import variable
 
@@ -38,31 +40,36 @@ class Samples:
     def __init__(self, inputs: int, width: int, seed: int) -> None:
         random = Random(seed)
         self.inputs = inputs
-        self.width = 0
-        self.columns = [0] * inputs
-        for _ in range(width // 2):
-            self.add(random.getrandbits(inputs))
+        self.width = width // 2
+        self.columns = [random.getrandbits(self.width) if self.width else 0 for _ in range(inputs)]
+        sparse = []
         for turn in range(width - width // 2):
-            # Few bits differ from all 0, all 1 or the complement of a random word's copy.
+            # Few bits differ from all 0 or all 1.
             base = (0, (1 << inputs) - 1)[turn & 1]
             for _ in range(1 + turn % 3):
                 base ^= 1 << random.randrange(inputs)
-            self.add(base)
+            sparse.append(base)
+        self._add_all(sparse)
         self._random = random
 
-    def add(self, sample: int) -> None:
-        """One input; bit i is input i."""
-        place = 1 << self.width
-        self.width += 1
+    def _add_all(self, samples: list[int]) -> None:
+        """Inputs as integers; bit i is input i."""
+        size = (self.inputs + 7) // 8
+        packed = b"".join(sample.to_bytes(size, "little") for sample in samples)
+        bits = np.unpackbits(
+            np.frombuffer(packed, np.uint8).reshape(len(samples), size), axis=1, bitorder="little"
+        )
+        columns = np.packbits(bits.T, axis=1, bitorder="little")
         for i in range(self.inputs):
-            if sample >> i & 1:
-                self.columns[i] |= place
+            self.columns[i] |= int.from_bytes(columns[i].tobytes(), "little") << self.width
+        self.width += len(samples)
 
     def add_with_neighbours(self, sample: int, count: int = 16) -> None:
         """A counterexample and inputs that differ from it in one to three bits."""
-        self.add(sample)
+        near_by = [sample]
         for turn in range(count):
             near = sample
             for _ in range(1 + turn % 3):
                 near ^= 1 << self._random.randrange(self.inputs)
-            self.add(near)
+            near_by.append(near)
+        self._add_all(near_by)

@@ -12,7 +12,7 @@ from revsynth.logic.and_reduction.common_operands import Forms, forms_of
 from revsynth.logic.and_reduction.form_builder import Form, FormBuilder, fits
 from revsynth.logic.network import FALSE, Literal, Network
 
-MOST_TERMS = 700
+MOST_TERMS = 2000
 """Inputs and ANDs up to which pairs are counted."""
 
 
@@ -37,8 +37,9 @@ def _paired(forms: Forms) -> tuple[list[tuple[int, int]], dict[Form, list[int]]]
             holders[low.bit_length() - 1] |= 1 << place
             rest ^= low
     heap = []
-    for a in range(1, count):
-        for b in range(1, a):
+    held_often = [a for a in range(1, count) if holders[a].bit_count() > 1]
+    for place, a in enumerate(held_often):
+        for b in held_often[:place]:
             shared = (holders[a] & holders[b]).bit_count()
             if shared > 1:
                 heap.append((-shared, b, a))
@@ -58,10 +59,13 @@ def _paired(forms: Forms) -> tuple[list[tuple[int, int]], dict[Form, list[int]]]
         holders[a] ^= both
         holders[b] ^= both
         holders.append(both)
-        for c in range(1, number):
+        if number % 64 == 0:
+            held_often = [c for c in held_often if holders[c].bit_count() > 1]
+        for c in held_often:
             shared = (holders[c] & both).bit_count()
             if shared > 1:
                 heapq.heappush(heap, (-shared, c, number))
+        held_often.append(number)
     terms: dict[Form, list[int]] = {form: [] for form in sums}
     for number, held in enumerate(holders):
         while held:

@@ -8,7 +8,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from revsynth.logic.and_reduction import fewest_ands
-from revsynth.logic.and_reduction.conjuncts import Equations, conjunction, propagate_conjuncts
+from revsynth.logic.and_reduction.conjuncts import Equations, Gates, propagate_conjuncts
 from revsynth.logic.and_reduction.form_builder import FormBuilder
 from revsynth.logic.equivalence import prove_equal
 from revsynth.logic.network import Network
@@ -79,7 +79,7 @@ def test_terms_of_a_tree_read_elsewhere_stay_whole() -> None:
     root = b.and_(b.and_(v[2], v[3]), shared)
     network = b.build([root, shared])
     literal = int(network.outputs[0])
-    assert conjunction(network, literal) == [v[2], v[3], int(network.outputs[1])]
+    assert Gates(network).conjunction(literal) == [v[2], v[3], int(network.outputs[1])]
 
 
 def test_equations_reduce_to_one_form() -> None:
@@ -120,8 +120,8 @@ def test_an_odd_product_has_odd_factors() -> None:
     after = propagate_conjuncts(fewest_ands(network, effort="low", by_values=False))
     literal = int(after.outputs[0])
     lowest = {2 * 1, 2 * 7}
-    assert lowest <= set(conjunction(after, literal))
-    others = [term for term in conjunction(after, literal) if term not in lowest]
+    assert lowest <= set(Gates(after).conjunction(literal))
+    others = [term for term in Gates(after).conjunction(literal) if term not in lowest]
     builder = NetworkBuilder(after.inputs)
     here, _ = builder.copy_nodes(after, [2 * i for i in range(1, after.inputs + 1)])
     rest = builder.build([here[term >> 1] ^ (term & 1) for term in others])
