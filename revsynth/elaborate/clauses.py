@@ -13,7 +13,7 @@ from revsynth.logic.network_builder import NetworkBuilder
 from revsynth.logic.network_function import NetworkFunction
 from revsynth.spec.model import Clauses
 
-RUNS = {"low": (20_000,), "normal": (100_000,), "high": (100_000, 300_000, 600_000)}
+RUNS = {"low": (20_000,), "normal": (80_000, 80_000), "high": (100_000, 300_000, 600_000)}
 """Steps of the runs of annealing, by effort: about a microsecond each."""
 
 

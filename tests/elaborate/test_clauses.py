@@ -129,8 +129,8 @@ def test_planted_clauses_need_few_ands() -> None:
         (20, 91, 1, 105),
         (20, 91, 2, 102),
         (20, 91, 3, 104),
-        (50, 200, 1, 299),
-        (50, 200, 2, 286),
+        (50, 200, 1, 300),
+        (50, 200, 2, 284),
     ):
         clauses, model = planted(variables, size, seed)
         networks = dict(clause_networks(Clauses(variables, clauses)))

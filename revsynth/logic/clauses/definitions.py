@@ -4,12 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
+from random import Random
 
 from revsynth.logic.clauses.gates import Gate
 from revsynth.logic.clauses.linear_forms import Form, Forms
 
 MOST_VISITS = 20_000_000
 """Definitions that are looked through for circles; beyond, variables stay free."""
+ATTEMPTS = 8
+ATTEMPT_VISITS = 2_000_000
+"""No further attempt is made after so many."""
 
 
 @dataclass(frozen=True)
@@ -31,8 +35,14 @@ def choose_definitions(gates: Sequence[Gate], variables: Iterable[int]) -> Defin
     """
     every = sorted(variables)
     budget = [MOST_VISITS]
-    tries = [_choose(gates, prefer, budget) for prefer in (1, -1)]
-    best = _in_order(max(tries, key=len))
+    best: dict[int, Gate] = {}
+    for attempt in range(ATTEMPTS):
+        chosen = _choose(gates, attempt, budget)
+        if len(chosen) > len(best):
+            best = chosen
+        if attempt and budget[0] < MOST_VISITS - ATTEMPT_VISITS:
+            break
+    best = _in_order(best)
     used = {id(gate) for gate in best.values()}
     unused = [gate for gate in gates if gate.kind == "sum" and id(gate) not in used]
     _eliminate(best, unused, budget)
@@ -57,20 +67,22 @@ def _eliminate(chosen: dict[int, Gate], sums: Sequence[Gate], budget: list[int])
                 break
 
 
-def _choose(gates: Sequence[Gate], prefer: int, budget: list[int]) -> dict[int, Gate]:
+def _choose(gates: Sequence[Gate], attempt: int, budget: list[int]) -> dict[int, Gate]:
     """Gates of few possible outputs first; of several possible ones that which fewest other gates define.
 
-    prefer: 1 for the highest variable at a tie, -1 for the lowest.
+    attempt: 0 takes the highest variable at a tie, 1 the lowest, others any, and gates in any order.
     """
     makers: dict[int, int] = {}
     for gate in gates:
         for output in gate.outputs:
             makers[output] = makers.get(output, 0) + 1
     chosen: dict[int, Gate] = {}
-    numbered = sorted(range(len(gates)), key=lambda number: (len(gates[number].outputs), number))
-    for number in numbered:
-        gate = gates[number]
-        for output in sorted(gate.outputs, key=lambda output: (makers[output], -prefer * output)):
+    random = Random(attempt).random
+    rank = {output: (-output, output)[attempt] if attempt < 2 else random() for output in makers}
+    numbers = [number if attempt < 2 else random() for number in range(len(gates))]
+    for _, _, place in sorted((len(gate.outputs), numbers[i], i) for i, gate in enumerate(gates)):
+        gate = gates[place]
+        for output in sorted(gate.outputs, key=lambda output: (makers[output], rank[output])):
             if output not in chosen and not _depends(gate.operands(output), output, chosen, budget):
                 chosen[output] = gate
                 break

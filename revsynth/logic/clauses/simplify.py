@@ -6,6 +6,7 @@ The last two as in Eén, Biere, "Effective preprocessing in SAT through variable
 
 from __future__ import annotations
 
+from collections import deque
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from typing import TypeAlias
@@ -108,35 +109,67 @@ def without_subsumed(clauses: Sequence[Clause]) -> list[Clause]:
 
 
 def strengthened(clauses: Sequence[Clause]) -> list[Clause]:
-    """Drop literals that another clause makes superfluous, and clauses that others imply, until nothing
+    """Drop clauses that others imply, and literals that another clause makes superfluous, until nothing
     changes.
 
-    With (v or c) and (not v or d), c part of d, the second says no more than d. The models stay the same.
+    With (v or c) and (not v or d), c part of d, the second says no more than d. The models stay the same,
+    and so does the order of the clauses.
     """
-    found: dict[Clause, None] = dict.fromkeys(clauses)
-    visits = 0
-    changed = True
-    while changed and visits <= MOST_VISITS:
-        changed = False
-        listed = without_subsumed(list(found))
-        found = dict.fromkeys(listed)
-        occurs: dict[int, list[Clause]] = {}
-        for clause in listed:
-            for literal in clause:
-                occurs.setdefault(literal, []).append(clause)
-        for clause in listed:
-            for literal in clause:
-                others = set(clause) - {literal}
-                near = occurs.get(-literal, [])
-                visits += len(near)
-                if visits > MOST_VISITS:
-                    break
-                for other in near:
-                    if other in found and others <= set(other):
-                        del found[other]
-                        found[tuple(entry for entry in other if entry != -literal)] = None
-                        changed = True
-    return list(found)
+    return _Strengthening(clauses).run()
+
+
+class _Strengthening:
+    """Each clause is held against those that share a literal with it, again when it has become shorter."""
+
+    def __init__(self, clauses: Sequence[Clause]) -> None:
+        self.sets: list[frozenset[int] | None] = [frozenset(clause) for clause in clauses]
+        self.occurs: dict[int, dict[int, None]] = {}
+        for number, clause in enumerate(clauses):
+            for entry in clause:
+                self.occurs.setdefault(entry, {})[number] = None
+        self.queue = deque(sorted(range(len(clauses)), key=lambda number: len(clauses[number])))
+        self.visits = 0
+
+    def run(self) -> list[Clause]:
+        while self.queue and self.visits < MOST_VISITS:
+            number = self.queue.popleft()
+            self.drop_longer(number)
+            for entry in sorted(self.sets[number] or ()):
+                self.shorten_others(number, entry)
+        return [tuple(sorted(clause)) for clause in self.sets if clause is not None]
+
+    def near(self, entries: Iterable[int]) -> list[int]:
+        """The clauses that hold the literal that fewest hold, ascending."""
+        lists: list[dict[int, None]] = [self.occurs.get(entry, {}) for entry in entries]
+        shortest: dict[int, None] = min(lists, key=len)
+        self.visits += len(shortest)
+        return sorted(shortest)
+
+    def drop_longer(self, number: int) -> None:
+        clause = self.sets[number]
+        if not clause:
+            return
+        for other in self.near(clause):
+            held = self.sets[other]
+            if other != number and held is not None and clause <= held:
+                self.change(other, None)
+
+    def shorten_others(self, number: int, entry: int) -> None:
+        clause = self.sets[number]
+        if clause is None or entry not in clause:
+            return
+        wanted = (clause - {entry}) | {-entry}
+        for other in self.near(wanted):
+            held = self.sets[other]
+            if held is not None and wanted <= held:
+                self.change(other, held - {-entry})
+                self.queue.append(other)
+
+    def change(self, number: int, clause: frozenset[int] | None) -> None:
+        """Put a shorter clause, or none, in the place of one."""
+        for entry in (self.sets[number] or frozenset()) - (clause or frozenset()):
+            del self.occurs[entry][number]
+        self.sets[number] = clause
 
 
 @dataclass(frozen=True)
