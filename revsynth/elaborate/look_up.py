@@ -36,7 +36,7 @@ def look_up(builder: NetworkBuilder, index: Sequence[Literal], tables: Sequence[
 
 
 def _best_split(bits: int, tables: Sequence[int]) -> tuple[int, int]:
-    """How many index bits are lower, for the least sum of selections and products; how many gates it takes."""
+    """How many index bits are lower, for the fewest selections and products, and the gates it takes."""
     best, least, gates = 0, -1, 0
     for lower in range(min(bits, MOST_PRODUCT_BITS) + 1):
         choices, leaves = _choices(bits, lower, tables)

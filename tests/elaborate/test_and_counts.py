@@ -103,3 +103,11 @@ def test_rotations_take_one_selection_a_bit_and_bit_of_the_count(join: str) -> N
 def test_min_and_max_share_their_selections() -> None:
     assert output("max(a, b) * 256 + min(a, b)", 16, a=8, b=8).ands == 16
     assert output("max(a, b) * 2 + min(a, b)", 2, a=1, b=1).ands == 1
+
+
+def test_sums_compared_again_are_added_up_once() -> None:
+    """n for the sum, and n each for its comparisons."""
+    assert predicate("a + b == 3 or a + b == 5 or a + b == 9", a=8, b=8).ands <= 8 + 3 * 8 + 2
+    assert predicate("popcount(x) >= 5 and popcount(x) <= 9", x=31).ands <= 26 + 2 * 4 + 1
+    assert predicate("any(a + b == i * i for i in range(1, 6))", a=8, b=8).ands <= 8 + 5 * 8 + 4
+    assert predicate("3 < a + b < 100", a=8, b=8).ands <= 8 + 2 * 8 + 1
