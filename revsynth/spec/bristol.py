@@ -60,7 +60,8 @@ class _Reader:
         self.signals = {wire: 2 * (wire + 1) for wire in range(self.bits)}
         found = 0
         for tokens in self.lines:
-            self.gate(tokens)
+            if not self.plain_gate(tokens):
+                self.gate(tokens)
             found += 1
         if found != gates:
             raise SpecError(
@@ -90,7 +91,25 @@ class _Reader:
             raise self.error(f"{what} value {widths.index(0)} has no wires: a width from 1 on is wanted")
         return widths
 
+    def plain_gate(self, tokens: list[str]) -> bool:
+        """Read an XOR or AND in which nothing is wrong, as nearly all lines are: it takes half the time."""
+        if len(tokens) != 6 or tokens[:2] != ["2", "1"] or tokens[5] not in ("XOR", "AND"):
+            return False
+        digits = "".join(tokens[2:5])
+        if not (digits.isascii() and digits.isdigit() and len(digits) <= 30):
+            return False
+        left, right = self.signals.get(int(tokens[2])), self.signals.get(int(tokens[3]))
+        made = int(tokens[4])
+        if left is None or right is None or made >= self.wires or made in self.signals:
+            return False
+        self.signals[made] = self.add("xor" if tokens[5] == "XOR" else "and", (left, right))
+        return True
+
     def gate(self, tokens: list[str]) -> None:
+        """Read any gate.
+
+        Raises SpecError where something is wrong.
+        """
         *numbers, name = tokens
         name = name.upper()
         if name not in _SHAPES and name != "MAND":
