@@ -14,9 +14,10 @@ from revsynth.logic.network import Network
 from revsynth.options import Aim, Oracle
 from revsynth.synthesis.interface import Block, Progress, Task, silent
 from revsynth.synthesis.scratch.blocks import cnots
+from revsynth.synthesis.scratch.curve import curve
 from revsynth.synthesis.scratch.from_table import network_function
 from revsynth.synthesis.scratch.planner import SMALL_ANDS, Planner
-from revsynth.synthesis.scratch.realise import held, planned
+from revsynth.synthesis.scratch.realise import Point, held, planned
 
 MOST_TABLE_INPUTS = 16
 """Tables of more inputs are not turned into networks here."""
@@ -94,6 +95,16 @@ class FromNetwork:
 
 
 NETWORK = FromNetwork()
+
+
+def trade_off(task: Task, progress: Progress = silent) -> list[Point]:
+    """The curve of qubits against T gates for a task, ANDs reduced as in synthesis (see `scratch.curve`).
+
+    A task with `lines` set to the qubits of a point is given a block as good. `task.lines` plays no part.
+    """
+    network = candidates(task, progress)[0]
+    progress(f"network: plans for {network.ands} ANDs from few lines to many")
+    return curve(network, task.oracle, task.effort, task.seed)
 
 
 def candidates(task: Task, progress: Progress = silent) -> list[Network]:

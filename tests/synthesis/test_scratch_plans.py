@@ -18,7 +18,7 @@ from revsynth.logic.network_function import NetworkFunction
 from revsynth.logic.network_simulation import simulate
 from revsynth.options import Oracle
 from revsynth.synthesis.interface import Block, Task
-from revsynth.synthesis.network import NETWORK
+from revsynth.synthesis.network import NETWORK, trade_off
 from revsynth.synthesis.scratch import homes, linear_state
 from revsynth.synthesis.scratch.blocks import block_of
 from revsynth.synthesis.scratch.checkpoints import (
@@ -29,7 +29,6 @@ from revsynth.synthesis.scratch.checkpoints import (
     nested,
     one_level_ands,
 )
-from revsynth.synthesis.scratch.curve import curve
 from revsynth.synthesis.scratch.game import Game
 from revsynth.synthesis.scratch.landing import Landing, landed
 from revsynth.synthesis.scratch.orders import RULES, ordered
@@ -279,14 +278,17 @@ def test_the_hash_network_is_that_of_the_standard() -> None:
 @pytest.mark.parametrize("oracle", [*PLANNED_FORMS, "compute"])
 def test_the_curve_falls_and_a_task_reaches_its_points(oracle: Oracle) -> None:
     network = product_equals(4, 143) if oracle == "phase" else product(4)
-    points = curve(network, oracle, effort="low")
+    points = trade_off(Task(None, oracle, effort="low", network=NetworkFunction(network)))
     assert len(points) >= 3
     for one, other in pairwise(points):
         assert one.qubits < other.qubits
-        assert one.t_measured > other.t_measured
+        assert one.t_measured > other.t_measured or (other is points[-1] and one.cnots > other.cnots)
     for point in (points[0], points[len(points) // 2], points[-1]):
         task = Task(None, oracle, lines=point.qubits, effort="low", network=NetworkFunction(network))
-        assert NETWORK.synthesise(task)[0].cascade.lines <= point.qubits
+        blocks_there = NETWORK.synthesise(task)
+        assert all(block.cascade.lines <= point.qubits for block in blocks_there)
+        products = min(int(np.count_nonzero(np.diff(block.cascade.offset) == 2)) for block in blocks_there)
+        assert 4 * products <= point.t_unitary + 4 * len(network.outputs)
 
 
 def test_plans_are_the_same_again() -> None:

@@ -14,6 +14,8 @@ STEPS = 24
 def curve(network: Network, oracle: Oracle, effort: Effort = "normal", seed: int = 0) -> list[Point]:
     """Points of which no other has both fewer qubits and fewer T gates (measured), fewest qubits first.
 
+    Where another plan has fewer CNOTs than the last of these, that of the fewest comes behind.
+
     oracle: `phase`, `bit`, `fresh` or `compute`. A task with `lines` set to a point's qubits gives a block as
     good.
     """
@@ -31,4 +33,5 @@ def curve(network: Network, oracle: Oracle, effort: Effort = "normal", seed: int
     for point in sorted(found, key=lambda point: (point.qubits, point.t_measured, point.cnots)):
         if not kept or point.t_measured < kept[-1].t_measured:
             kept.append(point)
-    return kept
+    last = min(found, key=lambda point: (point.cnots, point.t_measured, point.qubits))
+    return kept if last.cnots >= kept[-1].cnots else [*kept, last]

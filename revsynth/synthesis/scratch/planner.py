@@ -29,7 +29,7 @@ from revsynth.synthesis.scratch.landing import Landing, landed
 from revsynth.synthesis.scratch.orders import RULES, Rule, ordered
 from revsynth.synthesis.scratch.pebbles import POLICIES, pebble
 from revsynth.synthesis.scratch.plan import Plan, hold_everything, plan_of
-from revsynth.synthesis.scratch.units import Units, selected, units_of, with_tails, without_sums
+from revsynth.synthesis.scratch.units import Units, cuts_of_ands, selected, units_of, with_tails
 
 SMALL_ANDS = 3_000
 """Up to so many ANDs all cuts and orders are tried, above only those that keep sums on lines."""
@@ -112,14 +112,9 @@ class Planner:
         return found
 
     def _cuts(self, small: bool) -> Iterator[Units]:
-        with_sums = with_tails(units_of(self.network, 2))
         if small:
-            try:
-                yield without_sums(with_sums)
-                yield units_of(self.network, None)
-            except OverflowError:
-                pass
-        yield with_sums
+            yield from cuts_of_ands(self.network)
+        yield with_tails(units_of(self.network, 2))
         if not small:
             yield with_tails(units_of(self.network, 3))
 

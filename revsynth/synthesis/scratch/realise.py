@@ -18,7 +18,7 @@ from revsynth.synthesis.scratch.orders import Rule, ordered
 from revsynth.synthesis.scratch.plan import COMPUTE, act_ands, hold_everything
 from revsynth.synthesis.scratch.planner import Found
 from revsynth.synthesis.scratch.sheet import Sheet
-from revsynth.synthesis.scratch.units import Units, selected, units_of, with_tails, without_sums
+from revsynth.synthesis.scratch.units import Units, cuts_of_ands, selected, units_of
 
 LAZY_ANDS = 3_000
 """Up to so many ANDs the invertible linear state is tried, whose work grows with their square."""
@@ -83,7 +83,7 @@ def held(network: Network, oracle: Oracle, positive: bool = False) -> list[Reali
         units, landing = prepared(units_of(network, threshold))
         sheet = homes.carry_out(units, hold_everything(units).operations, landing, phase)
         found.append(realised(units, sheet, "hold"))
-    for cut in _cuts_without_sums(network):
+    for cut in cuts_of_ands(network) if network.ands <= LAZY_ANDS else ():
         trials: list[Realised] = []
         for rule, look_ahead, hinted in _trials(network.ands):
             moved = cut if rule == "given" else selected(cut, ordered(cut, rule))
@@ -93,16 +93,6 @@ def held(network: Network, oracle: Oracle, positive: bool = False) -> list[Reali
             trials.append(realised(units, sheet, "lazy"))
         found.append(min(trials, key=lambda one: cnots(one.block)))
     return sorted(found, key=lambda one: (cnots(one.block), one.block.cascade.lines))
-
-
-def _cuts_without_sums(network: Network) -> list[Units]:
-    """The ways to cut in which every unit is an AND; none for large networks."""
-    if network.ands > LAZY_ANDS:
-        return []
-    try:
-        return [units_of(network, None), without_sums(with_tails(units_of(network, 2)))]
-    except OverflowError:
-        return []
 
 
 def _trials(ands: int) -> list[tuple[Rule, int, bool]]:

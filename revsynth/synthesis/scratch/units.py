@@ -19,8 +19,8 @@ Sum = tuple[Variable, ...]
 
 LONGEST_SUM = 48
 """Sums of more variables get a line of their own, wherever XORs may have lines and two gates read it."""
-LONGEST_ALL = 20_000_000
-"""Variables in all sums together, at most."""
+LONGEST_ALL = (20_000, 32)
+"""Variables in all sums together, at most, where no XOR has a line: so many, and so many for each gate."""
 
 
 @dataclass(frozen=True)
@@ -84,7 +84,7 @@ class Units:
 def units_of(network: Network, xors_from: int | None) -> Units:
     """The units of a network; XORs that at least `xors_from` gates or outputs read are units (None: none).
 
-    Raises OverflowError where sums would be too long (only with None, or beyond LONGEST_ALL variables).
+    Raises OverflowError where sums would be too long, which only happens with None (see LONGEST_ALL).
     """
     return _Extraction(network.reachable(), xors_from).units()
 
@@ -101,6 +101,7 @@ class _Extraction:
         self.flips: list[int] = []
         self.hints: list[frozenset[int]] = []
         self.total = 0
+        self.most = LONGEST_ALL[0] + LONGEST_ALL[1] * network.gates
 
     def units(self) -> Units:
         network = self.network
@@ -127,12 +128,12 @@ class _Extraction:
         )
 
     def _xor(self, held: frozenset[int], readers: int) -> frozenset[int]:
-        self.total += len(held)
-        if self.total > LONGEST_ALL:
-            raise OverflowError("the sums of the network are too long")
         if len(held) <= 1 or readers < 2:
             return held
         if self.xors_from is None:
+            self.total += len(held)
+            if self.total > self.most:
+                raise OverflowError("the sums of the network are too long")
             self.hints.append(held)
         elif readers >= self.xors_from or len(held) > LONGEST_SUM:
             return self._unit(frozenset(), frozenset(), held, 0)
@@ -281,11 +282,12 @@ def selected(units: Units, order: Sequence[int]) -> Units:
 def without_sums(units: Units) -> Units:
     """The same ANDs (with their tails), all units that are sums alone put into what reads them.
 
-    Raises OverflowError where sums would be too long.
+    Raises OverflowError where sums would be too long (see LONGEST_ALL).
     """
     n = units.inputs
     whole: list[Sum] = [(v,) for v in range(n)]
-    total = 0
+    before = sum(len(units.reads(unit)) for unit in range(len(units)))
+    total, most = 0, LONGEST_ALL[0] + LONGEST_ALL[1] * before
 
     def expanded(held: Sum) -> Sum:
         if len(held) == 1:
@@ -302,7 +304,7 @@ def without_sums(units: Units) -> Units:
         )
         whole.append((n + unit,) if left[unit] else tail[unit])
         total += len(left[unit]) + len(right[unit]) + len(tail[unit])
-        if total > LONGEST_ALL:
+        if total > most:
             raise OverflowError("the sums of the network are too long")
     acts = [
         Act(a.outputs, expanded(a.left), expanded(a.right) if a.right else (), a.flips) for a in units.acts
@@ -310,3 +312,14 @@ def without_sums(units: Units) -> Units:
     hints = dict.fromkeys(whole[n + u] for u in range(len(units)) if not left[u])
     plain = Units(n, left, right, tail, units.flips, acts, units.constants, [h for h in hints if len(h) > 1])
     return selected(plain, [unit for unit in range(len(units)) if plain.is_and(unit)])
+
+
+def cuts_of_ands(network: Network) -> list[Units]:
+    """Ways to cut in which every unit is an AND: with tails, and without; too long ones are left out."""
+    found: list[Units] = []
+    for tails in (True, False):
+        try:
+            found.append(without_sums(with_tails(units_of(network, 2))) if tails else units_of(network, None))
+        except OverflowError:
+            continue
+    return found
