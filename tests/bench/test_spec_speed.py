@@ -6,6 +6,7 @@ import random
 
 import pytest
 
+from revsynth.spec.bristol import parse_bristol
 from revsynth.spec.dimacs import parse_dimacs
 from revsynth.spec.model import Predicate, Spec, Word
 from revsynth.spec.toml_reader import parse_toml
@@ -43,3 +44,22 @@ def test_a_formula_of_5000_terms_over_16_bits(benchmark) -> None:
 def test_a_permutation_of_16_bits(benchmark) -> None:
     text = '[inputs]\na = 8\nb = 8\n[permutation]\nmap = { a = "(a + 3 * b) % 256", b = "b ^ 77" }\n'
     assert benchmark(lambda: understand(parse_toml(text))).function.outputs == 16
+
+
+def test_reading_a_cnf_of_4_megabytes(benchmark) -> None:
+    rng = random.Random(4)
+    lines = [
+        " ".join(str(rng.randint(1, 50_000) * rng.choice((1, -1))) for _ in range(3)) for _ in range(210_000)
+    ]
+    text = "p cnf 50000 210000\n" + " 0\n".join(lines) + " 0\n"
+    assert benchmark.pedantic(lambda: parse_dimacs(text), rounds=2).input_bits == 50_000
+
+
+def test_reading_a_netlist_of_100000_gates(benchmark) -> None:
+    rng = random.Random(5)
+    lines = [
+        f"2 1 {rng.randrange(w)} {rng.randrange(w)} {w} {rng.choice(('XOR', 'AND'))}"
+        for w in range(512, 100_512)
+    ]
+    text = "100000 100512\n1 512\n1 64\n\n" + "\n".join(lines) + "\n"
+    assert benchmark.pedantic(lambda: parse_bristol(text), rounds=2).input_bits == 512
