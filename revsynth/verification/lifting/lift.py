@@ -6,16 +6,16 @@ import math
 from collections.abc import Sequence
 
 import numpy as np
-from numpy.typing import NDArray
 
-from revsynth.circuit.model import Circuit, Kind
-from revsynth.verification.elementary import ANGLE, FLIP, HADAMARD, MEASURE, RESET, TURN, Step, elementary
+from revsynth.circuit.model import Circuit
+from revsynth.verification.elementary import elementary
 from revsynth.verification.lifting.graph import Graph
 from revsynth.verification.lifting.linear_proofs import GuessError
 from revsynth.verification.lifting.model import NO_PATHS, Lifted, NotClosedError, Value
 from revsynth.verification.lifting.parities import TRUE, Literal, Parities
 from revsynth.verification.lifting.path_sum import PathSum
 from revsynth.verification.lifting.residue import counted, simplified
+from revsynth.verification.steps import ANGLE, FLIP, HADAMARD, MEASURE, TURN, Steps
 
 ATTEMPTS = 5
 """Wrong guesses from signatures are about as likely as 2**-20 in the largest circuits."""
@@ -25,9 +25,6 @@ MOST_PHASES = 10_000
 
 TOLERANCE = 1e-11
 """An angle this close to a multiple of pi/8, in radians, is that multiple."""
-
-_X, _Z, _H, _MEASURE = int(Kind.X), int(Kind.Z), int(Kind.H), int(Kind.MEASURE)
-_EIGHTHS = {int(Kind.S): 2, int(Kind.SDG): 6, int(Kind.T): 1, int(Kind.TDG): 7}
 
 
 def lift(circuit: Circuit, start: Sequence[Literal], variables: int) -> Lifted:
@@ -59,76 +56,72 @@ class _Lifting:
 
     def run(self) -> Lifted:
         try:
-            self._gates(self._other_steps())
+            self._go(elementary(self.circuit))
             self.at = -1
             return self._close()
         except NotClosedError as error:
             error.operation = self.at
             raise
 
-    def _other_steps(self) -> dict[int, list[Step]]:
-        """Elementary steps of the operations that `_gates` does not do itself."""
-        circuit = self.circuit
-        bare = (np.diff(circuit.offset) == 1) & (circuit.condition < 0)
-        simple = np.isin(circuit.kind, [_X, _Z])
-        simple |= np.isin(circuit.kind, [_H, _MEASURE, *_EIGHTHS]) & bare
-        others = np.flatnonzero(~simple)
-        found: dict[int, list[Step]] = {index: [] for index in others.tolist()}
-        if len(others):
-            for step in elementary(part_of(circuit, others)):
-                found[int(others[step.source])].append(step)
-        return found
-
-    def _gates(self, others: dict[int, list[Step]]) -> None:
-        """Every operation in order. The commonest are written out here: this loop takes the time."""
+    def _go(self, steps: Steps) -> None:
+        """Every step in order. The commonest are written out here: this loop takes the time."""
         state, xor = self.state, self.parities.xor
         literal, paths, plain = state.literal, state.paths, state.plain
-        operand = self.circuit.operand.tolist()
+        operand = steps.literal.tolist()
+        columns = (steps.act, steps.offset[1:], steps.target, steps.amount, steps.condition)
         end = 0
-        columns = (self.circuit.kind, self.circuit.offset[1:], self.circuit.condition)
-        for index, (kind, stop, condition) in enumerate(zip(*(c.tolist() for c in columns), strict=True)):
+        for index, (act, stop, target, amount, condition) in enumerate(
+            zip(*(column.tolist() for column in columns), strict=True)
+        ):
             begin, end = end, stop
-            target = operand[end - 1]
-            if index in others:
-                self.at = index
-                for step in others[index]:
-                    self._step(step)
-            elif kind == _X and condition < 0 and end - begin == 2:
-                control = operand[begin]
-                literal[target] = xor(literal[target], literal[control >> 1] ^ (control & 1))
-                if paths[control >> 1]:
-                    state.change(target, paths[control >> 1])
-            elif kind in _EIGHTHS:
-                eighths = _EIGHTHS[kind]
-                value = literal[target]
+            if act == HADAMARD and condition < 0:
+                state.hadamard(target)
+            elif end - begin > 1 or condition >= 0 or act > TURN:
+                self.at = int(steps.source[index])
+                self._other(act, operand[begin:end], target, steps, index)
+            elif act == FLIP and end == begin:
+                literal[target] ^= 1
+            elif act == FLIP:
+                control = operand[begin] >> 1
+                literal[target] = xor(literal[target], literal[control] ^ (operand[begin] & 1))
+                if paths[control]:
+                    state.change(target, paths[control])
+            elif end == begin:
+                state.sixteenths += 2 * amount
+            else:
+                target = operand[begin] >> 1
+                value = literal[target] ^ (operand[begin] & 1)
                 if paths[target] or value & 1:
-                    state.turn(Value(value, paths[target]), eighths)
+                    state.turn(Value(value, paths[target]), amount)
                 elif value:
                     node = value >> 1
-                    total = (plain.get(node, 0) + eighths) & 7
+                    total = (plain.get(node, 0) + amount) & 7
                     if total & 3:
                         plain[node] = total
                     else:
                         plain.pop(node, None)
                         if total:
                             state.add_sign(NO_PATHS, value)
-            elif kind == _H:
-                state.hadamard(target)
-            elif kind == _X and condition < 0 and end - begin == 1:
-                literal[target] ^= 1
-            elif kind == _MEASURE:
-                state.bits[int(self.circuit.bit[index])] = state.measure(target, index)
-            else:
-                self.at = index
-                self._controlled(kind, operand[begin : end - 1], target, condition)
 
-    def _controlled(self, kind: int, controls: Sequence[int], target: int, condition: int) -> None:
-        """X or Z on the target under controls and a condition."""
+    def _other(self, act: int, controls: Sequence[int], target: int, steps: Steps, index: int) -> None:
+        """A step with several literals or a condition, a measurement, or one that must be refused."""
         state = self.state
-        if kind == _X:
+        condition = int(steps.condition[index])
+        if act == FLIP:
             self._flip(controls, target, condition)
+        elif act == TURN:
+            factors = [*self._values(controls), *self._condition(condition)]
+            state.turn_product(factors, int(steps.amount[index]))
+        elif act == ANGLE and not len(controls) and condition < 0:
+            self._constant(float(steps.angle[index]))
+        elif act == ANGLE:
+            raise NotClosedError("a phase is no multiple of pi/4")
+        elif condition >= 0:
+            raise NotClosedError("a Hadamard, a measurement or a reset is under a condition")
+        elif act == MEASURE:
+            state.bits[int(steps.bit[index])] = state.measure(target, self.at)
         else:
-            state.negate([*self._values(controls), state.value(target), *self._condition(condition)])
+            state.reset(target, self.at)
 
     def _flip(self, controls: Sequence[int], target: int, condition: int) -> None:
         """A product of qubits in superposition may be none once path variables are summed away."""
@@ -165,27 +158,6 @@ class _Lifting:
             else:
                 factors.append(Value(self.parities.all_of(map(state.as_literal, bits)) ^ 1))
         return factors
-
-    def _step(self, step: Step) -> None:
-        """An elementary step."""
-        state = self.state
-        if step.act == FLIP:
-            self._flip(step.literals, step.target, step.condition)
-        elif step.act == TURN:
-            factors = [*self._values(step.literals), *self._condition(step.condition)]
-            state.turn_product(factors, step.amount)
-        elif step.act == ANGLE and not step.literals and step.condition < 0:
-            self._constant(step.angle)
-        elif step.act == ANGLE:
-            raise NotClosedError("a phase is no multiple of pi/4")
-        elif step.condition >= 0:
-            raise NotClosedError("a Hadamard, a measurement or a reset is under a condition")
-        elif step.act == HADAMARD:
-            state.hadamard(step.target)
-        elif step.act == MEASURE:
-            state.bits[step.bit] = state.measure(step.target, self.at)
-        elif step.act == RESET:
-            state.reset(step.target, self.at)
 
     def _constant(self, radians: float) -> None:
         """A constant phase, exact where it is a multiple of pi/8."""
@@ -238,26 +210,3 @@ class _Lifting:
         return [
             int(row[0] & np.uint64(1)) for row in graph.simulate(np.zeros((len(variables), 1), np.uint64))
         ]
-
-
-def part_of(circuit: Circuit, operations: NDArray[np.intp]) -> Circuit:
-    """A circuit of those operations alone, on the same qubits and bits."""
-    count = np.diff(circuit.offset)[operations]
-    offset = np.concatenate([[0], np.cumsum(count)])
-    place = np.repeat(circuit.offset[operations] - offset[:-1], count) + np.arange(offset[-1])
-    angles = {
-        number: circuit.angles[index]
-        for number, index in enumerate(operations.tolist())
-        if index in circuit.angles
-    }
-    return Circuit(
-        circuit.registers,
-        circuit.bit_registers,
-        circuit.kind[operations],
-        offset,
-        circuit.operand[place],
-        circuit.condition[operations],
-        circuit.bit[operations],
-        angles,
-        circuit.conditions,
-    )

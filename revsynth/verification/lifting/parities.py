@@ -10,9 +10,7 @@ certain.
 from __future__ import annotations
 
 import random
-from collections import deque
 from collections.abc import Iterable
-from typing import NamedTuple
 
 from revsynth.verification.lifting.linear_proofs import LinearProofs
 
@@ -31,12 +29,8 @@ MOST_RELATIVES = 4
 Literal = int
 
 
-class _Known(NamedTuple):
-    """The XOR of `nodes`, with that signature, times some node is the XOR of the nodes `product`."""
-
-    signature: int
-    nodes: tuple[int, ...]
-    product: tuple[int, ...]
+_Known = tuple[tuple[int, ...], tuple[int, ...]]
+"""(nodes, product): the XOR of `nodes` times some node is the XOR of the nodes `product`."""
 
 
 class Parities:
@@ -54,7 +48,8 @@ class Parities:
         self._node_of = {0: 0}
         self._sums: dict[int, Literal] = {}
         self._products: dict[int, Literal] = {}
-        self._related: dict[int, deque[_Known]] = {}
+        self._ands_of: dict[int, list[int]] = {}
+        self._ands_under: dict[int, list[int]] = {}
         self.third: dict[int, tuple[int, int, Literal]] = {}
         """(p, q, literal of p AND q) by the node p ^ q, for the first product of that kind."""
         self.proofs = LinearProofs(self.kind, self.left, self.right)
@@ -158,40 +153,45 @@ class Parities:
                 return 2 * q
             if self.xor(2 * self.left[q], 2 * self.right[q]) == 2 * p:
                 return FALSE
-        related = self._related.get(p)
-        if related is None:
+        related = self._related(p)
+        if not related:
             return None
-        signature, node_of = self._signature[q], self._node_of
+        signatures = self._signature
+        signature, own, node_of = signatures[q], signatures[p], self._node_of
         best, chosen = q, None
         for entry in related:
-            other = node_of.get(signature ^ entry.signature)
+            rest = signature
+            for node in entry[0]:
+                rest ^= signatures[node]
+            other = node_of.get(rest)
             if other is not None and other < best:
                 best, chosen = other, entry
+            other = node_of.get(rest ^ own)
+            if other is not None and other < best:
+                best, chosen = other, ((*entry[0], p), (*entry[1], p))
         if chosen is None:
             return None
-        self.proofs.claim_zero((q, best, *chosen.nodes))
-        known = self.parity(2 * node for node in chosen.product)
+        self.proofs.claim_zero((q, best, *chosen[0]))
+        known = self.parity(2 * node for node in chosen[1])
         return self.xor(self._product(p, best), known)
 
     def _atom(self, p: int, q: int, third: int) -> Literal:
         node = self._new(AND, p, q, self._random.getrandbits(SIGNATURE_BITS))
-        self._relate(p, [(q, (node,)), (node, (node,))])
-        self._relate(q, [(p, (node,)), (node, (node,))])
-        self._relate(third, [(p, (p, node)), (node, ())])
-        self._relate(node, [(p, (node,)), (q, (node,))])
+        for operand in (p, q):
+            self._ands_of.setdefault(operand, []).append(node)
+        self._ands_under.setdefault(third, []).append(node)
         return 2 * node
 
-    def _relate(self, p: int, known: list[tuple[int, tuple[int, ...]]]) -> None:
-        """Note the products of p with the nodes given, with their XOR, and with p added to each of these."""
-        (one, product), (other, other_product) = known
-        both = tuple(
-            node for node in (*product, *other_product) if (node in product) != (node in other_product)
-        )
-        entries = [((one,), product), ((other,), other_product), ((one, other), both)]
-        kept = self._related.setdefault(p, deque(maxlen=6 * MOST_RELATIVES))
-        for nodes, result in entries:
-            signature = 0
-            for node in nodes:
-                signature ^= self._signature[node]
-            kept.append(_Known(signature, nodes, result))
-            kept.append(_Known(signature ^ self._signature[p], (*nodes, p), (*result, p)))
+    def _related(self, p: int) -> list[_Known]:
+        """Known products of p: with nodes of ANDs that p is an operand of, the XOR of the operands, or it."""
+        found: list[_Known] = []
+        for node in self._ands_of.get(p, ())[-MOST_RELATIVES:]:
+            other = self.left[node] ^ self.right[node] ^ p
+            found += [((other,), (node,)), ((node,), (node,)), ((other, node), ())]
+        for node in self._ands_under.get(p, ())[-MOST_RELATIVES:]:
+            one = self.left[node]
+            found += [((one,), (one, node)), ((node,), ()), ((one, node), (one, node))]
+        if self.kind[p] == AND:
+            one, other = self.left[p], self.right[p]
+            found += [((one,), (p,)), ((other,), (p,)), ((one, other), ())]
+        return found
