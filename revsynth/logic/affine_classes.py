@@ -13,6 +13,7 @@ Boolean functions", Eurocrypt 1990 (from memory). `affine_class_search` finds th
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import cache, lru_cache
 
@@ -235,21 +236,35 @@ def _standard_images(width: int, key: int) -> tuple[Tables, NDArray[np.int64]]:
 
 
 def _meeting(width: int, key: int, wide: int, variant: int) -> tuple[NDArray[np.uint8], NDArray[np.uint8]]:
-    """Maps A of the class's own function r and B of the function f with r(A x) = f(B x) + affine."""
+    """Maps A of the class's own function r and B of the function f with r(A x) = f(B x) + affine.
+
+    Variant 0 compares all maps and takes the meeting with the fewest terms; others stop at the first one.
+    """
     standard, theirs = _standard_images(width, key)
-    chain = classes()[key].chain
-    for batch in range(variant, variant + 64):
-        maps = _maps(width, batch)
+    found = classes()[key]
+    needed = 64 + 4 * found.orbit // len(standard) if variant else 1 << 20
+    for maps in _batches(width, variant, needed):
         forms, first = np.unique(_image_forms(width, wide, maps), return_index=True)
         place = np.minimum(np.searchsorted(standard, forms), len(standard) - 1)
         hits = np.flatnonzero(standard[place] == forms)
         if not len(hits):
             continue
         mine, other = first[hits], theirs[place[hits]]
-        order = np.argsort(mine + other, kind="stable")[:_COMPARED]
+        order = np.argsort(mine + other, kind="stable")[: 1 if variant else _COMPARED]
         pairs = [(_maps(width, 0).images[other[i]], maps.images[mine[i]]) for i in order]
-        return min(pairs, key=lambda pair: substituted(chain, 5, _composed(width, *pair)).weight)
+        return min(pairs, key=lambda pair: substituted(found.chain, 5, _composed(width, *pair)).weight)
     raise AssertionError("random images of one class did not meet")
+
+
+def _batches(width: int, variant: int, needed: int) -> Iterator[_Maps]:
+    """Maps to try, batch by batch, `needed` at once; every variant begins elsewhere."""
+    batch = variant // 32
+    start = _IMAGES[width] // 32 * (variant % 32)
+    for number in range(batch, batch + 64):
+        maps = _maps(width, number)
+        for begin in range(start, len(maps.images), needed):
+            yield _Maps(maps.images[begin : begin + needed], maps.points[begin : begin + needed])
+        start = 0
 
 
 def _composed(width: int, forward: NDArray[np.uint8], back: NDArray[np.uint8]) -> list[Sum]:
