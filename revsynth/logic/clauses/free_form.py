@@ -32,14 +32,17 @@ class FreeForm:
 def free_form(found: Conjunction, variables: Iterable[int], runs: Runs, seed: int) -> FreeForm:
     """A conjunction over its free variables, and the value of each variable over them.
 
-    `holds` is 1 where the extended assignment satisfies everything. Definitions give every defined variable a
-    value for all values of the free ones, and no model has another one: so the models of the conjunction and
-    the inputs at which the network is 1 correspond one to one. One variable stays free where all are defined.
+    `holds` is 1 where the extended assignment satisfies everything. Definitions give every defined variable
+    a value for all values of the free ones, and no model has another one: so the models of the conjunction
+    and the inputs at which the network is 1 correspond one to one. One variable stays free where all are
+    defined, and where there is no model.
     """
     every = sorted(variables)
     merged = merge_equal(found)
     found = merged.found
     fixed = {abs(unit): TRUE if unit > 0 else FALSE for unit in found.units}
+    if not found.consistent:
+        fixed = dict.fromkeys(every, FALSE)
     gates = find_gates(found)
     kept = [variable for variable in every if variable not in fixed and variable not in merged.equals]
     definitions = choose_definitions(gates, kept)
