@@ -78,7 +78,7 @@ class FromNetwork:
         # Outputs of `compute` start in 0 and its garbage may stay: either no mirror is run, and products are
         # added to outputs, or outputs are landed on and everything is cleaned up, which can do with less.
         forms: tuple[Oracle, ...] = ("compute", "fresh") if task.oracle == "compute" else (task.oracle,)
-        bare = _bare_lines(task)
+        bare, positive = _bare_lines(task), task.controls == "positive"
         blocks: list[Block] = []
         for form in forms:
             planner = Planner(network, form, task.effort, task.seed)
@@ -88,10 +88,22 @@ class FromNetwork:
             progress(f"network: planning {network.ands} ANDs on {scratch} scratch lines")
             plans = planner.best(scratch)[: 2 if network.ands <= SMALL_ANDS else 1]
             for plan in plans:
-                blocks.extend(one.block for one in planned(plan, form, task.controls == "positive"))
+                blocks.extend(one.block for one in planned(plan, form, positive))
+            if plans and task.lines is not None:
+                blocks.extend(self._with_spare(planner, blocks[-1], scratch, task))
             if not plans:
                 misses.append(bare + planner.least_scratch())
         return [block for block in blocks if task.lines is None or block.cascade.lines <= task.lines]
+
+    def _with_spare(self, planner: Planner, block: Block, scratch: int, task: Task) -> list[Block]:
+        """Sums take over lines where they can, which plans do not count: a plan for the lines left over."""
+        spare = (task.lines or 0) - block.cascade.lines
+        if task.aim == "qubits" or spare < max(2, scratch // 50):
+            return []
+        plans = planner.best(scratch + spare)[:1]
+        return [
+            one.block for plan in plans for one in planned(plan, planner.oracle, task.controls == "positive")
+        ]
 
 
 NETWORK = FromNetwork()

@@ -1,16 +1,15 @@
-"""Networks for the planner's tests, built straight: sums, products, clauses, and SHA-256."""
+"""Networks for the planner's tests, built straight: sums, products, clauses, a hash predicate."""
 
 from __future__ import annotations
 
 import random
 from collections.abc import Sequence
-from functools import cache
 
 from revsynth.logic.network import FALSE, Literal, Network
 from revsynth.logic.network_builder import NetworkBuilder
+from tests import sha256_network
 
 Word = list[Literal]
-MASK = (1 << 32) - 1
 
 
 def sum_equals(bits: int, value: int) -> Network:
@@ -121,82 +120,9 @@ def factored_clauses(variables: int, clauses: Sequence[tuple[int, ...]]) -> Netw
     return b.build([build(frozenset(frozenset(c) for c in clauses))])
 
 
-@cache
-def _sha_constants() -> tuple[list[int], list[int]]:
-    """(round constants, initial value): first 32 bits of the fractions of roots of primes (FIPS 180-4)."""
-    primes: list[int] = []
-    number = 2
-    while len(primes) < 64:
-        if all(number % p for p in primes):
-            primes.append(number)
-        number += 1
-
-    def root(value: int, power: int) -> int:
-        low, high = 0, value + 1
-        while high - low > 1:
-            middle = (low + high) // 2
-            low, high = (middle, high) if middle**power <= value else (low, middle)
-        return low
-
-    cubes = [root(p << 96, 3) & MASK for p in primes]
-    squares = [root(p << 64, 2) & MASK for p in primes[:8]]
-    return cubes, squares
-
-
-def sha256(rounds: int = 64, words: int = 8) -> Network:
-    """The first words of the digest of one block (FIPS 180-4); input 32 w + i is bit i of its word w."""
-    constants, start = _sha_constants()
-    b = NetworkBuilder(512)
-
-    def constant(value: int) -> Word:
-        return [value >> i & 1 for i in range(32)]
-
-    def mixed(word: Word, turns: Sequence[int], shift: int | None = None) -> Word:
-        bits = []
-        for i in range(32):
-            parts = [word[(i + t) % 32] for t in turns]
-            if shift is not None and i + shift < 32:
-                parts.append(word[i + shift])
-            bits.append(b.parity(parts))
-        return bits
-
-    def total(*terms: Word) -> Word:
-        """Column by column with full adders (Wallace, IEEE Trans. Electronic Computers, 1964)."""
-        columns = [[term[i] for term in terms] for i in range(32)]
-        for i, column in enumerate(columns):
-            while len(column) > 1:
-                x, y = column.pop(0), column.pop(0)
-                z = column.pop(0) if column else FALSE
-                column.append(b.xor(b.xor(x, y), z))
-                if i < 31:
-                    columns[i + 1].append(b.majority(x, y, z))
-        return [column[0] for column in columns]
-
-    schedule = [_word(b, 32 * w, 32) for w in range(16)]
-    for t in range(16, rounds):
-        schedule.append(
-            total(
-                mixed(schedule[t - 2], (17, 19), 10), schedule[t - 7],
-                mixed(schedule[t - 15], (7, 18), 3), schedule[t - 16],
-            )
-        )  # fmt: skip
-    state = [constant(value) for value in start]
-    for t in range(rounds):
-        a, bb, c, d, e, f, g, h = state
-        choice = [b.mux(x, y, z) for x, y, z in zip(e, f, g, strict=True)]
-        most = [b.majority(x, y, z) for x, y, z in zip(a, bb, c, strict=True)]
-        first = total(h, mixed(e, (6, 11, 25)), choice, constant(constants[t]), schedule[t])
-        second = total(mixed(a, (2, 13, 22)), most)
-        state = [total(first, second), a, bb, c, total(d, first), e, f, g]
-    outputs: Word = []
-    for value, word in zip(start[:words], state, strict=False):
-        outputs.extend(total(constant(value), word))
-    return b.build(outputs)
-
-
 def sha256_first_word_is(value: int, rounds: int = 64) -> Network:
-    """Whether the first word of the digest has that value."""
-    digest = sha256(rounds, 1)
+    """Whether the first word of the digest of one block has that value (FIPS 180-4)."""
+    digest = sha256_network.build(rounds).select(range(32))
     b = NetworkBuilder(512)
     word = b.copy(digest, [b.input(i) for i in range(512)])
     return b.build([b.all_of(bit ^ 1 ^ (value >> i & 1) for i, bit in enumerate(word))])
