@@ -18,6 +18,8 @@ Literals = Mapping[int, Literal]
 """By variable, from 1 on."""
 Runs = Sequence[int]
 """Steps of each run of annealing; the best of all counts. Runs of fewer steps than clauses are left out."""
+MOVES_A_CLAUSE = 1000
+"""Steps of annealing for each clause at most: few clauses have no more orders to try."""
 WORTH = 1.25
 """ANDs that a factored clause costs, about: a window must cost less for each clause that it covers."""
 
@@ -73,7 +75,7 @@ def _factored(
     builder: NetworkBuilder, clauses: Sequence[Clause], literals: Literals, runs: Runs, seed: int
 ) -> Literal:
     greedy = greedy_orders(clauses)
-    long_enough = [moves for moves in runs if moves > len(clauses)]
+    long_enough = [min(moves, MOVES_A_CLAUSE * len(clauses)) for moves in runs if moves > len(clauses)]
     if not long_enough:
         return factor(builder, greedy, literals)
     tried = [annealed_orders(greedy, moves, seed + place) for place, moves in enumerate(long_enough)]
