@@ -19,7 +19,7 @@ from revsynth.gather import Gathering
 from revsynth.header import header_lines
 from revsynth.options import BuildOptions, Oracle
 from revsynth.placement import describe_placement, placement_comments
-from revsynth.qasm import Program, read, write
+from revsynth.qasm import Program, read, with_header, write
 from revsynth.qasm.names import register_names
 from revsynth.spec.model import Spec
 from revsynth.spec.understand import Understanding, understand
@@ -87,10 +87,11 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
 
     progress("verifying")
     circuit = best.circuit
-    verdict = _verify_text(understanding, oracle, best.block, circuit, options, progress)
+    bare = write(circuit, format=options.format, header=())
+    verdict = _verify_text(understanding, oracle, best.block, circuit, bare, options, progress)
     evidence = _accept(verdict, options)
     clock.lap("verify")
-    cost = best.cost.to_json(ands=and_count(best.block.cascade), cascade=len(best.block.cascade))
+    cost = best.cost.to_json(ands=and_count(best.block, oracle), cascade=len(best.block.cascade))
     header = header_lines(
         spec,
         oracle,
@@ -102,7 +103,7 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
         evidence=evidence,
         stopped_early=gathering.stopped_early,
     )
-    text = write(circuit, format=options.format, header=header)
+    text = with_header(bare, header, format=options.format)
     if not same_gates(read(text, source=spec.source).circuit, circuit):
         raise AssertionError("the text written is not the circuit that was verified")
     clock.lap("write")
@@ -185,11 +186,11 @@ def _verify_text(
     oracle: Oracle,
     block: Block,
     circuit: Circuit,
+    bare: str,
     options: BuildOptions,
     progress: Progress,
 ) -> Verdict:
     """Verify what a reader of the file would see. `plain` loses the registers: they are put back first."""
-    bare = write(circuit, format=options.format, header=())
     spec = understanding.spec
     program = read(bare, source=spec.source)
     if not same_gates(program.circuit, circuit):

@@ -2,6 +2,6 @@
 
 from revsynth.qasm.prepare import prepare
 from revsynth.qasm.reader import Program, read, read_file
-from revsynth.qasm.writer import write
+from revsynth.qasm.writer import with_header, write
 
-__all__ = ["Program", "prepare", "read", "read_file", "write"]
+__all__ = ["Program", "prepare", "read", "read_file", "with_header", "write"]

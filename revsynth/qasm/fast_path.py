@@ -7,8 +7,9 @@ statement appends depends on its text and the declared names alone, and names ar
 from __future__ import annotations
 
 import re
-from bisect import bisect_right
-from itertools import accumulate
+from itertools import chain
+
+import numpy as np
 
 from revsynth.circuit.model import Condition, Kind
 from revsynth.errors import CircuitFileError
@@ -33,6 +34,7 @@ _QUBIT = re.compile(_BIT)
 _BLANK = re.compile(r"[ \t]*")
 _ELSE = re.compile(r"\belse\b")
 _LONGEST = 4096
+_MOST_AT_ONCE = 4096
 _LONGEST_MEMORY = 256
 
 
@@ -45,13 +47,15 @@ class FastPath:
         self._interpreter = interpreter
         self._recorder = interpreter.recorder
         self._lines = lexer.text.split("\n")
-        self._starts = [0, *accumulate(len(line) + 1 for line in self._lines)]
+        lengths = np.fromiter(map(len, self._lines), dtype=np.int64, count=len(self._lines))
+        self._starts = np.concatenate([np.zeros(1, dtype=np.int64), np.cumsum(lengths + 1)])
         self._memory: dict[str, tuple[OpNumber, ...]] = {"": ()}
         self._heads: dict[str, tuple[Template, int]] = {}
         self._qubits: dict[str, int] = {}
         self._conditions: dict[str, Condition] = {}
         self._revision = 0
-        self._whole_branches = parser.version == 3 and _ELSE.search(lexer.text) is None
+        has_else = "else" in lexer.text and _ELSE.search(lexer.text) is not None
+        self._whole_branches = parser.version == 3 and not has_else
 
     def run(self) -> None:
         """Take lines until one needs the parser; leaves the lexer at the start of that line."""
@@ -62,27 +66,47 @@ class FastPath:
             self._revision = self._interpreter.gates.revision
             self._heads.clear()
             self._memory.clear()
-        memory, lines = self._memory, self._lines
-        extend = self._recorder.sequence.extend
         place = first
-        for place in range(first, len(lines)):
-            line = lines[place]
-            numbers = memory.get(line)
+        while place < len(self._lines):
+            place += self._known(place)
+            if place == len(self._lines):
+                break
+            numbers = self._memory.get(self._lines[place])
             if numbers is None:
-                numbers = self._take(line)
+                numbers = self._take(self._lines[place])
                 if numbers is None:
                     break
             if len(numbers) > 1:
-                self._interpreter.budget.operations(len(numbers), self._starts[place])
-            extend(numbers)
-        else:
-            place = len(lines)
-        self._lexer.jump(min(self._starts[place], len(self._lexer.text)))
+                self._interpreter.budget.operations(len(numbers), int(self._starts[place]))
+            self._recorder.sequence.extend(numbers)
+            place += 1
+        self._lexer.jump(min(int(self._starts[place]), len(self._lexer.text)))
+
+    def _known(self, place: int) -> int:
+        """Take the lines from a place on that were seen before and stand for one operation or none: how many.
+
+        They are looked up many at a time, twice as many each time that all of them are of this kind.
+        """
+        size, first = 1, place
+        while place < len(self._lines):
+            found: list[tuple[OpNumber, ...]] = []
+            for numbers in map(self._memory.get, self._lines[place : place + size]):
+                if numbers is None:
+                    break
+                found.append(numbers)
+            if max(map(len, found), default=0) > 1:
+                break
+            self._recorder.sequence.extend(chain.from_iterable(found))
+            place += len(found)
+            if len(found) < size:
+                break
+            size = min(2 * size, _MOST_AT_ONCE)
+        return place - first
 
     def line_start(self) -> int | None:
         """The number of the line that starts where the lexer is, if one does."""
         position = self._lexer.boundary()
-        line = bisect_right(self._starts, position) - 1
+        line = int(np.searchsorted(self._starts, position, side="right")) - 1
         return line if line < len(self._lines) and self._starts[line] == position else None
 
     def remember(self, line: int, numbers: list[OpNumber]) -> None:
@@ -96,11 +120,11 @@ class FastPath:
     def _next_line(self) -> int | None:
         """The line to start with: this one where nothing precedes the place, the next where none follows."""
         position = self._lexer.boundary()
-        line = bisect_right(self._starts, position) - 1
+        line = int(np.searchsorted(self._starts, position, side="right")) - 1
         if line >= len(self._lines):
             return None
         text = self._lines[line]
-        column = position - self._starts[line]
+        column = position - int(self._starts[line])
         if _blank_until(text, 0) >= column:
             return line
         return line + 1 if _blank_until(text, column) == len(text) else None

@@ -40,7 +40,7 @@ def write(circuit: Circuit, *, format: Format = "openqasm3", header: Sequence[st
     if problem is not None:
         raise UsageError(problem)
     _check_registers(circuit, format)
-    lines = [] if format == "plain" else [comment_line(text) for text in header]
+    lines: list[str] = []
     if format == "openqasm3":
         lines += ["OPENQASM 3.0;", 'include "stdgates.inc";']
         lines += [f"qubit[{register.size}] {register.name};" for register in circuit.registers]
@@ -54,7 +54,13 @@ def write(circuit: Circuit, *, format: Format = "openqasm3", header: Sequence[st
             lines += [f"creg {register.name}[{register.size}];" for register in circuit.bit_registers]
     lines += _Lines(circuit, format).all()
     lines.append("")
-    return "\n".join(lines)
+    return with_header("\n".join(lines), header, format=format)
+
+
+def with_header(text: str, header: Sequence[str], *, format: Format) -> str:
+    """A text that `write` gave without a header, with one: what `write` gives at once."""
+    opening = [] if format == "plain" else [comment_line(line) + "\n" for line in header]
+    return "".join([*opening, text])
 
 
 def comment_line(text: str) -> str:
