@@ -171,11 +171,15 @@ def test_slopes_are_what_they_say(case: tuple, data: st.DataObject) -> None:
     total = sum(phases.values())
     for number in range(64):
         assert (total - 2 * sums[number] - slope.constant - 4 * (quotient >> number & 1)) % 8 == 0
-    rest = slope.rest()
+    outer = data.draw(st.sampled_from([FALSE, *literals[-3:]])) ^ data.draw(st.integers(0, 1))
+    rest = slope.rest(outer)
     if rest is not None:
-        rows = tables(parities, variables, [literal for literal, _ in rest])
+        rows = tables(parities, variables, [literal for literal, _ in rest[0]])
+        outers, befores = tables(parities, variables, [outer, before])
         for number in range(64):
-            left = sum(c * (row >> number & 1) for (_, c), row in zip(rest, rows, strict=True))
+            left = sum(c * (row >> number & 1) for (_, c), row in zip(rest[0], rows, strict=True))
+            if rest[1]:
+                left += 4 * (outers >> number & (befores ^ quotient) >> number & 1)
             assert (left - sums[number]) % 8 == 0
 
 

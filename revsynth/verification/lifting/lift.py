@@ -199,6 +199,7 @@ class _Lifting:
             revealed=tuple(item for item in state.revealed if item[1] > TRUE),
             steady=tuple(steady),
             outcome_signs=tuple(item for item in outcome_signs if item[1] > TRUE),
+            random=any(state.measured),
         )
 
     def _at_zero(self, literals: Sequence[Literal]) -> list[int]:

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 from itertools import product
 
-from revsynth.verification.lifting.parities import AND, TRUE, Literal, Parities
+from revsynth.verification.lifting.parities import AND, FALSE, TRUE, Literal, Parities
 from revsynth.verification.lifting.residue import sign_of
 
 MOST_PARITIES = 7
@@ -82,8 +82,13 @@ def absorbed(planes: tuple[Plane, ...], straight: int) -> tuple[tuple[Product, .
 
 
 @lru_cache(maxsize=4096)
-def rest_beside(rest: tuple[int, ...], products: tuple[Product, ...]) -> Beside | None:
-    """`rest` as -2 times every product, a constant, and half turns; None where it is not that."""
+def rest_beside(
+    rest: tuple[int, ...], products: tuple[Product, ...], sign: tuple[int, ...] = ()
+) -> Beside | None:
+    """`rest` as -2 times every product, a constant, and half turns; None where it is not that.
+
+    sign: half turns by case that come on top. Where there are any, no product of three may be left.
+    """
     left = list(rest)
     for case in range(len(left)):
         for one, other, flip_one, flip_other in products:
@@ -95,6 +100,9 @@ def rest_beside(rest: tuple[int, ...], products: tuple[Product, ...]) -> Beside 
     if any(value & 3 for value in left):
         return None
     form = _normal_form([value >> 2 & 1 for value in left])
+    if sign:
+        form = form ^ _normal_form([value ^ sign[0] for value in sign])
+        products = ()
     # The product that is written, the last one, first: the qubit's other sign is a multiple of it.
     factors: list[int] = []
     for each in reversed(products):
@@ -223,6 +231,17 @@ class Local:
         terms = tuple((mask, c) for mask, (_, c) in zip(masks, items, strict=True))
         self.shape = solve(terms, len(self.basis))
 
+    def mask_of(self, literal: Literal) -> int | None:
+        """The basis elements whose XOR is a literal but for its complement; None if there are none."""
+        node = literal & ~1
+        mask = self._span.get(node)
+        if not self.first:
+            return mask
+        if mask is not None:
+            return mask << 1
+        mask = self._span.get(self.parities.xor(node, self.basis[0]))
+        return None if mask is None else mask << 1 | 1
+
     def element(self, mask: int) -> Literal:
         """The literal of an XOR of basis elements."""
         return self.parities.parity(self.basis[i] for i in range(mask.bit_length()) if mask >> i & 1)
@@ -242,7 +261,7 @@ class Local:
         assert self.shape is not None
         rows = alternating(self.shape.quotient)
         found: list[Plane] = []
-        erased = self._plane_of(before >> 1)
+        erased = self.plane_of(before >> 1)
         if erased and any(rows):
             found.append(erased)
             rows = peeled(rows, erased)
@@ -254,7 +273,7 @@ class Local:
             rows = peeled(rows, plane)
         return tuple(found)
 
-    def _plane_of(self, node: int) -> Plane | None:
+    def plane_of(self, node: int) -> Plane | None:
         """The operands of an AND, if both are sums of basis elements without the first one."""
         parities = self.parities
         if parities.kind[node] != AND:
@@ -293,6 +312,7 @@ class Slope:
 
     def __init__(self, parities: Parities, phases: dict[int, int], before: Literal) -> None:
         self.local = local = Local(parities, phases)
+        self._before = before
         self.constant = 0
         self.quotient: Literal | None = None
         self.products: list[tuple[Literal, Literal]] = []
@@ -327,21 +347,51 @@ class Slope:
         shape = self.local.shape
         return shape is None or any(mask & 1 and mask != 1 for mask in shape.quotient)
 
-    def rest(self) -> list[tuple[Literal, int]] | None:
-        """What is left without y as (literal, eighths) on products of Q; None where others are needed."""
-        shape = self.local.shape
+    def rest(self, outer: Literal = FALSE) -> tuple[list[tuple[Literal, int]], bool] | None:
+        """What is left without y as (literal, eighths) on products of Q; None where others are needed.
+
+        outer: the sign of `outer` times (what the qubit held before, XOR Q) may be taken in, which leaves
+        less: the second part says whether it is.
+        """
+        local, shape = self.local, self.local.shape
         if shape is None:
             return None
-        beside = rest_beside(shape.rest, self._products)
+        sign = self._outer_sign(shape, outer) if outer else ()
+        beside = rest_beside(shape.rest, self._products, sign) if sign else None
+        taken = beside is not None
+        if beside is None:
+            beside = rest_beside(shape.rest, self._products)
         if beside is None:
             return None
-        parities, element = self.local.parities, self.local.element
+        parities, element = local.parities, local.element
         found = [(element(beside.straight), 4)]
         found += [(TRUE, 2) for _, _, flip_one, flip_other in self._products if flip_one & flip_other]
+        found += [(TRUE, 4)] * (taken and sign[0])
         found += [(parities.and_(element(one), element(other)), 4) for one, other in beside.planes]
-        for pair, factor in zip(self.products, beside.factors, strict=True):
+        factors = beside.factors or (0,) * len(self.products)
+        for pair, factor in zip(self.products, factors, strict=True):
             product = parities.and_(*pair)
             found.append((product, -2))
             if factor:
                 found.append((parities.and_(product, element(factor)), 4))
-        return found
+        return found, taken
+
+    def _outer_sign(self, shape: Shape, outer: Literal) -> tuple[int, ...]:
+        """By case, outer (before ^ Q); empty where they are not sums of basis elements or one product."""
+        local = self.local
+        mask = local.mask_of(outer)
+        node = self._before >> 1
+        held = local.mask_of(self._before)
+        plane = local.plane_of(node)
+        if mask is None or (held is None and plane is None):
+            return ()
+        found = []
+        for case in range(len(shape.rest)):
+            value = self._before & 1
+            if held is not None:
+                value ^= (held & case).bit_count() & 1
+            elif plane is not None:
+                value ^= (plane[0] & case).bit_count() & (plane[1] & case).bit_count() & 1
+            value ^= sum(case & product == product for product in shape.quotient) & 1
+            found.append(value & ((mask & case).bit_count() ^ outer) & 1)
+        return tuple(found)

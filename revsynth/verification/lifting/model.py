@@ -42,7 +42,8 @@ class Lifted:
     the constant phase.
     revealed: (operation, literal): a measurement or reset there has an outcome that depends on the literal.
     outcome_signs: (outcomes, literal): where all these outcomes are 1 there is a further sign, which must be
-    constant. sixteenths, radians: the constant phase is sixteenths pi/8 + radians, beside the sign.
+    constant. random: whether some outcome is uncertain; a constant phase of single outcomes cannot be observed.
+    sixteenths, radians: the constant phase is sixteenths pi/8 + radians, beside the sign.
     """
 
     parities: Parities = field(repr=False)
@@ -56,6 +57,7 @@ class Lifted:
     steady: tuple[Literal, ...]
     revealed: tuple[tuple[int, Literal], ...]
     outcome_signs: tuple[tuple[Paths, Literal], ...]
+    random: bool = False
 
     def export(self, literals: Sequence[Literal]) -> Graph:
         """A graph of its own whose outputs are these literals and whose inputs are all `variables`."""

@@ -240,26 +240,27 @@ class PathSum:
         outer = self.literal[qubit]
         self.literal[qubit] = total
         self.paths[qubit] = NO_PATHS
-        if outer:
+        taken = slope is not None and phases is not None and self._leave(slope, phases, NO_PATHS, outer)
+        if outer and not taken:
             self.add_sign(NO_PATHS, self.parities.and_(outer, total))
-        if slope and phases:
-            self._leave(slope, phases, NO_PATHS)
         return True
 
-    def _leave(self, slope: Slope, phases: Phases, tail: Paths) -> None:
+    def _leave(self, slope: Slope, phases: Phases, tail: Paths, outer: Literal = FALSE) -> bool:
         """The phases c s that are left without y.
 
         As products where Q has them at hand: then what a relative-phase gate leaves is 2 a b on the atom a b.
+        Whether the sign that comes with the parity `outer` is taken in (`Slope.rest`).
         """
-        rest = None if tail else slope.rest()
+        rest = None if tail else slope.rest(outer)
         if rest is None:
             for node, eighths in phases.items():
                 self.turn(Value(2 * node, tail), eighths)
-            return
-        for literal, eighths in rest:
+            return False
+        for literal, eighths in rest[0]:
             self.turn(Value(literal), eighths)
         for one, other in slope.products:
             self._take_apart(self.parities.xor(one, other) >> 1)
+        return rest[1]
 
     def _take_apart(self, node: int) -> None:
         """With a b at hand, a phase on a ^ b becomes one on a, b and, doubled, the other way, on a b."""
