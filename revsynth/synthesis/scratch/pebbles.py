@@ -22,6 +22,8 @@ POLICIES: tuple[Policy, ...] = ("newest", "oldest", "any")
 
 PATIENCE = 6
 """Operations a unit, at most, before an attempt is given up."""
+SCANNED = 400_000
+"""Units looked at, at most, in search of one that is needed again as late as possible."""
 
 
 def pebble(game: Game, budget: int, policy: Policy, seed: int) -> list[Operation] | None:
@@ -54,6 +56,7 @@ class _Attempt:
         spread = 0.0 if seed == 0 and policy != "any" else game.size / 4
         self.rank = [sign * unit + spread * draw.random() for unit in range(game.size)]
         self.limit = PATIENCE * game.size + 100
+        self.scans = 64 + SCANNED // max(1, game.size)
 
     def run(self) -> list[Operation] | None:
         for act in self.game.acts[0]:
@@ -148,6 +151,9 @@ class _Attempt:
     def _needed_last(self, locked: set[int]) -> int:
         """Of the units that are needed again, one that can be erased and whose next reader is last."""
         best, when = -1, -1
+        self.scans -= 1
+        if self.scans < 0:
+            return best
         for unit in range(self.game.size):
             free = self.held[unit] and self.missing[unit] == 0 and self.game.weight[unit]
             if free and unit not in locked:
