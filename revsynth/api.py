@@ -12,6 +12,7 @@ from revsynth.cascade.model import Cascade
 from revsynth.choice import by_name
 from revsynth.circuit.cost import measure
 from revsynth.circuit.model import Circuit
+from revsynth.elaborate.overview import Overview, overview
 from revsynth.errors import BudgetError, RevsynthError, UndecidedError, UsageError
 from revsynth.files import is_regular, write_whole
 from revsynth.logic.analysis import Analysis, analyse
@@ -25,6 +26,7 @@ from revsynth.spec.model import Constant, Spec, Word
 from revsynth.spec.read import read_spec as _read_spec
 from revsynth.spec.toml_reader import spec_from_document
 from revsynth.spec.understand import understand
+from revsynth.structure import structure_of
 from revsynth.verification import verify_program
 from revsynth.verification.evidence import Counterexample, Evidence, Verdict
 
@@ -105,17 +107,19 @@ def permutation(
     *,
     inputs: InputWidths | None = None,
     map: Mapping[str, str] | None = None,
+    steps: Sequence[str] | None = None,
     constants: Mapping[str, Constant] | None = None,
     domain: str | None = None,
     title: str = "",
 ) -> Spec:
-    """A reversible block by the images of 0, 1, 2, ... ("-" is free), or by new values of words.
+    """A reversible block by the images of 0, 1, 2, ... ("-" is free), by new values of words, or by steps.
 
     Without `inputs` the images are of the word `v`.
     """
-    if (values is None) == (map is None):
-        raise UsageError("permutation: give either values or map=, not both")
-    body: dict[str, Any] = {"values": values} if values is not None else {"map": map}
+    given = {"values": values, "map": map, "steps": steps}
+    body = {name: value for name, value in given.items() if value is not None}
+    if len(body) != 1:
+        raise UsageError("permutation: give exactly one of values, map= and steps=")
     return _from_sections("permutation", body, inputs, constants, domain, title)
 
 
@@ -347,10 +351,19 @@ def verify(
     return verify_program(spec, program, oracle=oracle, exact_phase=exact_phase)
 
 
-def inspect(spec: Spec) -> Analysis:
-    """What the function of a spec is: `describe(...)` shows it in words, `to_json()` as plain data."""
+def inspect(spec: Spec) -> Analysis | Overview:
+    """What the function of a spec is, as far as its width allows; `to_json()` gives plain data.
+
+    Up to 24 input bits all facts are worked out from the table (`Analysis`); wider ones have an `Overview`.
+    """
     _check_spec(spec)
-    return analyse(understand(spec))
+    understanding = understand(spec)
+    if understanding.tabulated is not None:
+        return analyse(understanding)
+    understanding, network = structure_of(understanding, BuildOptions())
+    if network is None:
+        raise UsageError(f"{spec.source}: {spec.input_bits} input bits: there is no network to look at")
+    return overview(understanding, network)
 
 
 def cost(

@@ -11,12 +11,13 @@ from typing import Any
 
 import numpy as np
 
-from revsynth.cascade.model import Cascade
+from revsynth.cascade.line_values import LineValues
+from revsynth.cascade.model import PHASE
 from revsynth.cascade.price import cascade_t
 from revsynth.circuit.cost import Cost, measure
 from revsynth.circuit.model import Circuit
-from revsynth.options import Aim, BuildOptions
-from revsynth.synthesis.interface import Block
+from revsynth.options import Aim, BuildOptions, Oracle
+from revsynth.synthesis.interface import Block, known_lines
 
 
 def by_name(method: str) -> dict[str, str]:
@@ -71,10 +72,26 @@ class Candidate:
         return cls(block, circuit, measure(circuit))
 
 
-def and_count(cascade: Cascade) -> int:
-    """ANDs of the plan: k - 1 for a NOT with k >= 2 controls or a phase on k >= 2 literals."""
+def and_count(block: Block, oracle: Oracle) -> int:
+    """ANDs of the plan: k - 1 for a NOT with k >= 2 controls or a phase on k >= 2 literals.
+
+    A product that brings a line back to 0 is an erasure and not counted.
+    """
+    cascade = block.cascade
     controls = np.diff(cascade.offset)
-    return int(np.maximum(controls - 1, 0).sum())
+    total = int(np.maximum(controls - 1, 0).sum())
+    known = known_lines(block, oracle)
+    if not known:
+        return total
+    state = LineValues.start(cascade.lines, known)
+    for gate in cascade:
+        if gate.target == PHASE:
+            continue
+        started_in_zero = state.is_zero(gate.target)
+        state.apply(gate.controls, (gate.target,))
+        if len(gate.controls) >= 2 and not started_in_zero and state.is_zero(gate.target):
+            total -= len(gate.controls) - 1
+    return total
 
 
 def estimate(block: Block, options: BuildOptions) -> tuple[int, ...]:

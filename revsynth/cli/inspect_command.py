@@ -25,15 +25,15 @@ def COMMAND(spec: str | None, as_json: bool, **inline: Any) -> None:  # noqa: N8
       revsynth inspect --where "a * b == 35" --input a=4 --input b=4
     """
     wanted = load_spec(spec, **inline)
-    from revsynth.logic.analysis import analyse, describe
-    from revsynth.spec.understand import understand
+    from revsynth.api import inspect
+    from revsynth.elaborate.overview import Overview, text
+    from revsynth.logic.analysis import describe
 
     progress_line()("reading the spec")
-    understanding = understand(wanted)
-    analysis = analyse(understanding)
+    found = inspect(wanted)
     clear_progress()
-    warn(understanding.warnings)
+    warn(found.warnings)
     if as_json:
-        echo_json(analysis.to_json())
+        echo_json(found.to_json())
     else:
-        click.echo(describe(analysis))
+        click.echo(text(found) if isinstance(found, Overview) else describe(found))

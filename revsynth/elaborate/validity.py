@@ -2,11 +2,17 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
 from revsynth.elaborate.model import Elaboration
 from revsynth.errors import SpecError, UndecidedError
 from revsynth.logic.equivalence import encode
 from revsynth.logic.network import FALSE, TRUE, Network
 from revsynth.spec.model import Spec
+
+if TYPE_CHECKING:
+    from revsynth.solver import Solver
 
 CONFLICTS = 200_000
 """Conflicts that each question may take."""
@@ -27,7 +33,7 @@ def check_valid(spec: Spec, elaboration: Elaboration) -> None:
     with Solver() as solver:
         inputs = [solver.variable() for _ in range(spec.input_bits)]
         for check in questions:
-            answer = solver.solve([encode(solver, check.network, inputs)[0]], CONFLICTS)
+            answer = solver.solve([asked(solver, check.network, inputs)], CONFLICTS)
             if answer:
                 raise check.error(sum(1 << i for i, one in enumerate(inputs) if solver.value(one)))
             if answer is None:
@@ -35,13 +41,20 @@ def check_valid(spec: Spec, elaboration: Elaboration) -> None:
                     f"{spec.source}: it could not be settled whether this ever happens: {check.message}"
                 )
         if asks_domain and care is not None:
-            answer = solver.solve([encode(solver, care, inputs)[0]], CONFLICTS)
+            answer = solver.solve([asked(solver, care, inputs)], CONFLICTS)
             if answer is False:
                 raise SpecError(
                     "no input satisfies it: a domain needs at least one",
                     source=spec.source,
                     place="[domain] where",
                 )
+
+
+def asked(solver: Solver, network: Network, inputs: Sequence[int]) -> int:
+    """The solver's literal of a network's first output over the variables `inputs`."""
+    literal = int(network.outputs[0])
+    variable = encode(solver, network, inputs)[literal >> 1]
+    return -variable if literal & 1 else variable
 
 
 def _constant(network: Network) -> int | None:
