@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 from itertools import product
 
-from revsynth.verification.lifting.parities import AND, FALSE, TRUE, Literal, Parities
+from revsynth.verification.lifting.parities import FALSE, TRUE, Literal, Parities
 from revsynth.verification.lifting.residue import sign_of
 
 MOST_PARITIES = 7
@@ -239,8 +239,32 @@ class Local:
             return mask
         if mask is not None:
             return mask << 1
-        mask = self._span.get(self.parities.xor(node, self.basis[0]))
+        shifted = self.parities.met(node, self.basis[0])
+        mask = None if shifted is None else self._span.get(shifted)
         return None if mask is None else mask << 1 | 1
+
+    def held(self, literal: Literal) -> tuple[Plane, int] | None:
+        """A literal, but for its complement, as a product of two parities XOR a parity; None if it is not."""
+        mask = self.mask_of(literal)
+        if mask is not None:
+            return (0, 0), mask
+        for known, plane in self._known_products():
+            linear = self.parities.met(literal & ~1, known)
+            mask = None if linear is None else self.mask_of(linear)
+            if mask is not None:
+                return plane, mask
+        return None
+
+    def _known_products(self) -> list[tuple[Literal, Plane]]:
+        """Products met before whose operands are sums of basis elements without the first one."""
+        shift = 1 if self.first else 0
+        found = []
+        for both in self._span:
+            entry = self.parities.third.get(both >> 1)
+            if entry is not None and 2 * entry[0] in self._span and 2 * entry[1] in self._span:
+                plane = (self._span[2 * entry[0]] << shift, self._span[2 * entry[1]] << shift)
+                found.append((entry[2], plane))
+        return found
 
     def element(self, mask: int) -> Literal:
         """The literal of an XOR of basis elements."""
@@ -255,16 +279,16 @@ class Local:
     def planes(self, before: Literal) -> tuple[Plane, ...]:
         """The products of two in Q as few products of parities, those met before if possible.
 
-        before: what the qubit held before its first Hadamard. If that is a product of such parities, it comes
-        first: it is being erased, and Q may join it with another that is being written.
+        before: what the qubit held before its first Hadamard. If that is a product, but for a parity, it
+        comes first: it is being erased, and Q may join it with another that is being written.
         """
         assert self.shape is not None
         rows = alternating(self.shape.quotient)
         found: list[Plane] = []
-        erased = self.plane_of(before >> 1)
-        if erased and any(rows):
-            found.append(erased)
-            rows = peeled(rows, erased)
+        held = self.held(before)
+        if held and held[0] != (0, 0) and any(rows):
+            found.append(held[0])
+            rows = peeled(rows, held[0])
         while any(rows):
             plane = any_plane(rows)
             if rank(rows) > 2:
@@ -273,28 +297,11 @@ class Local:
             rows = peeled(rows, plane)
         return tuple(found)
 
-    def plane_of(self, node: int) -> Plane | None:
-        """The operands of an AND, if both are sums of basis elements without the first one."""
-        parities = self.parities
-        if parities.kind[node] != AND:
-            return None
-        one, other = self._span.get(2 * parities.left[node]), self._span.get(2 * parities.right[node])
-        if one is None or other is None:
-            return None
-        return (one << 1, other << 1) if self.first else (one, other)
-
     def _known_plane(self, rows: tuple[int, ...]) -> Plane | None:
         """A product met before that lowers the rank, best one that leaves another such."""
-        shift = 1 if self.first else 0
         before = rank(rows)
         found: list[tuple[bool, int, Plane]] = []
-        known: list[tuple[int, Plane]] = []
-        for both in self._span:
-            entry = self.parities.third.get(both >> 1)
-            if entry is None or 2 * entry[0] not in self._span or 2 * entry[1] not in self._span:
-                continue
-            plane = (self._span[2 * entry[0]] << shift, self._span[2 * entry[1]] << shift)
-            known.append((entry[2], plane))
+        known = self._known_products()
         for literal, plane in known:
             left = peeled(rows, plane)
             if rank(left) < before:
@@ -379,19 +386,14 @@ class Slope:
     def _outer_sign(self, shape: Shape, outer: Literal) -> tuple[int, ...]:
         """By case, outer (before ^ Q); empty where they are not sums of basis elements or one product."""
         local = self.local
-        mask = local.mask_of(outer)
-        node = self._before >> 1
-        held = local.mask_of(self._before)
-        plane = local.plane_of(node)
-        if mask is None or (held is None and plane is None):
+        mask, held = local.mask_of(outer), local.held(self._before)
+        if mask is None or held is None:
             return ()
+        (one, other), straight = held
         found = []
         for case in range(len(shape.rest)):
-            value = self._before & 1
-            if held is not None:
-                value ^= (held & case).bit_count() & 1
-            elif plane is not None:
-                value ^= (plane[0] & case).bit_count() & (plane[1] & case).bit_count() & 1
+            value = self._before ^ (straight & case).bit_count()
+            value ^= (one & case).bit_count() & (other & case).bit_count()
             value ^= sum(case & product == product for product in shape.quotient) & 1
             found.append(value & ((mask & case).bit_count() ^ outer) & 1)
         return tuple(found)

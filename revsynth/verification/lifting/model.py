@@ -42,7 +42,7 @@ class Lifted:
     the constant phase.
     revealed: (operation, literal): a measurement or reset there has an outcome that depends on the literal.
     outcome_signs: (outcomes, literal): where all these outcomes are 1 there is a further sign, which must be
-    constant. random: whether some outcome is uncertain; a constant phase of single outcomes cannot be observed.
+    constant. random: whether some outcome is uncertain; constant phases of single outcomes are unobservable.
     sixteenths, radians: the constant phase is sixteenths pi/8 + radians, beside the sign.
     """
 

@@ -81,6 +81,11 @@ class Parities:
             found = self._sums[key] = 2 * self._sum(p, q)
         return found ^ ((a ^ b) & 1)
 
+    def met(self, a: Literal, b: Literal) -> Literal | None:
+        """a XOR b if it is a node already."""
+        known = self._signature[a >> 1] ^ self._signature[b >> 1] in self._node_of
+        return self.xor(a, b) if known else None
+
     def _sum(self, p: int, q: int) -> int:
         """The node p XOR q, p <= q."""
         if p == q:
