@@ -5,7 +5,7 @@ Bit order: lane values are combined indices of inputs, words in declared order, 
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, replace
 from typing import Any
 
@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from revsynth.spec import bounds
-from revsynth.spec.lane_values import Items, Mask, Numbers, Value, spread, take, truths
+from revsynth.spec.lane_values import Items, Mask, Value, settled, spread, take, truths
 from revsynth.spec.model import Word
 
 _DENSE = 4
@@ -24,12 +24,17 @@ _SMALL = 512
 
 @dataclass
 class Shared:
-    """What all lanes of one chunk have in common: its failures, and tables of constant lists."""
+    """What all lanes of one chunk have in common: its failures, and tables of constant lists.
+
+    patterns: for inputs that are no combined indices but rows of a sample: the bits of a word that begins at
+    some bit of the combined index, by row, int64, or object where the word has more than 62 bits.
+    """
 
     size: int
     failed: Mask | None = None
     failures: list[NDArray[np.int64]] = field(default_factory=list)
     tables: dict[int, tuple[Any, Any]] = field(default_factory=dict)
+    patterns: Callable[[Word, int], NDArray[Any]] | None = None
 
     @property
     def first_failure(self) -> int | None:
@@ -141,10 +146,13 @@ class Lanes:
         return self.cache[name]
 
     def _field(self, word: Word, offset: int) -> Value:
-        values = (self.index >> offset) & ((1 << word.bits) - 1)
+        if self.shared.patterns is None:
+            values = (self.index >> offset) & ((1 << word.bits) - 1)
+        else:
+            values = self.shared.patterns(word, offset)[self.index]
         low, high = bounds.word(word.bits, word.signed)
         if word.signed:
             values = (values ^ high + 1) - (high + 1)
         elif word.bits == 1:
             return truths(values)
-        return Numbers(values, low, high)
+        return settled(values, (low, high))
