@@ -24,6 +24,8 @@ MOST_TABLE_INPUTS = 16
 SEARCHED_GATES = 6_000
 """Up to so many gates ANDs are reduced by all means, above by mapping cuts alone, which takes seconds."""
 XORS_AN_AND = 64
+TABLE_INPUTS = 8
+"""Tables of up to so many inputs are turned into networks by `logic.tables` too."""
 
 
 class FromNetwork:
@@ -122,24 +124,34 @@ def trade_off(task: Task, progress: Progress = silent) -> list[Point]:
 def candidates(task: Task, progress: Progress = silent) -> list[Network]:
     """The networks to compile, the cheapest first; this is the one place where ANDs are reduced.
 
-    The network as given is among them: its structure may allow fewer lines. An AND weighs as much as
-    XORS_AN_AND XORs, since fewer ANDs at the price of any number of XORs are no gain.
+    Small tables give networks of their own, whatever the structure of the spec. The network as given is among
+    them: its structure may allow fewer lines. An AND weighs as much as XORS_AN_AND XORs, since fewer ANDs at
+    the price of any number of XORs are no gain.
     """
     function = network_function(task.function) if task.network is None else task.network
     given = function.values.reachable()
     progress(f"network: reducing {given.ands} ANDs")
-    if given.gates <= SEARCHED_GATES:
+    found = [given, _reduced(given, function.care, task, progress)]
+    if task.tabulated is not None and task.tabulated.inputs <= TABLE_INPUTS:
+        from revsynth.logic.tables import table_network
+
+        tables = table_network(task.tabulated, effort=task.effort, seed=task.seed, progress=progress)
+        found.extend(_reduced(network, function.care, task, progress) for _, network in tables[:2])
+    found.sort(key=lambda network: network.ands + network.xors / XORS_AN_AND)
+    return [network for i, network in enumerate(found) if network not in found[:i]]
+
+
+def _reduced(network: Network, care: Network | None, task: Task, progress: Progress) -> Network:
+    """With as few ANDs as the effort finds, the same wherever `care` is 1."""
+    if network.gates <= SEARCHED_GATES:
         from revsynth.logic.and_reduction import fewest_ands
 
-        least = fewest_ands(given, effort=task.effort, care=function.care, seed=task.seed, progress=progress)
-    else:
-        from revsynth.logic.and_reduction.cut_mapping import map_cuts
+        return fewest_ands(
+            network, effort=task.effort, care=care, seed=task.seed, progress=progress
+        ).reachable()
+    from revsynth.logic.and_reduction.cut_mapping import map_cuts
 
-        least = map_cuts(given)
-    least = least.reachable()
-    if least == given:
-        return [given]
-    return sorted((least, given), key=lambda network: network.ands + network.xors / XORS_AN_AND)
+    return map_cuts(network).reachable()
 
 
 def _bare_lines(task: Task) -> int:
