@@ -96,6 +96,19 @@ FORBIDDEN = {
     },
     "qasm": {"spec", "cascade", "synthesis", "reduction", "lowering", "verification", "report", "cli"},
     "verification": {"cascade", "synthesis", "reduction", "lowering", "embed", "report", "cli"},
+    "verification/lifting": {
+        "spec",
+        "logic",
+        "elaborate",
+        "cascade",
+        "synthesis",
+        "reduction",
+        "lowering",
+        "embed",
+        "qasm",
+        "report",
+        "cli",
+    },
     "report": {"spec", "synthesis", "reduction", "lowering", "verification", "cli"},
 }
 

@@ -13,8 +13,9 @@ from hypothesis import strategies as st
 from revsynth.verification.lifting.graph import Graph
 from revsynth.verification.lifting.kernels import compiled_fill, fill
 from revsynth.verification.lifting.linear_proofs import GuessError
-from revsynth.verification.lifting.local import Slope, rank, solve
+from revsynth.verification.lifting.local import Slope
 from revsynth.verification.lifting.parities import FALSE, TRUE, Parities
+from revsynth.verification.lifting.quadratic import rank, solve
 from revsynth.verification.lifting.residue import counted, sign_of, simplified
 
 ALL = np.uint64(0xFFFFFFFFFFFFFFFF)

@@ -13,8 +13,8 @@ from heapq import heapify, heappop, heappush
 MOST_REPLACEMENTS = 400
 """A claim that takes more is put off."""
 
-ATOMS_AT_A_TIME = 1 << 13
-"""Sets of atoms are Python integers of that many bits."""
+MOST_BITS = 1 << 30
+"""Sets of atoms are Python integers of at most 2**13 bits, and of fewer where there are many nodes."""
 
 _XOR = 3
 
@@ -78,8 +78,9 @@ class LinearProofs:
         held: dict[int, int] = dict.fromkeys(atoms, 0)
         held[0] = 0
         left, right = self._left, self._right
-        for begin in range(0, len(atoms), ATOMS_AT_A_TIME):
-            block = atoms[begin : begin + ATOMS_AT_A_TIME]
+        at_a_time = max(128, min(1 << 13, MOST_BITS // (len(sums) + 1)))
+        for begin in range(0, len(atoms), at_a_time):
+            block = atoms[begin : begin + at_a_time]
             for place, atom in enumerate(block):
                 held[atom] = 1 << place
             for node in sums:
