@@ -23,7 +23,12 @@ class SpecError(RevsynthError, ValueError):
 
 
 class ExpressionError(SpecError):
-    """An expression or formula that is not allowed, or that fails for an input of the domain."""
+    """An expression or formula that is not allowed, or that fails for an input of the domain.
+
+    `index` is the combined index of such an input, where it is known.
+    """
+
+    index: int | None = None
 
 
 class CircuitFileError(RevsynthError, ValueError):

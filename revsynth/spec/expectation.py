@@ -18,6 +18,8 @@ from revsynth.spec.model import Clauses, Cover, Output, Outputs, Permutation, Pr
 from revsynth.spec.netlist import Netlist
 from revsynth.spec.netlist_reference import netlist_values
 from revsynth.spec.reference import evaluate
+from revsynth.spec.step_reference import run_steps
+from revsynth.spec.steps import parse_steps
 
 if TYPE_CHECKING:
     from revsynth.spec.understand import Understanding
@@ -126,6 +128,9 @@ class Expectation:
         if body.values is not None:
             images = body.values
             return lambda index, values: _bits(images[index], size)
+        if body.steps is not None:
+            steps = parse_steps(self.spec, body.steps)
+            return lambda index, values: _bits(run_steps(self.spec, steps, index), size)
         numbers = {name: self._number(text) for name, text in (body.map or {}).items()}
 
         def rule(index: int, values: Mapping[str, Value]) -> Bits:

@@ -81,7 +81,7 @@ class OverDomain:
         """An error of this spec."""
         return SpecError(message, source=self.spec.source, place=place)
 
-    def _check_memory(self, expression: Expression, place: str) -> None:
+    def check_memory(self, expression: Expression, place: str) -> None:
         """Refuse values beyond 64 bits, which are Python integers one by one, at too many inputs."""
         if fits_int64(expression.bounds):
             return
@@ -96,7 +96,7 @@ class OverDomain:
 
     def _values(self, text: str, place: str) -> tuple[Expression, NDArray[Any]]:
         expression = parse(text, self.scope, source=self.spec.source, place=place)
-        self._check_memory(expression, place)
+        self.check_memory(expression, place)
         values, warnings = evaluate_with_warnings(expression, self.needed)
         self.warnings.extend(warnings)
         return expression, values

@@ -35,6 +35,14 @@ def evaluate(expression: Expression, values: Mapping[str, int | Sequence[int]]) 
     return result if isinstance(result, bool) else int(result)
 
 
+def constant_part(expression: Expression, node: ast.expr, names: Names) -> Any:
+    """The value of a part of an expression that reads nothing but `names`; None for other parts."""
+    try:
+        return _Reference(expression).value(node, names)
+    except (Undefined, KeyError):
+        return None
+
+
 def _word_value(word: Word, values: Mapping[str, int | Sequence[int]]) -> int | list[int]:
     if word.name not in values:
         raise SpecError(f"no value is given for the word {word.name!r}")

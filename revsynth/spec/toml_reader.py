@@ -18,7 +18,7 @@ from revsynth.spec.names import check_name
 BODIES = ("predicate", "outputs", "permutation")
 TOP_LEVEL = ("title", "inputs", "constants", "domain", *BODIES)
 PREDICATES = ("where", "formula", "table")
-PERMUTATIONS = ("values", "map")
+PERMUTATIONS = ("values", "map", "steps")
 WORD_KEYS = ("bits", "signed", "count")
 OUTPUT_KEYS = ("value", "table", "bits", "signed")
 IMPLICIT_WORD = "v"
@@ -191,16 +191,12 @@ def _output(name: str, value: Any, source: str) -> Output:
 
 
 def _permutation(table: Mapping[str, Any], source: str) -> Permutation:
-    if "steps" in table:
-        raise SpecError(
-            "steps come with a later version of revsynth: this one takes values or map",
-            source=source,
-            place="[permutation] steps",
-        )
     chosen = _one_of(table, PERMUTATIONS, source, "[permutation]")
     place = f"[permutation] {chosen}"
     if chosen == "values":
         return Permutation(values=_images(table["values"], source, place))
+    if chosen == "steps":
+        return Permutation(steps=_steps(table["steps"], source, place))
     images = _table(table["map"], source, place)
     if not images:
         raise SpecError(
@@ -209,6 +205,15 @@ def _permutation(table: Mapping[str, Any], source: str) -> Permutation:
     return Permutation(
         map={name: _text(text, source, f"{place} {_one_line(name)}") for name, text in images.items()}
     )
+
+
+def _steps(value: Any, source: str, place: str) -> tuple[str, ...]:
+    """A list of texts, one a step."""
+    if not isinstance(value, Sequence) or isinstance(value, str) or not value:
+        wanted = 'a list of texts with at least one is wanted, such as ["x += y"]'
+        shown = "an empty list" if isinstance(value, Sequence) and not value else _shown(value)
+        raise SpecError(f"{wanted}, not {shown}", source=source, place=place)
+    return tuple(_text(step, source, f"{place} {number}") for number, step in enumerate(value, 1))
 
 
 def _images(value: Any, source: str, place: str) -> tuple[int | None, ...]:

@@ -29,6 +29,7 @@ from revsynth.spec.output_words import (
 )
 from revsynth.spec.over_domain import OverDomain
 from revsynth.spec.pla import OUTPUT_WORD
+from revsynth.spec.step_images import stepped_images
 from revsynth.spec.wide import wide_outputs
 
 
@@ -153,6 +154,8 @@ def _netlist(netlist: Netlist, over: OverDomain) -> tuple[Columns, Columns]:
 def _permutation(body: Permutation, over: OverDomain) -> tuple[Columns, Columns]:
     if body.values is not None:
         images, fixed = listed_images(body.values, over)
+    elif body.steps is not None:
+        images, fixed = stepped_images(body.steps, over)
     else:
         images, fixed = mapped_images(body.map or {}, over)
     care = np.tile(pack(fixed), (over.inputs, 1))

@@ -15,7 +15,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from revsynth.errors import SpecError
+from revsynth.errors import ExpressionError, SpecError
 from revsynth.spec.bounds import fits_int64
 from revsynth.spec.expression import Expression
 from revsynth.spec.lane_values import Numbers
@@ -75,7 +75,11 @@ def _evaluate(
         value = walk.number(expression.tree, lanes)
         failure = lanes.shared.first_failure
         if failure is not None:
-            evaluate(expression, decode(tuple(expression.scope.words.values()), failure))
+            try:
+                evaluate(expression, decode(tuple(expression.scope.words.values()), failure))
+            except ExpressionError as error:
+                error.index = failure
+                raise
             raise AssertionError(f"input {failure} failed side by side, but not alone: {expression.text}")
         array = _narrowest(value.array) if isinstance(value, Numbers) else _single(value)
         if result.dtype != array.dtype and _RANK[array.dtype.kind] > _RANK[result.dtype.kind]:

@@ -10,9 +10,11 @@ from revsynth.errors import SpecError
 from revsynth.spec.bounds import Interval
 from revsynth.spec.expression import Scope, parse
 from revsynth.spec.formula import parse_formula
+from revsynth.spec.images import register_of
 from revsynth.spec.limits import MAX_INPUT_BITS, MAX_WIDE_BITS
 from revsynth.spec.model import Output, Outputs, Permutation, Predicate, Spec, Word
 from revsynth.spec.pla import OUTPUT_WORD
+from revsynth.spec.steps import parse_steps
 
 
 def wide_outputs(spec: Spec) -> tuple[Word, ...]:
@@ -83,7 +85,10 @@ def width_for(interval: Interval, signed: bool) -> int:
 def _check_permutation(body: Permutation, spec: Spec, scope: Scope) -> None:
     if body.values is not None:
         raise _no_table(spec, "[permutation] values")
+    if body.steps is not None:
+        parse_steps(spec, body.steps)
     for name, text in (body.map or {}).items():
+        register_of(spec, name)
         parse(text, scope, source=spec.source, place=f"[permutation] map {name}")
 
 

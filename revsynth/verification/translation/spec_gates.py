@@ -23,6 +23,7 @@ from revsynth.verification.translation.gates import (
 )
 from revsynth.verification.translation.lists import Items, Value
 from revsynth.verification.translation.numbers import Arithmetic, Number, constant
+from revsynth.verification.translation.steps import stepped_bits, word_values
 from revsynth.verification.translation.walk import Walk
 
 
@@ -51,7 +52,7 @@ class _Translator:
         self.gates = gates
         self.inputs = list(inputs)
         self.scope = Scope({word.name: word for word in spec.inputs}, spec.constants)
-        self.words = _word_values(spec.inputs, self.inputs)
+        self.words = word_values(spec.inputs, self.inputs)
 
     def translation(self) -> Translation:
         domain = TRUE if self.spec.domain is None else self._condition(self.spec.domain)
@@ -97,6 +98,8 @@ class _Translator:
         return bits, []
 
     def _permutation(self, body: Permutation) -> list[Bit]:
+        if body.steps is not None:
+            return stepped_bits(self.spec, body.steps, self.gates, self.inputs)
         if body.map is None:
             raise TooLargeToTranslateError("images one by one")
         numbers = Arithmetic(self.gates)
@@ -110,19 +113,6 @@ class _Translator:
                 bits += kept if image is None else numbers.extended(image, width)[:width]
                 place += width
         return bits
-
-
-def _word_values(words: Sequence[Word], inputs: Sequence[Bit]) -> dict[str, Value]:
-    found: dict[str, Value] = {}
-    place = 0
-    for word in words:
-        numbers: list[Value] = []
-        for _ in word.elements():
-            bits = tuple(inputs[place : place + word.bits])
-            numbers.append(bits if word.signed else (*bits, FALSE))
-            place += word.bits
-        found[word.name] = numbers[0] if word.count is None else Items.of(numbers)
-    return found
 
 
 def _formula(nodes: Sequence[Node], words: Mapping[str, Value], gates: Gates) -> Bit:
