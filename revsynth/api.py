@@ -12,6 +12,7 @@ from revsynth.cascade.model import Cascade
 from revsynth.choice import by_name
 from revsynth.circuit.cost import measure
 from revsynth.circuit.model import Circuit
+from revsynth.elaborate.free_spec import free_spec
 from revsynth.elaborate.overview import Overview, overview
 from revsynth.errors import BudgetError, RevsynthError, UndecidedError, UsageError
 from revsynth.files import is_regular, write_whole
@@ -22,7 +23,7 @@ from revsynth.pipeline import Built, Progress
 from revsynth.pipeline import build as run_pipeline
 from revsynth.placement import describe_placement
 from revsynth.qasm import Program, read, read_file
-from revsynth.spec.model import Constant, Spec, Word
+from revsynth.spec.model import Constant, Predicate, Spec, Word
 from revsynth.spec.read import read_spec as _read_spec
 from revsynth.spec.toml_reader import spec_from_document
 from revsynth.spec.understand import understand
@@ -54,12 +55,14 @@ InputWidths = Mapping[str, "int | Mapping[str, Any] | Word"]
 """Words by name: a width in bits, or the table of a spec file such as `{"bits": 3, "signed": True}`."""
 
 
-def read_spec(path: str | Path, *, from_format: str | None = None) -> Spec:
+def read_spec(path: str | Path, *, from_format: str | None = None, free_inputs: bool = False) -> Spec:
     """Read any spec file the contract lists; `from_format` names the format where the ending does not.
 
-    Raises RevsynthError (SpecError) with one line that names the file and the place.
+    free_inputs: of a CNF, make only the free variables inputs; the others follow from them. Raises
+    RevsynthError (SpecError) with one line that names the file and the place.
     """
-    return _read_spec(str(path), from_format=from_format)
+    spec = _read_spec(str(path), from_format=from_format)
+    return free_spec(spec).spec if free_inputs else spec
 
 
 def predicate(
@@ -295,6 +298,8 @@ class Build:
             found["placement"] = placement
         if built.options.format == "plain":
             found["qubits"] = self.qubit_map()
+        if isinstance(self.spec.body, Predicate) and self.spec.body.free_of is not None:
+            found["v_bits"] = [variable - 1 for variable in self.spec.body.free_of.variables]
         if built.stopped_early:
             found["stopped_early"] = True
         if built.understanding.warnings:

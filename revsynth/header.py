@@ -39,6 +39,8 @@ def _spec_words(spec: Spec) -> list[str]:
     """What stands for the spec on the command line: its base name, or the options that spell it out."""
     if spec.source != COMMAND_LINE or not isinstance(spec.body, Predicate) or spec.body.where is None:
         named = [] if spec.from_format is None else [f"--from {spec.from_format}"]
+        if isinstance(spec.body, Predicate) and spec.body.free_of is not None:
+            named.append("--free-inputs")
         return ["-" if spec.source == "standard input" else shlex.quote(spec.source), *named]
     words = ["--where", shlex.quote(spec.body.where)]
     for word in spec.inputs:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 from revsynth.elaborate import elaborate
+from revsynth.elaborate.clauses import free_inputs
 from revsynth.elaborate.validity import check_valid
 from revsynth.errors import SpecError
 from revsynth.logic.network_function import NetworkFunction
@@ -26,6 +27,9 @@ def structure_of(
     wide = understanding.tabulated is None
     if not _has_structure(spec) or (not wide and options.method not in ("auto", "network")):
         return understanding, None
+    if isinstance(spec.body, Predicate) and spec.body.free_of is not None:
+        found = free_inputs(spec.body.free_of.clauses, options.effort, options.seed)
+        return understanding, found.function
     try:
         elaboration = elaborate(spec, understanding.outputs or None)
     except SpecError:

@@ -57,6 +57,7 @@ def COMMAND(  # noqa: N802
     constants: tuple[str, ...],
     domain: str | None,
     from_format: str | None,
+    free_inputs: bool,
     **words: Any,
 ) -> None:
     """Build a circuit for SPEC, read it back, verify it for every input, and write it.
@@ -82,7 +83,7 @@ def COMMAND(  # noqa: N802
     options = BuildOptions(**{name: value for name, value in words.items() if value is not None})
     if spec is not None and output is not None and _same_file(spec, output):
         raise UsageError(f"{output}: this is the spec itself: name another file to write")
-    wanted = load_spec(spec, where, inputs, constants, domain, from_format)
+    wanted = load_spec(spec, where, inputs, constants, domain, from_format, free_inputs)
     from revsynth.api import build
 
     built = build(wanted, options=options, progress=progress_line())

@@ -29,6 +29,11 @@ def spec_options(command: F) -> F:
     """The options that stand in for a spec file, and `--from`."""
     for option in (
         click.option(
+            "--free-inputs",
+            is_flag=True,
+            help="Of a CNF: make inputs of the free variables only; the others follow from them.",
+        ),
+        click.option(
             "--from",
             "from_format",
             metavar="FORMAT",
@@ -63,11 +68,14 @@ def load_spec(
     constants: tuple[str, ...],
     domain: str | None,
     from_format: str | None,
+    free_inputs: bool = False,
 ) -> Spec:
     """The spec from a file, standard input ('-'), or the command line."""
     if where is not None:
         if path is not None or from_format is not None:
             raise UsageError("--where stands in place of SPEC: give one of them")
+        if free_inputs:
+            raise UsageError("--free-inputs goes with a CNF file, not with --where")
         from revsynth.spec.inline import inline_spec
 
         return inline_spec(where, inputs, constants, domain)
@@ -78,7 +86,12 @@ def load_spec(
         raise UsageError("name a spec file ('-' for standard input), or give --where and --input")
     from revsynth.spec.read import read_spec
 
-    return read_spec(path, from_format=from_format)
+    spec = read_spec(path, from_format=from_format)
+    if not free_inputs:
+        return spec
+    from revsynth.elaborate.free_spec import free_spec
+
+    return free_spec(spec).spec
 
 
 def load_program(file: str, negctrl: Any) -> Program:

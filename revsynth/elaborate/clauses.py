@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 from revsynth.logic.clauses.forms import factored, flat, windowed
 from revsynth.logic.clauses.free_form import free_form
@@ -55,6 +56,7 @@ class FreeInputs:
     extension: Network
 
 
+@lru_cache(maxsize=2)
 def free_inputs(clauses: Clauses, effort: str = "normal", seed: int = 0) -> FreeInputs:
     """The CNF over its free variables: the others are defined by gates found in the clauses.
 

@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 from revsynth.elaborate.clauses import FreeInputs, free_inputs
 from revsynth.errors import SpecError
 from revsynth.spec.dimacs import WORD
-from revsynth.spec.model import Clauses, Predicate, Spec, Word
+from revsynth.spec.model import Clauses, FreeVariables, Predicate, Spec, Word
 from revsynth.spec.netlist import Netlist, NetlistGate
 
 
@@ -38,7 +38,8 @@ def free_spec(spec: Spec, effort: str = "normal", seed: int = 0) -> FreeSpec:
     labels = {f"{WORD}[{bit}]": f"variable {variable}" for bit, variable in enumerate(found.variables)}
     netlist = _netlist(body.clauses, found)
     words = (Word(WORD, len(found.variables)),)
-    free = replace(spec, inputs=words, body=Predicate(netlist=netlist), labels=labels)
+    origin = FreeVariables(body.clauses, found.variables, tuple(found.extension.outputs.tolist()))
+    free = replace(spec, inputs=words, body=Predicate(netlist=netlist, free_of=origin), labels=labels)
     return FreeSpec(free, found)
 
 

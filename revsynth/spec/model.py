@@ -51,7 +51,8 @@ class Word:
 class Predicate:
     """One output bit. Exactly one of the alternatives is not None.
 
-    `table` holds one entry an input, input 0 first: 0, 1 or None where free.
+    `table` holds one entry an input, input 0 first: 0, 1 or None where free. `free_of` says where a netlist
+    over the free variables of a CNF comes from.
     """
 
     where: str | None = None
@@ -60,6 +61,20 @@ class Predicate:
     clauses: Clauses | None = None
     cover: Cover | None = None
     netlist: Netlist | None = None
+    free_of: FreeVariables | None = None
+
+
+@dataclass(frozen=True)
+class FreeVariables:
+    """What a predicate's netlist over the free variables of a CNF was made from.
+
+    variables: input bit i is variable `variables[i]`; values: the netlist's signal for every variable of the
+    CNF, variable i at place i - 1.
+    """
+
+    clauses: Clauses
+    variables: tuple[int, ...]
+    values: tuple[int, ...]
 
 
 @dataclass(frozen=True)

@@ -14,6 +14,7 @@ from revsynth.verification.cross_check import cross_check
 from revsynth.verification.decide import Decision, decide
 from revsynth.verification.evidence import Evidence, Verdict
 from revsynth.verification.matching import Roles, match
+from revsynth.verification.proof.free_variables import check_free_variables
 
 if TYPE_CHECKING:
     from revsynth.circuit.model import Circuit
@@ -47,7 +48,7 @@ def verify_program(
     roles = match(understanding, program, oracle, placement)
     if understanding.tabulated is None:
         return _verify_wide(understanding, program, roles, exact_phase, progress or (lambda _: None))
-    checked = cross_check(understanding)
+    checked = [*cross_check(understanding), *check_free_variables(spec)]
     decision = decide(program.circuit, roles, understanding.function, progress or (lambda _: None))
     links = (*checked, *_links(decision, roles, program.circuit))
     teller = Teller(understanding, program.circuit, decision.demand)
@@ -78,7 +79,7 @@ def _verify_wide(
     if decision.failure is not None and decision.lifted is not None and decision.translation is not None:
         teller = WideTeller(understanding, program.circuit, roles, decision.lifted, decision.translation)
         counterexample = teller.tell(decision.failure)
-    links = list(decision.links)
+    links = [*decision.links, *check_free_variables(understanding.spec)]
     if roles.foreign:
         links.insert(0, _foreign(roles))
     if holds and exact_phase and abs(decision.global_phase) > PHASE_TOLERANCE:

@@ -32,7 +32,7 @@ BAD: dict[str, str | bytes] = {
     "zeros": b"\x00" * 10,
     "another encoding": (IN + PREDICATE).encode("utf-16"),
     "a word of no bits": "[inputs]\na = 0\n" + PREDICATE,
-    "25 bits": "[inputs]\na = 25\n" + PREDICATE,
+    "too many bits": "[inputs]\na = 70000\n" + PREDICATE,
     "10**9 words": "[inputs]\na = { bits = 1, count = 1000000000 }\n" + PREDICATE,
     "a huge width": f"[inputs]\na = {'9' * 30}\n" + PREDICATE,
     "a huge number": f"[constants]\nc = {'9' * 5000}\n" + IN + PREDICATE,

@@ -105,6 +105,6 @@ def test_methods_go_by_their_names_alone_and_variants_stand_apart() -> None:
     found = built.to_json()
     assert found["method"] == built.method
     assert found["variant"] == built.variant
-    names = {"linear", "products", "transform"}
+    names = {"linear", "network", "products", "transform"}
     assert {found["method"], *(trial["method"] for trial in found["tried"])} <= names
     assert f"// method: {built.method}, {built.variant}\n" in built.text()
