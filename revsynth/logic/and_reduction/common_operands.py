@@ -11,11 +11,11 @@ before it, so that no cycle can arise.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 
 from revsynth.logic.and_reduction.form_builder import Form, FormBuilder, fits
-from revsynth.logic.network import Literal, Network
+from revsynth.logic.network import FALSE, Literal, Network
 
 Bits = int
 """A set of ANDs or of readers, by number."""
@@ -47,14 +47,19 @@ class Forms:
 
 @dataclass
 class Family:
-    """ANDs with the common operand `common`; members, a bit an AND, each common * rest + extra."""
+    """ANDs with the common operand `common`; members, a bit an AND, each common * rest + extra.
+
+    basis and made serve the rebuilding: made are the products so far, after the common operand itself; a row
+    of the basis is a form and which of `made` add up to its product with the common operand.
+    """
 
     common: Form
     members: Bits
     rests: dict[int, Form]
     extras: dict[int, Form]
     saved: int = 0
-    basis: dict[int, tuple[Form, Form]] = field(default_factory=dict)
+    basis: dict[int, tuple[Form, Bits]] = field(default_factory=dict)
+    made: list[Literal] = field(default_factory=list)
 
 
 @dataclass
@@ -77,23 +82,31 @@ class Bundle:
 
 def forms_of(network: Network) -> Forms:
     """The forms of a network, equal products merged."""
-    builder = FormBuilder(network.inputs)
-    outputs = builder.copy(network, [2 * i for i in range(1, network.inputs + 1)])
-    products = [operands for operands in builder.operands if operands is not None]
-    return Forms(network.inputs, products, [builder.form(literal) for literal in outputs])
+    builder, outputs = _copied(network)
+    return Forms(network.inputs, builder.products, [builder.form(literal) for literal in outputs])
 
 
 def merge_common_operands(network: Network) -> Network:
     """The network with fewer ANDs where products share an operand or are always read together."""
     if network.ands < 2 or not fits(network):
         return network
-    forms = forms_of(network.reachable())
+    old, outputs = _copied(network)
+    forms = Forms(network.inputs, old.products, [old.form(literal) for literal in outputs])
     uses = _uses(forms)
     families, taken = _families(forms, uses)
     bundles = _bundles(forms, uses, taken)
     if not families and not bundles:
         return network
-    return _rebuilt(forms, families, bundles)
+    return _Rebuilding(old, families, bundles).network(outputs)
+
+
+def _copied(network: Network) -> tuple[FormBuilder, list[Literal]]:
+    """A builder that holds the network, equal sums and products merged, no dead gates; the outputs there."""
+    for _ in range(2):
+        builder = FormBuilder(network.inputs)
+        outputs = builder.copy(network, [2 * i for i in range(1, network.inputs + 1)])
+        network = builder.build(outputs)
+    return builder, outputs
 
 
 def _uses(forms: Forms) -> list[Bits]:
@@ -262,114 +275,125 @@ def _dickson(
     return products, affine, constant
 
 
-def _rebuilt(forms: Forms, families: list[Family], bundles: list[Bundle]) -> Network:
-    """The network built anew from its forms, with the families' and bundles' own products."""
-    return _Rebuilding(forms, families, bundles).network()
-
-
 class _Rebuilding:
-    def __init__(self, forms: Forms, families: list[Family], bundles: list[Bundle]) -> None:
-        self._forms = forms
+    """The network built anew gate by gate, its XORs as they were, with the families' and bundles' products.
+
+    A node's value is a literal and the family members that are still to be added to it: these are added, as
+    one sum, where an AND or an output reads the node.
+    """
+
+    def __init__(self, old: FormBuilder, families: list[Family], bundles: list[Bundle]) -> None:
+        self._old = old
+        self._products = old.products
         self._families = families
-        self._builder = FormBuilder(forms.inputs)
+        self._builder = FormBuilder(old.inputs)
         self._family_of = {number: family for family in families for number in family.rests}
-        self._in_families = sum(family.members for family in families) << forms.first
         self._bundle_at = {bundle.members[-1]: bundle for bundle in bundles}
         self._bundled = {number for bundle in bundles for number in bundle.members}
-        self._new: list[Form] = [1 << bit for bit in range(forms.first)]
-        self._operands: list[tuple[Form, Form]] = []
+        self._values: dict[int, tuple[Literal, Bits]] = {
+            node: (2 * node, 0) for node in range(1 + old.inputs)
+        }
+        self._operands: dict[int, tuple[Literal, Literal]] = {}
 
-    def network(self) -> Network:
-        """Goes through the ANDs in order, then the outputs."""
-        for number, (one, other) in enumerate(self._forms.products):
-            a, b = self._moved(one), self._moved(other)
-            self._operands.append((a, b))
-            if number in self._bundled:
-                bundle = self._bundle_at.get(number)
-                self._new.append(0 if bundle is None else self._bundle_sum(bundle))
-            elif number in self._family_of:
-                self._new.append(0)
+    def network(self, outputs: list[Literal]) -> Network:
+        """Goes through the gates in order, then the outputs."""
+        number = 0
+        for node in range(1 + self._old.inputs, len(self._old.forms)):
+            gate = self._old.gate_of(2 * node)
+            assert gate is not None
+            is_xor, left, right = gate
+            if is_xor:
+                (a, some), (b, others) = self._values[left >> 1], self._values[right >> 1]
+                self._values[node] = self._builder.xor(a, b), some ^ others
             else:
-                self._new.append(self._product(a, b))
-        literals: list[Literal] = [
-            self._builder.realise(self._moved(output)) for output in self._forms.outputs
-        ]
-        return self._builder.build(literals)
+                self._values[node] = self._product_value(number, self._read(left), self._read(right))
+                number += 1
+        return self._builder.build([self._read(literal) for literal in outputs])
 
-    def _product(self, a: Form, b: Form) -> Form:
-        builder = self._builder
-        return builder.form(builder.and_(builder.realise(a), builder.realise(b)))
+    def _product_value(self, number: int, a: Literal, b: Literal) -> tuple[Literal, Bits]:
+        self._operands[number] = a, b
+        if number in self._bundled:
+            bundle = self._bundle_at.get(number)
+            return (FALSE if bundle is None else self._bundle_sum(bundle)), 0
+        if number in self._family_of:
+            return FALSE, 1 << number
+        return self._builder.and_(a, b), 0
 
-    def _moved(self, form: Form) -> Form:
-        """A form over the old signals as one over the new ones."""
-        total = 0
-        for bit in _members(form & ~self._in_families):
-            total ^= self._new[bit]
-        if form & self._in_families:
+    def _read(self, literal: Literal) -> Literal:
+        """An operand's literal, complete."""
+        value, part = self._values[literal >> 1]
+        if part:
             for family in self._families:
-                part = form >> self._forms.first & family.members
-                if part:
-                    total ^= self._family_sum(family, part)
+                mine = part & family.members
+                if mine:
+                    value = self._builder.xor(value, self._family_sum(family, mine))
+            self._values[literal >> 1] = value, 0
+        return value ^ (literal & 1)
+
+    def _sum(self, literals: Iterable[Literal]) -> Literal:
+        total: Literal = FALSE
+        for literal in literals:
+            total = self._builder.xor(total, literal)
         return total
 
-    def _member(self, family: Family, number: int, form: Form) -> Form:
-        """A family's rest or extra (an operand of the member, or 0) over the new signals."""
-        if not form:
-            return 0
-        a, b = self._operands[number]
-        return a if form == self._forms.products[number][0] else b
-
-    def _family_sum(self, family: Family, part: Bits) -> Form:
+    def _family_sum(self, family: Family, part: Bits) -> Literal:
         """The sum of some members: products there already, and one more where they do not suffice."""
-        rest = total = 0
-        common = self._moved_common(family, part)
-        for number in _members(part):
-            rest ^= self._member(family, number, family.rests[number])
-            total ^= self._member(family, number, family.extras[number])
-        # common * common = common, common * 1 = common
-        product = 0
-        basis = family.basis
-        if rest & 1:
-            rest ^= 1
-            product ^= common
-        while rest and (found := basis.get(rest.bit_length())) is not None:
-            rest ^= found[0]
-            product ^= found[1]
-            if rest & 1:
-                rest ^= 1
-                product ^= common
-        if rest:
-            made = self._product(common, rest)
-            basis[rest.bit_length()] = rest, made
-            product ^= made
-        return total ^ product
+        common = self._common(family, part)
+        rest = self._sum(self._side(number, family.rests[number]) for number in _members(part))
+        extra = self._sum(
+            self._side(number, family.extras[number]) for number in _members(part) if family.extras[number]
+        )
+        form, used = self._eliminated(family, self._builder.form(rest), 0)
+        if form:
+            made = self._builder.and_(common, rest)
+            family.made.append(made)
+            name = 1 << (len(family.made) - 1)
+            family.basis[form.bit_length()] = form, used ^ name
+            used = name
+        products = [family.made[i] for i in _members(used)]
+        return self._sum([extra, *products])
 
-    def _moved_common(self, family: Family, part: Bits) -> Form:
-        """The common operand over the new signals; its own square joins the basis."""
+    def _side(self, number: int, form: Form) -> Literal:
+        """The operand of an AND that had this form."""
+        one, _ = self._products[number]
+        return self._operands[number][0 if form == one else 1]
+
+    def _common(self, family: Family, part: Bits) -> Literal:
+        """The common operand; at the first time it is noted that its products with 1 and itself are known."""
         number = next(_members(part))
-        one, other = self._forms.products[number]
+        one, other = self._products[number]
         a, b = self._operands[number]
         if one & -2 == family.common:
             common = a ^ (one & 1)
         elif other & -2 == family.common:
             common = b ^ (other & 1)
         else:
-            common = a ^ b ^ ((one ^ other) & 1)
-        if not family.basis and common & -2:
-            family.basis[common.bit_length()] = common & -2, 0 if common & 1 else common
+            common = self._builder.xor(a, b) ^ ((one ^ other) & 1)
+        if not family.made:
+            family.made.append(common)
+            form = self._builder.form(common)
+            family.basis[1] = 1, 1
+            if form > 1:
+                # common (common + c) = (1 + c) common, with c its constant
+                family.basis[form.bit_length()] = form & -2, 1 ^ (form & 1)
         return common
 
-    def _bundle_sum(self, bundle: Bundle) -> Form:
-        """The sum of a bundle's members."""
-        operands = [form for number in bundle.members for form in self._operands[number]]
+    @staticmethod
+    def _eliminated(family: Family, form: Form, used: Bits) -> tuple[Form, Bits]:
+        while form and (found := family.basis.get(form.bit_length())) is not None:
+            form ^= found[0]
+            used ^= found[1]
+        return form, used
 
-        def total(names: Bits) -> Form:
-            form = 0
-            for i in _members(names):
-                form ^= operands[i]
-            return form
+    def _bundle_sum(self, bundle: Bundle) -> Literal:
+        """The sum of a bundle's members."""
+        operands = [literal for number in bundle.members for literal in self._operands[number]]
+
+        def total(names: Bits) -> Literal:
+            return self._sum(operands[i] for i in _members(names))
 
         result = total(bundle.affine) ^ bundle.constant
         for one, other in bundle.products:
-            result ^= self._product(total(one >> 1) ^ (one & 1), total(other >> 1) ^ (other & 1))
+            product = self._builder.and_(total(one >> 1) ^ (one & 1), total(other >> 1) ^ (other & 1))
+            result = self._builder.xor(result, product)
         return result

@@ -10,14 +10,16 @@ The terms of a care network are assumed likewise, without being computed.
 
 from __future__ import annotations
 
-from revsynth.logic.and_reduction.form_builder import Form, FormBuilder, fits
+from revsynth.logic.and_reduction.form_builder import FormBuilder, fits
 from revsynth.logic.network import FALSE, TRUE, Literal, Network
 
-MOST_STEPS = 3_000_000
-"""Terms times gates up to which terms are rewritten."""
+MOST_STEPS = 400_000
+"""Terms times gates up to which terms are rewritten, where nothing else is said."""
 
 
-def propagate_conjuncts(network: Network, care: Network | None = None) -> Network:
+def propagate_conjuncts(
+    network: Network, care: Network | None = None, *, most_steps: int = MOST_STEPS
+) -> Network:
     """The network, each output that is a conjunction (or its complement) rewritten term by term.
 
     The outputs are the same wherever `care` is 1. May have more ANDs than before: what outputs shared is
@@ -28,7 +30,7 @@ def propagate_conjuncts(network: Network, care: Network | None = None) -> Networ
     gates = Gates(network)
     trees = {literal >> 1: gates.conjunction(literal & -2) for literal in gates.outputs}
     terms = sum(len(tree) for tree in trees.values())
-    if terms * network.gates > MOST_STEPS or (care is None and terms <= len(trees)):
+    if terms * network.gates > most_steps or (care is None and terms <= len(trees)):
         return network
     rewriting = _Rewriting(network.inputs)
     given = Equations(rewriting.builder)
@@ -94,7 +96,7 @@ class Equations:
 
     def __init__(self, builder: FormBuilder) -> None:
         self._builder = builder
-        self._tied: dict[int, Form] = {}
+        self._tied: dict[int, Literal] = {}
         self._mask = 0
 
     def copy(self) -> Equations:
@@ -103,20 +105,21 @@ class Equations:
         twin._tied, twin._mask = dict(self._tied), self._mask
         return twin
 
-    def reduced(self, form: Form) -> Form:
-        """The form without the signals that are tied to others."""
-        while found := form & self._mask:
+    def reduced(self, literal: Literal) -> Literal:
+        """The literal without the signals that are tied to others, the last one first."""
+        builder = self._builder
+        while found := builder.forms[literal >> 1] & self._mask:
             top = found.bit_length() - 1
-            form ^= 1 << top ^ self._tied[top]
-        return form
+            literal = builder.xor(builder.without(literal, top), self._tied[top])
+        return literal
 
-    def assume(self, form: Form) -> bool | None:
-        """Adds "this form is 1"; True where that was known, False where it cannot be, None otherwise."""
-        rest = self.reduced(form)
+    def assume(self, literal: Literal) -> bool | None:
+        """Adds "this is 1"; True where that was known, False where it cannot be, None otherwise."""
+        rest = self.reduced(literal)
         if rest < 2:
             return bool(rest)
-        top = rest.bit_length() - 1
-        self._tied[top] = rest ^ 1 << top ^ 1
+        top = self._builder.forms[rest >> 1].bit_length() - 1
+        self._tied[top] = self._builder.without(rest, top) ^ 1
         self._mask |= 1 << top
         return None
 
@@ -133,7 +136,7 @@ class _Rewriting:
         terms = care.conjunction(literal) if not literal & 1 else [literal]
         for term in terms:
             value = self._copied(care, term, equations)
-            if equations.assume(self.builder.form(value)) is False:
+            if equations.assume(value) is False:
                 return False
         return True
 
@@ -144,7 +147,7 @@ class _Rewriting:
             value = self._copied(gates, term, equations)
             # The last term is assumed by none.
             if number < len(terms) - 1:
-                known = equations.assume(self.builder.form(value))
+                known = equations.assume(value)
             else:
                 known = {FALSE: False, TRUE: True}.get(value)
             if known is False:
@@ -160,15 +163,12 @@ class _Rewriting:
         for node in gates.cone(literal >> 1):
             gate = node - gates.first
             if gate < 0:
-                here[node] = self._settled(2 * node, equations)
+                here[node] = equations.reduced(2 * node)
                 continue
             left, right = gates.left[gate], gates.right[gate]
             a, b = here[left >> 1] ^ (left & 1), here[right >> 1] ^ (right & 1)
-            made = builder.xor(a, b) if gates.is_xor[gate] else builder.and_(a, b)
-            here[node] = self._settled(made, equations)
+            if gates.is_xor[gate]:
+                here[node] = builder.xor(a, b)
+            else:
+                here[node] = equations.reduced(builder.and_(a, b))
         return here[literal >> 1] ^ (literal & 1)
-
-    def _settled(self, literal: Literal, equations: Equations) -> Literal:
-        form = self.builder.form(literal)
-        reduced = equations.reduced(form)
-        return literal if reduced == form else self.builder.realise(reduced)

@@ -42,6 +42,11 @@ class FormBuilder(NetworkBuilder):
         self._by_form: dict[Form, Literal] = {0: FALSE, **{1 << i: 2 * i for i in range(1, inputs + 1)}}
         self._products: dict[tuple[Form, Form], tuple[Literal, Form]] = {}
 
+    @property
+    def products(self) -> list[tuple[Form, Form]]:
+        """The forms of the operands of every AND, in order."""
+        return [operands for operands in self.operands if operands is not None]
+
     def form(self, literal: Literal) -> Form:
         """The form of a literal."""
         return self.forms[literal >> 1] ^ (literal & 1)
@@ -86,9 +91,9 @@ class FormBuilder(NetworkBuilder):
             return self.xor(product, self._in_plane(correction ^ sheared, a, b))
         simple = self._absorbed(one, other)
         if simple is not None:
-            made = self.realise(simple)
+            made = simple
         elif self._shortest and r.bit_count() < max(p.bit_count(), q.bit_count()):
-            self.and_(self.realise(r), (a if p.bit_count() < q.bit_count() else b) & -2)
+            self.and_(self.xor(a, b) & -2, (a if p.bit_count() < q.bit_count() else b) & -2)
             return self.and_(a, b)
         else:
             made = super().and_(a, b)
@@ -115,8 +120,8 @@ class FormBuilder(NetworkBuilder):
         both = self.xor(a, b)
         return both ^ ((form ^ self.form(both)) & 1)
 
-    def _absorbed(self, one: Form, other: Form) -> Form | None:
-        """The product as a form where an operand is an AND of signals that the other operand is made of."""
+    def _absorbed(self, one: Form, other: Form) -> Literal | None:
+        """The product where an operand is an AND of signals that the other operand is made of."""
         for outer, inner in ((one, other), (other, one)):
             top = inner.bit_length() - 1
             operands = self.operands[top]
@@ -128,8 +133,27 @@ class FormBuilder(NetworkBuilder):
             mine, theirs = places.get(outer & -2), places.get(rest & -2)
             if mine is None or theirs is None:
                 continue
-            return _two_variable_form(p, q, 1 << top, outer, rest, mine, theirs)
+            constant, of_p, of_q, of_both = _two_variable_form(p, q, outer, rest, mine, theirs)
+            total: Literal = constant
+            for form, taken in ((p, of_p), (q, of_q), (1 << top, of_both)):
+                if taken:
+                    total = self.xor(total, self.realise(form))
+            return total
         return None
+
+    def without(self, literal: Literal, atom: int) -> Literal:
+        """The literal less an atom that its form holds, made of what its XORs join on the way to the atom."""
+        total: Literal = literal & 1
+        node, target = literal >> 1, self.atoms[atom] >> 1
+        while node != target:
+            gate = self.gate_of(2 * node)
+            assert gate is not None
+            _, left, right = gate
+            if not self.forms[left >> 1] >> atom & 1:
+                left, right = right, left
+            total = self.xor(total, right)
+            node = left >> 1
+        return total
 
     def realise(self, form: Form) -> Literal:
         """A literal with this form, XORed together from atoms where there is none yet."""
@@ -157,8 +181,10 @@ def _from_plane(one: Form, other: Form, low: Form) -> Form:
     return form ^ (p if p < q else q)
 
 
-def _two_variable_form(p: Form, q: Form, atom: Form, outer: Form, rest: Form, mine: int, theirs: int) -> Form:
-    """outer * (p q + rest) as a form; outer and rest are sums of p and q given by `mine`, `theirs`."""
+def _two_variable_form(
+    p: Form, q: Form, outer: Form, rest: Form, mine: int, theirs: int
+) -> tuple[int, int, int, int]:
+    """outer * (p q + rest) over 1, p, q, p q; `mine`, `theirs`: the sums of p and q in outer and rest."""
     shape = []
     for y in (0, 1):
         for x in (0, 1):
@@ -167,9 +193,7 @@ def _two_variable_form(p: Form, q: Form, atom: Form, outer: Form, rest: Form, mi
             inner = (x & y) ^ both[theirs] ^ _constant(rest, p, q, theirs)
             shape.append(out & inner)
     constant = shape[0]
-    of_p, of_q = shape[1] ^ constant, shape[2] ^ constant
-    of_both = shape[3] ^ shape[2] ^ shape[1] ^ constant
-    return constant ^ (p if of_p else 0) ^ (q if of_q else 0) ^ (atom if of_both else 0)
+    return constant, shape[1] ^ constant, shape[2] ^ constant, shape[3] ^ shape[2] ^ shape[1] ^ constant
 
 
 def _constant(form: Form, p: Form, q: Form, place: int) -> int:

@@ -22,7 +22,7 @@ Pass = Callable[[Network], Network]
 class Effort:
     """How much work: rounds of one order of passes, and of conjunct propagation; cuts kept a node, work of
     resubstitution, gates up to which every order is tried, and up to which cuts of five leaves are used;
-    whether sums may come first even where a solver has to prove them.
+    whether sums may come first even where a solver has to prove them; steps of conjunct propagation.
     """
 
     rounds: int
@@ -32,8 +32,11 @@ class Effort:
     all_orders: int
     five_leaves: int
     always_sums: bool = False
+    steps: int = 400_000
 
 
+XORS_AN_AND = 400
+"""An AND less is not worth more XORs than this: sums over all signals could save one AND for thousands."""
 LARGE = 50_000
 """Gates from which on a third of the rounds are made."""
 SMALL = 300
@@ -41,7 +44,7 @@ SMALL = 300
 EFFORTS = {
     "low": Effort(1, 1, 6, Work(2_000_000_000, 200, 100, 50), 0, 0),
     "normal": Effort(3, 3, 10, Work(), 6_000, 120),
-    "high": Effort(8, 8, 16, Work(400_000_000_000, 3000, 5000, 2000), 40_000, 5_000, True),
+    "high": Effort(8, 8, 16, Work(400_000_000_000, 3000, 5000, 2000), 40_000, 5_000, True, 6_000_000),
 }
 
 
@@ -61,7 +64,8 @@ def fewest_ands(
     go as far as finding the marked inputs of a small predicate, which comparing structures does not want.
 
     Every rewrite is proved: see the passes. Of equal numbers of ANDs the fewest XORs, then the least depth in
-    ANDs win. Raises ValueError for another effort or a `care` of another shape.
+    ANDs win; an AND is never saved for more than XORS_AN_AND XORs. Raises ValueError for another effort or a
+    `care` of another shape.
     """
     if effort not in EFFORTS:
         raise ValueError(f"effort {effort!r}: one of {', '.join(EFFORTS)}")
@@ -85,12 +89,12 @@ def fewest_ands(
         if _score(found) >= _score(best):
             break
         best = found
-    return best
+    return best if best.ands <= start.ands else start
 
 
 def _assumed(network: Network, limits: Effort, care: Network | None, seed: int) -> Network:
     """Conjunct propagation and then all orders of passes; the network itself where no term can assume any."""
-    start = propagate_conjuncts(network, care)
+    start = propagate_conjuncts(network, care, most_steps=limits.steps)
     if start is network:
         return network
     best = start
@@ -100,7 +104,9 @@ def _assumed(network: Network, limits: Effort, care: Network | None, seed: int) 
 
 
 def _score(network: Network) -> tuple[int, int, int]:
-    return network.ands, network.xors, int(network.and_depth().max(initial=0))
+    """Smaller is better: an AND weighs as much as XORS_AN_AND XORs, and then the depth in ANDs counts."""
+    weight = XORS_AN_AND * network.ands + network.xors
+    return weight, network.ands, int(network.and_depth().max(initial=0))
 
 
 def _copied(network: Network) -> Network:

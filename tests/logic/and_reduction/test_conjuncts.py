@@ -85,12 +85,12 @@ def test_terms_of_a_tree_read_elsewhere_stay_whole() -> None:
 def test_equations_reduce_to_one_form() -> None:
     builder = FormBuilder(4)
     equations = Equations(builder)
-    # x0 + x1 = 1 and x1 + x2 + x3 = 1
-    assert equations.assume(0b00110) is None
-    assert equations.assume(0b11100) is None
-    assert equations.assume(0b11010 ^ 1) is True
-    assert equations.assume(0b11010) is False
-    assert equations.reduced(0b00100) == equations.reduced(0b00011)
+    x0, x1, x2, x3 = (builder.input(i) for i in range(4))
+    assert equations.assume(builder.xor(x0, x1)) is None
+    assert equations.assume(builder.parity([x1, x2, x3])) is None
+    assert equations.assume(builder.parity([x0, x2, x3]) ^ 1) is True
+    assert equations.assume(builder.parity([x0, x2, x3])) is False
+    assert equations.reduced(x1) == equations.reduced(x0) ^ 1
 
 
 @pytest.mark.quality
