@@ -11,7 +11,7 @@ shears are this project's own.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -19,25 +19,43 @@ from numpy.typing import NDArray
 
 from revsynth.logic.affine_classes import and_counts, chain_of
 from revsynth.logic.product_chain import ProductChain, Sum, substituted
-from revsynth.logic.tables.product_search import Found, ProductSearch, Table, Work, hits_expected, words_of
+from revsynth.logic.tables.product_search import (
+    Found,
+    ProductSearch,
+    Table,
+    Work,
+    hits_expected,
+    within_reach,
+    words_of,
+)
 
 MOST_INPUTS = 12
 _TARGETS = 256
 """Of more shears, so many are drawn."""
+_FEW = 5
+"""A function of six inputs with so few ANDs is as good as can be hoped for; most need more than four."""
 Bits = NDArray[np.uint8]
 
 
 @dataclass(frozen=True)
 class Level:
-    """How much work: `forms` affine forms tried at each number of inputs above 6 (fewer on the way down),
-    `kept` networks of g finished for one f, `work` a search, `hope` the least logarithm of the
+    """How much work: cofactors looked at with 7, 8, ... inputs (the last for all beyond) and with 6.
+
+    kept: networks of g finished for one f, and circuits tried for one g of five inputs; rounds: draws of
+    one or two random products for a network; work: that of one search; hope: the least logarithm of the
     successes expected for which a search is worth while.
     """
 
-    forms: int
+    forms: tuple[int, ...]
+    places: int
     kept: int
+    rounds: int
     work: Work
     hope: float
+
+    def forms_of(self, inputs: int) -> int:
+        """Cofactors looked at with so many inputs, 7 or more."""
+        return self.forms[min(inputs - 7, len(self.forms) - 1)]
 
 
 @dataclass(frozen=True)
@@ -76,16 +94,13 @@ def _peel_six(table: Table, search: ProductSearch, level: Level) -> ProductChain
     best = _both_apart(peeled, counts, and_counts(5, inside ^ outside))
     order = np.argsort(counts, kind="stable").tolist()
     for total in range(int(counts.min()) + 1, len(best.products)):
-        for place in order[: level.forms * 8]:
+        for place in order[: level.places]:
             products = total - 1 - int(counts[place])
             if products < 0:
                 break
-            hope = hits_expected(32, 6 + int(counts[place]), products, int(counts[place]), 32, 1 << 8)
-            if hope < level.hope - 4:
-                continue
             for variant in range(1 if products > 1 else level.kept):
                 inner = chain_of(5, int(inside[place]), 1 + variant)
-                chain = _finish(peeled[place], 6, inner, [(0, products)], search, level)
+                chain = _finish(peeled[place], 6, inner, products + 1, search, level, least=products)
                 if chain is not None:
                     return chain
     return best
@@ -104,65 +119,85 @@ def _both_apart(peeled: list[Peeled], first: NDArray[np.uint8], second: NDArray[
 
 def _peel_more(table: Table, inputs: int, search: ProductSearch, level: Level) -> ProductChain:
     values = bits_of(table, inputs)
-    best: ProductChain | None = None
-    inner_level = Level(max(1, level.forms // 2), level.kept, level.work, level.hope)
     found: list[tuple[ProductChain, Peeled]] = []
-    for number in search.sample(level.forms, 2 * ((1 << inputs) - 1)):
+    good = 0
+    for number in search.sample(level.forms_of(inputs), 2 * ((1 << inputs) - 1)):
         peeled = split(values, inputs, 1 + number // 2, number % 2)
-        found.append((peel(table_of(peeled.inside), inputs - 1, search, inner_level), peeled))
+        inner = peel(table_of(peeled.inside), inputs - 1, search, level)
+        found.append((inner, peeled))
+        good += inputs == 7 and len(inner.products) <= _FEW
+        if good == level.kept:
+            break
     found.sort(key=lambda pair: len(pair[0].products))
+    best: ProductChain | None = None
     for inner, peeled in found[: level.kept]:
-        most = 1 << inputs if best is None else len(best.products) - 1
-        plans = _plans(inputs, inner, most, level, search.compiled)
-        chain = _finish(peeled, inputs, inner, plans, search, level)
-        if chain is not None and (best is None or len(chain.products) < len(best.products)):
-            best = chain
+        most = (1 << inputs) if best is None else len(best.products) - 1
+        best = _finish(peeled, inputs, inner, most - len(inner.products), search, level) or best
     if best is None:
         raise AssertionError("enough products of enough signals reach every function")
     return best
 
 
-def _plans(
-    inputs: int, inner: ProductChain, most: int, level: Level, compiled: bool
-) -> Iterator[tuple[int, int]]:
-    """(extra random products, products) by rising sum, as far as there is hope; `most` ANDs in all."""
-    ands = len(inner.products)
-    bits = 1 << (inputs - 1)
-    targets = min(_TARGETS, bits)
-    for together in range(most - ands):
-        for extra in range(min(3, together + 1)):
-            signals = inner.signals + extra
-            tries = min(level.work.tries, 1 << (signals - 1)) if compiled else 1
-            draws = level.work.bases * tries
-            hope = hits_expected(bits, signals, together - extra, ands + extra, targets, draws)
-            if hope >= level.hope:
-                yield extra, together - extra
+@dataclass(frozen=True)
+class _Stage:
+    """The signals of g's chain and of some random products, and the targets within their reach."""
+
+    signals: list[Table]
+    added: list[tuple[Sum, Sum]]
+    rank: int
+    near: Sequence[Table]
 
 
 def _finish(
     peeled: Peeled,
     inputs: int,
     inner: ProductChain,
-    plans: Iterator[tuple[int, int]] | list[tuple[int, int]],
+    limit: int,
     search: ProductSearch,
     level: Level,
+    least: int = 0,
 ) -> ProductChain | None:
-    """f by the chain of g, with the first plan that meets some h."""
+    """f by the chain of g and, beyond it and the last product, `least` up to fewer than `limit` products.
+
+    Some of these are random ones, `extra` of them, the others made to measure. None where no h was met.
+    """
     bits = 1 << (inputs - 1)
     shears = search.sample(_TARGETS, bits) if bits > _TARGETS else list(range(bits))
     place = np.arange(bits)
     targets = [table_of(peeled.inside ^ peeled.outside[place ^ v]) for v in shears]
     tables = inner.signal_tables()
-    for extra, products in plans:
-        rounds = 4 if extra else 1
-        work = Work(max(1, level.work.bases // rounds), level.work.tries)
-        for _ in range(rounds):
-            signals = list(tables)
-            added = search.extra_products(signals, extra)
-            found = search.find(signals, targets, bits, products, work)
-            if found is not None:
-                return _assembled(peeled, inputs, inner, added, found, shears[found.target])
+    stages: list[list[_Stage]] = []
+    for together in range(least, limit):
+        for extra in range(together + 1):
+            if extra == len(stages):
+                if extra > 1 and all(stage.near for stage in stages[-2]):
+                    break
+                rounds = level.rounds if 0 < extra < 3 else 1
+                stages.append([_stage(tables, targets, bits, extra, search) for _ in range(rounds)])
+            for stage in stages[extra]:
+                found = _attempt(stage, bits, together - extra, search, level)
+                if found is not None:
+                    shear = shears[targets.index(stage.near[found.target])]
+                    return _assembled(peeled, inputs, inner, stage.added, found, shear)
     return None
+
+
+def _stage(tables: list[Table], targets: list[Table], bits: int, extra: int, search: ProductSearch) -> _Stage:
+    signals = list(tables)
+    added = search.extra_products(signals, extra)
+    return _Stage(signals, added, *within_reach(signals, targets, bits))
+
+
+def _attempt(stage: _Stage, bits: int, products: int, search: ProductSearch, level: Level) -> Found | None:
+    """A search where it promises enough."""
+    if not stage.near:
+        return None
+    work = level.work
+    tries = min(work.tries, 1 << (len(stage.signals) - 1)) if search.compiled else 1
+    draws = work.bases * tries
+    if hits_expected(stage.rank, len(stage.signals), products, len(stage.near), draws) < level.hope:
+        return None
+    return search.find(stage.signals, stage.near, bits, products, work)
 
 
 def _assembled(

@@ -180,19 +180,41 @@ def words_of(tables: Sequence[Table], bits: int) -> NDArray[np.uint64]:
     return np.frombuffer(flat, dtype="<u8").astype(np.uint64).reshape(len(tables), -1)
 
 
-def hits_expected(bits: int, signals: int, products: int, ands: int, targets: int, draws: float) -> float:
+def within_reach(
+    signals: Sequence[Table], targets: Sequence[Table], bits: int
+) -> tuple[int, Sequence[Table]]:
+    """The rank of all products of two signals, and the targets that are sums of such products at all."""
+    rows: dict[int, Table] = {}
+
+    def residue(table: Table) -> Table:
+        while table:
+            row = rows.get(table.bit_length())
+            if row is None:
+                break
+            table ^= row
+        return table
+
+    for place, one in enumerate(signals):
+        for other in signals[: place + 1]:
+            rest = residue(one & other)
+            if rest:
+                rows[rest.bit_length()] = rest
+                if len(rows) == bits:
+                    return bits, targets
+    return len(rows), [table for table in targets if not residue(table)]
+
+
+def hits_expected(reach: int, signals: int, products: int, targets: int, draws: float) -> float:
     """The logarithm (base 2) of the number of successes to expect of as many draws of left factors.
 
-    `signals` with the constant, `ands` products among them. With d = signals - 1, the products of t left
-    factors with all signals have rank t d - t (t + 1) / 2 beyond the d + 1 signals themselves; all products
-    of two signals have at most 1 + d (d + 1) / 2 - 3 ands, since a b = p gives p a = p and p b = p.
+    reach: the rank of all products of two signals, in whose span the targets lie; `signals` with the
+    constant. With d = signals - 1, the products of t left factors with all signals have rank
+    t d - t (t + 1) / 2 beyond the d + 1 signals themselves.
     """
     d = signals - 1
     t = min(products, d)
-    rank = min(t * d - t * (t + 1) // 2 + d + 1, bits)
-    pairs = 1 + d * (d + 1) // 2 - 3 * ands
-    reachable = min(0.0, math.log2(targets) - max(0, bits - pairs))
-    return min(math.log2(targets * draws) - (bits - rank), reachable + 6)
+    rank = min(t * d - t * (t + 1) // 2 + d + 1, reach)
+    return math.log2(targets * draws) - (reach - rank)
 
 
 def _products_echelon(signals: Sequence[Table], factors: Sequence[Sum], bits: int) -> Echelon:

@@ -11,7 +11,7 @@ from collections.abc import Sequence
 
 from revsynth.logic.product_chain import ProductChain, Sum, sum_table
 from revsynth.logic.tables.peeling import Level
-from revsynth.logic.tables.product_search import Echelon, ProductSearch, Table, hits_expected
+from revsynth.logic.tables.product_search import Echelon, ProductSearch, Table, hits_expected, within_reach
 from revsynth.logic.tables.small_chains import chain_with
 
 _MOST_TARGETS = 255
@@ -47,12 +47,13 @@ def several_outputs(
         targets = _targets(signals, tables, bits, search)
         if not targets:
             return chain_with(inputs, signals, products, tables, bits)
-        targets = _within_reach(signals, targets, bits)
-        if not targets and extra == 0:
+        rank, near = within_reach(signals, targets, bits)
+        if not near and extra == 0:
             return None
         step: Sequence[tuple[Sum, Sum]] | None
-        if targets:
-            step = _step(signals, targets, bits, len(products), search, level, most, structured=extra == 0)
+        if near:
+            left = most - len(products)
+            step = _step(signals, near, bits, rank, search, level, left, structured=extra == 0)
             if step is None:
                 return None
             for left, right in step:
@@ -61,28 +62,6 @@ def several_outputs(
             step = search.extra_products(signals, 1)
         products.extend(step)
     return None
-
-
-def _within_reach(signals: Sequence[Table], targets: list[Table], bits: int) -> list[Table]:
-    """The targets that are sums of products of two signals at all."""
-    rows: dict[int, Table] = {}
-
-    def residue(table: Table) -> Table:
-        while table:
-            row = rows.get(table.bit_length())
-            if row is None:
-                break
-            table ^= row
-        return table
-
-    for place, one in enumerate(signals):
-        for other in signals[: place + 1]:
-            rest = residue(one & other)
-            if rest:
-                rows[rest.bit_length()] = rest
-                if len(rows) == bits:
-                    return targets
-    return [table for table in targets if not residue(table)]
 
 
 def _targets(
@@ -112,18 +91,18 @@ def _targets(
 
 def _step(
     signals: list[Table],
-    targets: list[Table],
+    targets: Sequence[Table],
     bits: int,
-    ands: int,
+    rank: int,
     search: ProductSearch,
     level: Level,
     most: int,
     structured: bool,
 ) -> tuple[tuple[Sum, Sum], ...] | None:
-    """The products that bring one more sum of outputs into the span."""
-    for count in range(1, most - ands + 1):
+    """At most `most` products that bring one more sum of outputs into the span; rank: see `within_reach`."""
+    for count in range(1, most + 1):
         tries = min(level.work.tries, 1 << min(len(signals) - 1, 40)) if search.compiled else 1
-        hope = hits_expected(bits, len(signals), count, ands, len(targets), level.work.bases * tries)
+        hope = hits_expected(rank, len(signals), count, len(targets), level.work.bases * tries)
         if hope < level.hope and not (structured and count <= 2):
             continue
         found = search.find(signals, targets, bits, count, level.work)

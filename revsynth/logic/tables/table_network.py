@@ -45,10 +45,29 @@ class Budget:
     nodes: int
 
 
+_ONCE = ((1,), 1, 1, 1)
 BUDGETS: dict[str, Budget] = {
-    "low": Budget(99, Level(2, 1, Work(4, 1), 0.5), Level(1, 1, Work(4, 1), 0.5), 1, 50),
-    "normal": Budget(6, Level(3, 2, Work(8, 1 << 12), -1.0), Level(1, 1, Work(8, 1 << 12), -1.0), 2, 300),
-    "high": Budget(5, Level(8, 4, Work(64, 1 << 14), -2.0), Level(1, 1, Work(32, 1 << 14), -1.0), 6, 3000),
+    "low": Budget(
+        compiled_from=99,
+        peeling=Level(forms=(1, 2, 1), places=16, kept=1, rounds=1, work=Work(4, 1), hope=0.5),
+        outputs=Level(*_ONCE, work=Work(4, 1), hope=0.5),
+        starts=1,
+        nodes=50,
+    ),
+    "normal": Budget(
+        compiled_from=6,
+        peeling=Level(forms=(3, 3, 2, 1), places=24, kept=1, rounds=4, work=Work(8, 1 << 12), hope=0.0),
+        outputs=Level(*_ONCE, work=Work(8, 1 << 12), hope=-1.0),
+        starts=2,
+        nodes=300,
+    ),
+    "high": Budget(
+        compiled_from=5,
+        peeling=Level(forms=(16, 4, 2, 1), places=126, kept=4, rounds=24, work=Work(16, 1 << 14), hope=1.0),
+        outputs=Level(*_ONCE, work=Work(32, 1 << 14), hope=-1.0),
+        starts=6,
+        nodes=3000,
+    ),
 }
 
 
