@@ -4,8 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 
-from revsynth.cascade.price import cascade_t
-from revsynth.choice import Candidate, Trial, cheapest, estimate, hopeless, within
+from revsynth.choice import Candidate, Trial, cheapest, estimate, hopeless, planned_t, within
 from revsynth.errors import BudgetError
 from revsynth.lowering import lower
 from revsynth.options import Aim, BuildOptions, Oracle
@@ -35,13 +34,14 @@ def lower_the_cheapest(
     candidates: list[Candidate] = []
     tried: list[Trial] = []
     misses: list[str] = []
-    for block in sorted(blocks, key=lambda block: estimate(block, options)):
-        if candidates and (len(block.cascade) > LARGE or hopeless(block, candidates, options)):
-            tried.append(Trial(block.method, t=cascade_t(block.cascade, options.uncompute), estimated=True))
+    planned = [(block, planned_t(block, oracle, options)) for block in blocks]
+    for block, t in sorted(planned, key=lambda entry: estimate(entry[0], entry[1], options)):
+        if candidates and (len(block.cascade) > LARGE or hopeless(t, candidates, options)):
+            tried.append(Trial(block.method, t=t, estimated=True))
             continue
         progress(f"{block.method}: lowering {len(block.cascade)} gates")
         try:
-            candidates.append(lower_within(block, registers_for(block), oracle, options))
+            candidates.append(lower_within(block, t, registers_for(block), oracle, options))
             tried.append(Trial.of(candidates[-1]))
         except BudgetError as error:
             misses.append(f"{block.method}: {error}")
@@ -51,7 +51,9 @@ def lower_the_cheapest(
     return cheapest(candidates, options), tried
 
 
-def lower_within(block: Block, registers: Registers, oracle: Oracle, options: BuildOptions) -> Candidate:
+def lower_within(
+    block: Block, planned: int, registers: Registers, oracle: Oracle, options: BuildOptions
+) -> Candidate:
     """The block lowered for the aim; where that misses a budget for T or depth, for that budget instead.
 
     Raises BudgetError saying what the block needs at least, as far as was found.
@@ -67,7 +69,7 @@ def lower_within(block: Block, registers: Registers, oracle: Oracle, options: Bu
             max_qubits=qubits,
             aim=aim,
         )
-        return Candidate.of(block, prepare(circuit, options.format))
+        return Candidate.of(block, prepare(circuit, options.format), planned)
 
     found = attempt(options.aim, options.qubits)
     miss = within(found, options)

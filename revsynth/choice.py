@@ -13,7 +13,7 @@ import numpy as np
 
 from revsynth.cascade.line_values import LineValues
 from revsynth.cascade.model import PHASE
-from revsynth.cascade.price import cascade_t
+from revsynth.cascade.price import held_t
 from revsynth.circuit.cost import Cost, measure
 from revsynth.circuit.model import Circuit
 from revsynth.options import Aim, BuildOptions, Oracle
@@ -60,16 +60,17 @@ class Trial:
 
 @dataclass(frozen=True)
 class Candidate:
-    """A block, the circuit it became, and what that circuit costs."""
+    """A block, the circuit it became, what that circuit costs, and the T gates that were planned."""
 
     block: Block
     circuit: Circuit
     cost: Cost
+    planned: int
 
     @classmethod
-    def of(cls, block: Block, circuit: Circuit) -> Candidate:
+    def of(cls, block: Block, circuit: Circuit, planned: int) -> Candidate:
         """Measure the circuit."""
-        return cls(block, circuit, measure(circuit))
+        return cls(block, circuit, measure(circuit), planned)
 
 
 def and_count(block: Block, oracle: Oracle) -> int:
@@ -94,10 +95,14 @@ def and_count(block: Block, oracle: Oracle) -> int:
     return total
 
 
-def estimate(block: Block, options: BuildOptions) -> tuple[int, ...]:
-    """The sort key of a block before lowering, cheapest first."""
+def planned_t(block: Block, oracle: Oracle, options: BuildOptions) -> int:
+    """The estimate of a block's T gates before it is lowered."""
+    return held_t(block.cascade, known_lines(block, oracle), options.uncompute)
+
+
+def estimate(block: Block, t: int, options: BuildOptions) -> tuple[int, ...]:
+    """The sort key of a block with that many planned T gates before lowering, cheapest first."""
     cascade = block.cascade
-    t = cascade_t(cascade, options.uncompute)
     keys: dict[Aim, tuple[int, ...]] = {
         "t": (t, len(cascade), cascade.lines),
         "qubits": (cascade.lines, t, len(cascade)),
@@ -107,14 +112,13 @@ def estimate(block: Block, options: BuildOptions) -> tuple[int, ...]:
     return keys[options.aim]
 
 
-def hopeless(block: Block, candidates: list[Candidate], options: BuildOptions) -> bool:
-    """Whether lowering the block cannot pay: its estimate in T is over twice what is at hand.
+def hopeless(t: int, candidates: list[Candidate], options: BuildOptions) -> bool:
+    """Whether lowering a block cannot pay: its planned T gates are over twice what is at hand.
 
     Sharing products saves a third of the estimate at most on what was measured, so half is a safe margin.
     """
     if options.aim != "t":
         return False
-    t = cascade_t(block.cascade, options.uncompute)
     return all(t > 2 * _t(candidate, options) + 20 for candidate in candidates)
 
 
@@ -126,7 +130,7 @@ def cheapest(candidates: list[Candidate], options: BuildOptions) -> Candidate:
 def _t(candidate: Candidate, options: BuildOptions) -> int:
     """T gates, those that Toffolis and whole cascade gates will take included."""
     if options.gates == "cascade":
-        return cascade_t(candidate.block.cascade, options.uncompute)
+        return candidate.planned
     return candidate.cost.t + candidate.cost.toffoli * (4 if options.uncompute == "measured" else 7)
 
 

@@ -9,7 +9,7 @@ from dataclasses import replace
 from revsynth.choice import Trial
 from revsynth.errors import BudgetError, UsageError
 from revsynth.options import BuildOptions, Effort
-from revsynth.shortening import shorten
+from revsynth.shortening import shorten, without_idle_work
 from revsynth.spec.limits import MAX_INPUT_BITS
 from revsynth.synthesis.interface import Block, Method, Task
 from revsynth.synthesis.keeping import keep_products
@@ -21,6 +21,11 @@ _LADDER: dict[Effort, tuple[Effort, ...]] = {
     "high": ("low", "normal", "high"),
 }
 """Levels of effort in turn; without a time limit the cheap ones are skipped, see `_levels`."""
+
+
+SHORT = 400
+"""Networks of so many gates are reduced as well, beside the plan as it is: the rules see no lines known to be
+in 0, and what they join may cost more than the products held."""
 
 
 class _TimeIsUpError(Exception):
@@ -76,8 +81,11 @@ class Gathering:
             self._too_large = True
             return
         for block in found:
-            self._progress(f"{block.method}: reducing {len(block.cascade)} gates")
-            self._add(shorten(block, task.oracle, self.options, self._progress))
+            if method in WIDE:
+                self._add(without_idle_work(block))
+            if method not in WIDE or len(block.cascade) <= SHORT:
+                self._progress(f"{block.method}: reducing {len(block.cascade)} gates")
+                self._add(shorten(block, task.oracle, self.options, self._progress))
 
     def _add(self, block: Block) -> None:
         kept = keep_products(block) if self.task.oracle == "compute" else None

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from revsynth.cascade.line_values import LineValues
 from revsynth.cascade.model import PHASE, Cascade
 from revsynth.options import Uncompute
 
@@ -26,3 +27,32 @@ def cascade_t(cascade: Cascade, uncompute: Uncompute) -> int:
     controls = np.diff(cascade.offset) - (cascade.target == PHASE)
     sizes, counts = np.unique(controls, return_counts=True)
     return sum(gate_t(int(size), uncompute) * int(count) for size, count in zip(sizes, counts, strict=True))
+
+
+def held_t(cascade: Cascade, known: dict[int, int], uncompute: Uncompute) -> int:
+    """The same, aware of lines that start in a `known` value.
+
+    A product of two onto a line in 0 takes 4 T, and so does bringing it back, which a measurement does
+    for none.
+    """
+    if not known or not np.any(np.diff(cascade.offset) >= 2):
+        return cascade_t(cascade, uncompute)
+    state = LineValues.start(cascade.lines, known)
+    total = 0
+    for target, controls in cascade:
+        if target == PHASE:
+            total += gate_t(len(controls) - 1, uncompute)
+            continue
+        if len(controls) < 2:
+            state.apply(controls, (target,))
+            continue
+        from_zero = state.is_zero(target)
+        state.apply(controls, (target,))
+        to_zero = state.is_zero(target)
+        price = gate_t(len(controls), uncompute)
+        if to_zero and not from_zero and uncompute == "measured":
+            price -= 4
+        elif (from_zero or to_zero) and uncompute == "unitary":
+            price -= 3
+        total += price
+    return total

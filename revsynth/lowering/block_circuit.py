@@ -14,7 +14,7 @@ from revsynth.lowering.constructions import Style
 from revsynth.lowering.expand import expand
 from revsynth.lowering.fan_out import gather_units, units_of
 from revsynth.lowering.multi_control import write_cascade
-from revsynth.lowering.plan import steps_of
+from revsynth.lowering.plan import clean_products, steps_of
 from revsynth.lowering.scratch import check_budget
 from revsynth.lowering.sharing import order_units
 from revsynth.lowering.variants import cheapest
@@ -54,7 +54,12 @@ def lower(
     style = Style(gates, uncompute, aim)
     once = gates == "clifford+t" or aim != "gates"
     units = gather_units(lines, block.cascade) if once else units_of(block.cascade)
-    steps = steps_of(order_units(units, lines), lines, known_lines(block, oracle))
+    known = known_lines(block, oracle)
+    steps = steps_of(order_units(units, lines), lines, known)
+    if known:
+        given = steps_of(units, lines, known)
+        if clean_products(given) > clean_products(steps):
+            steps = given
     best = cheapest(steps, lines, max_qubits, style)
     written = cancel_neighbours(expand(best.gates, style), lines + best.scratch)
     return _circuit(written, registers, block.work + best.scratch, best.minus)

@@ -76,6 +76,11 @@ def steps_of(units: Sequence[Unit], lines: int, known: dict[int, int]) -> list[S
     return steps
 
 
+def clean_products(steps: Sequence[Step]) -> int:
+    """How many products are written on a line in 0 or bring one back: an order of gates may spoil that."""
+    return sum(len(step.controls) >= 2 and step.tip in (Tip.FROM_ZERO, Tip.TO_ZERO) for step in steps)
+
+
 def _idle_zeros(unit: Unit, zero_lines: set[int]) -> tuple[int, ...]:
     """The first of the lines in 0 that the unit does not touch: as many as any construction could use."""
     touched = {*unit.targets, *(c >> 1 for c in unit.controls)}
