@@ -14,11 +14,17 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 
+import numpy as np
+
 from revsynth.logic.and_reduction.form_builder import Form, FormBuilder, fits
 from revsynth.logic.network import FALSE, Literal, Network
 
 Bits = int
 """A set of ANDs or of readers, by number."""
+
+
+TRANSPOSED = 1024
+"""Readers transposed at a time, a multiple of 8."""
 
 
 @dataclass
@@ -110,15 +116,19 @@ def _copied(network: Network) -> tuple[FormBuilder, list[Literal]]:
 
 
 def _uses(forms: Forms) -> list[Bits]:
-    """For each AND the readers that name it."""
-    uses = [0] * len(forms.products)
-    for number, form in enumerate(forms.readers()):
-        rest = form >> forms.first
-        while rest:
-            low = rest & -rest
-            uses[low.bit_length() - 1] |= 1 << number
-            rest ^= low
-    return uses
+    """For each AND the readers that name it: the readers' forms transposed, some at a time."""
+    ands = len(forms.products)
+    size = (ands + 7) // 8
+    readers = list(forms.readers())
+    columns = np.zeros((ands, (len(readers) + 7) // 8), dtype=np.uint8)
+    for begin in range(0, len(readers), TRANSPOSED):
+        some = readers[begin : begin + TRANSPOSED]
+        rows = b"".join((form >> forms.first).to_bytes(size, "little") for form in some)
+        packed = np.frombuffer(rows, dtype=np.uint8).reshape(len(some), size)
+        bits = np.unpackbits(packed, axis=1, count=ands, bitorder="little")
+        block = np.packbits(bits.T, axis=1, bitorder="little")
+        columns[:, begin // 8 : begin // 8 + block.shape[1]] = block
+    return [int.from_bytes(column.tobytes(), "little") for column in columns]
 
 
 def _families(forms: Forms, uses: list[Bits]) -> tuple[list[Family], Bits]:
@@ -127,13 +137,12 @@ def _families(forms: Forms, uses: list[Bits]) -> tuple[list[Family], Bits]:
     for number, (one, other) in enumerate(forms.products):
         for line in ((one & -2), (other & -2), (one ^ other) & -2):
             by_operand.setdefault(line, []).append(number)
-    readers = list(forms.readers())
     found = []
     for common, members in by_operand.items():
         if len(members) < 2:
             continue
         family = _family(forms, common, members)
-        rank = _rank(forms, family, uses, readers)
+        rank = _rank(family, uses)
         family.saved = len(members) - rank
         if family.saved > 0:
             found.append(family)
@@ -162,31 +171,45 @@ def _family(forms: Forms, common: Form, members: list[int]) -> Family:
     return Family(common, sum(1 << number for number in members), rests, extras)
 
 
-def _rank(forms: Forms, family: Family, uses: list[Bits], readers: list[Form]) -> int:
+def _rank(family: Family, uses: list[Bits]) -> int:
     """How many products the readers of a family need."""
     basis: dict[int, Form] = {}
     for form in (1, family.common & -2):
         basis[form.bit_length()] = form
-    seen, rank = set(), 0
-    together = 0
-    for number in family.rests:
-        together |= uses[number]
-    while together:
-        low = together & -together
-        together ^= low
-        part = readers[low.bit_length() - 1] >> forms.first & family.members
-        if part in seen:
-            continue
-        seen.add(part)
+    rests = list(family.rests.values())
+    rank = 0
+    for part in _parts([uses[number] for number in family.rests]):
         total = 0
-        for number in _members(part):
-            total ^= family.rests[number]
+        for place in _members(part):
+            total ^= rests[place]
         while total and (found := basis.get(total.bit_length())) is not None:
             total ^= found
         if total:
             basis[total.bit_length()] = total
             rank += 1
+            if rank == len(rests):
+                break
     return rank
+
+
+def _parts(columns: list[Bits]) -> list[Bits]:
+    """The different nonempty sets of members that some reader reads together; columns: readers by member."""
+    if len(columns) <= 4:
+        everybody = 0
+        for column in columns:
+            everybody |= column
+        groups = [(0, everybody)]
+        for place, column in enumerate(columns):
+            split = [(part, group & ~column) for part, group in groups]
+            split += [(part | 1 << place, group & column) for part, group in groups]
+            groups = [(part, group) for part, group in split if group]
+        return [part for part, _ in groups]
+    size = (max(column.bit_length() for column in columns) + 7) // 8
+    packed = b"".join(column.to_bytes(size, "little") for column in columns)
+    bits = np.unpackbits(np.frombuffer(packed, dtype=np.uint8).reshape(len(columns), size), axis=1)
+    rows = np.unique(np.packbits(bits.T, axis=1, bitorder="little"), axis=0)
+    parts = [int.from_bytes(row.tobytes(), "little") for row in rows]
+    return [part for part in parts if part]
 
 
 def _members(part: Bits) -> Iterator[int]:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import subprocess
+import sys
 from random import Random
 
 import numpy as np
@@ -151,3 +153,21 @@ def test_wrong_arguments_are_named() -> None:
         fewest_ands(network, effort="most")
     with pytest.raises(ValueError, match="care must have the inputs of the network and one output"):
         fewest_ands(network, care=network)
+
+
+def test_small_networks_wait_for_neither_compiler_nor_solver() -> None:
+    script = (
+        "import sys; from revsynth.logic.and_reduction import fewest_ands; "
+        "from revsynth.logic.network_builder import NetworkBuilder; b = NetworkBuilder(8); "
+        "x = [b.input(i) for i in range(8)]; row = [i * i % 7 & 1 for i in range(256)]\n"
+        "for bit in x: row = [b.mux(bit, row[i + 1], row[i]) for i in range(0, len(row), 2)]\n"
+        "after = fewest_ands(b.build(row)); sys.exit(len({'numba', 'pysat', 'pyeda'} & set(sys.modules)))"
+    )
+    assert subprocess.run([sys.executable, "-c", script], check=False).returncode == 0
+
+
+def test_an_and_is_not_saved_for_thousands_of_xors() -> None:
+    network = naive_networks.product(10)
+    after = fewest_ands(network)
+    assert after.ands <= 190
+    assert after.xors <= 2 * after.ands
