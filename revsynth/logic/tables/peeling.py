@@ -34,6 +34,8 @@ _TARGETS = 256
 """Of more shears, so many are drawn."""
 _FEW = 5
 """A function of six inputs with so few ANDs is as good as can be hoped for; most need more than four."""
+_SPARSE = 2
+"""With more ANDs in g, an h that needs none beyond them is too rare to look for."""
 Bits = NDArray[np.uint8]
 
 
@@ -98,6 +100,8 @@ def _peel_six(table: Table, search: ProductSearch, level: Level) -> ProductChain
             products = total - 1 - int(counts[place])
             if products < 0:
                 break
+            if products == 0 and counts[place] > _SPARSE:
+                continue
             for variant in range(1 if products > 1 else level.kept):
                 inner = chain_of(5, int(inside[place]), 1 + variant)
                 chain = _finish(peeled[place], 6, inner, products + 1, search, level, least=products)

@@ -63,7 +63,7 @@ BUDGETS: dict[str, Budget] = {
     ),
     "high": Budget(
         compiled_from=5,
-        peeling=Level(forms=(16, 4, 2, 1), places=126, kept=4, rounds=24, work=Work(16, 1 << 14), hope=1.0),
+        peeling=Level(forms=(16, 4, 2, 1), places=126, kept=4, rounds=64, work=Work(16, 1 << 14), hope=1.0),
         outputs=Level(*_ONCE, work=Work(32, 1 << 14), hope=-1.0),
         starts=6,
         nodes=3000,
@@ -134,7 +134,13 @@ def _ways(
         if complete:
             return
     else:
-        yield from _known_structure(tables, inputs, budget, complete)
+        power = _power_map(tables, inputs) if complete else None
+        if power is not None:
+            yield power
+            return
+        small = small_chain(tables, inputs, budget.nodes) if inputs <= CLASS_INPUTS else None
+        if small is not None:
+            yield "small chain", small
     yield from _by_random_products(tables, care, inputs, budget, seed, compiled)
 
 
@@ -159,19 +165,13 @@ def _cheapest_completion(table: Table, care: Table, inputs: int, search: Product
     return int(completed[int(np.argmin(and_counts(inputs, completed)))])
 
 
-def _known_structure(
-    tables: list[Table], inputs: int, budget: Budget, complete: bool
-) -> Iterator[tuple[str, ProductChain]]:
-    if complete and len(tables) == inputs and LEAST_BITS <= inputs <= MOST_BITS:
-        values = [sum((table >> x & 1) << j for j, table in enumerate(tables)) for x in range(1 << inputs)]
-        power = recognise(values, inputs)
-        chain = None if power is None else power_map_chain(power)
-        if power is not None and chain is not None:
-            yield f"power map x^{power.exponent}", chain
-    if inputs <= CLASS_INPUTS:
-        small = small_chain(tables, inputs, budget.nodes)
-        if small is not None:
-            yield "small chain", small
+def _power_map(tables: list[Table], inputs: int) -> tuple[str, ProductChain] | None:
+    if len(tables) != inputs or not LEAST_BITS <= inputs <= MOST_BITS:
+        return None
+    values = [sum((table >> x & 1) << j for j, table in enumerate(tables)) for x in range(1 << inputs)]
+    power = recognise(values, inputs)
+    chain = None if power is None else power_map_chain(power)
+    return None if power is None or chain is None else (f"power map x^{power.exponent}", chain)
 
 
 def _by_random_products(
