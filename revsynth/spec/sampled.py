@@ -260,9 +260,7 @@ def _numbers(columns: Words) -> NDArray[Any]:
     limbs = np.zeros((-(-len(raw) // 8) * 8, raw.shape[1]), dtype=np.uint8)
     limbs[: len(raw)] = raw
     parts = np.ascontiguousarray(limbs.T).view("<u8").T
-    if len(columns) <= _SMALL_BITS:
-        return parts[0].astype(np.int64)
-    found: NDArray[Any] = parts[0].astype(object)
+    found: NDArray[Any] = parts[0].astype(np.int64 if len(columns) <= _SMALL_BITS else object)
     for place, part in enumerate(parts[1:], 1):
         found = found | part.astype(object) << 64 * place
     return found

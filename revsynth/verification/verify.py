@@ -75,18 +75,20 @@ def _verify_wide(
     from revsynth.verification.proof.wide import decide_wide
 
     decision = decide_wide(understanding, program.circuit, roles, progress)
-    counterexample, holds = None, decision.holds
-    if decision.failure is not None and decision.lifted is not None and decision.translation is not None:
-        teller = WideTeller(understanding, program.circuit, roles, decision.lifted, decision.translation)
-        counterexample = teller.tell(decision.failure)
-    links = [*decision.links, *check_free_variables(understanding.spec)]
+    counterexample, holds = decision.told, decision.holds
+    links = list(decision.links)
     if roles.foreign:
         links.insert(0, _foreign(roles))
-    if holds and exact_phase and abs(decision.global_phase) > PHASE_TOLERANCE:
-        holds = False
-        links.append("every phase is off by one constant, and the phase is to be exact")
+    off = exact_phase and abs(decision.global_phase) > PHASE_TOLERANCE
+    if decision.lifted is not None and decision.translation is not None:
+        teller = WideTeller(understanding, program.circuit, roles, decision.lifted, decision.translation)
+        if decision.failure is not None:
+            counterexample = teller.tell(decision.failure)
+        elif holds and off:
+            holds = False
+            counterexample = teller.constant_phase(decision.global_phase, decision.reference)
     evidence = Evidence(decision.level, decision.samples, tuple(links), decision.detail)
-    return Verdict(holds, evidence, decision.global_phase if holds else 0.0, counterexample, roles.oracle)
+    return Verdict(holds, evidence, decision.global_phase, counterexample, roles.oracle)
 
 
 def _foreign(roles: Roles) -> str:

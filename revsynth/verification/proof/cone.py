@@ -27,6 +27,7 @@ class Cone:
                 stack += (left[node], right[node])
         self.variables = [literal >> 1 for literal in variables]
         self.gates = sorted(seen)
+        self._kind = kind
         self._row = {0: 0} | {node: place for place, node in enumerate((*self.variables, *self.gates), 1)}
         self._graph = Graph(
             inputs=len(self.variables),
@@ -38,6 +39,10 @@ class Cone:
 
     def __len__(self) -> int:
         return len(self.gates)
+
+    def is_xor(self, node: int) -> bool:
+        """Whether a gate is a XOR; the others are ANDs."""
+        return self._kind[node] == XOR
 
     def rows(self, inputs: Words) -> Words:
         """Values of constant, variables and gates, in this order: uint64 (1 + variables + gates, words)."""

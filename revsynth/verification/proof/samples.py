@@ -1,137 +1,155 @@
-"""The spec's gates against the spec evaluated in plain integers: at satisfying inputs first, then at others.
+"""The spec evaluated in exact integers against its gates and against the circuit, at chosen inputs.
 
-Rare predicates are 0 nearly everywhere, so random inputs alone would show little: a solver finds inputs at
-which they are 1, and their neighbours are tried too.
+At satisfying inputs first, then at their neighbours, then at random ones. Where the spec could not be
+written in gates, its values are variables of their own, filled in from the evaluation.
 """
 
 from __future__ import annotations
 
-import random
-from collections.abc import Sequence
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass
 
 import numpy as np
 
-from revsynth.spec.expectation import Expectation
 from revsynth.spec.layout import describe
+from revsynth.spec.sampled import SampledSpec, Wanted
 from revsynth.spec.understand import Understanding
-from revsynth.verification.lifting.parities import FALSE, Literal, Parities
+from revsynth.verification.lifting.parities import Literal, Parities
+from revsynth.verification.proof.choice import number, packed
 from revsynth.verification.proof.cone import Cone, Words
-from revsynth.verification.proof.encoding import Encoding
 from revsynth.verification.translation import Translation
 
-SATISFYING = 16
-"""Satisfying inputs looked for, for each of the first output bits."""
-NEIGHBOURS = 256
-"""Neighbours (one bit changed) of satisfying inputs."""
-RANDOM = 2048
-CONFLICTS = 20_000
+RANDOM = 1 << 20
+"""Random inputs, where they take about a second; fewer where one takes longer."""
+BLOCK = 1 << 18
+"""Inputs at a time."""
+TESTS = 512
+NODE_WORDS = 1 << 31
+"""Nodes times words of 64 inputs that are simulated: a second or two."""
+
+
+@dataclass(frozen=True)
+class Hit:
+    """A literal (by its place) that is 1 for these values of all variables."""
+
+    place: int
+    variables: tuple[int, ...]
 
 
 class Samples:
-    """Inputs by combined index, and the comparison at them."""
+    """Compares at inputs given, and at random ones.
+
+    variables: all free literals, the inputs' first; where the spec is not `translated`, those that stand for
+    its domain, bits and free places are the last. count: inputs compared; random: the random ones among
+    them; inside: those of the random ones that are inside the domain.
+    """
 
     def __init__(
         self,
         understanding: Understanding,
         parities: Parities,
-        inputs: Sequence[Literal],
+        variables: Sequence[Literal],
         translation: Translation,
+        *,
+        translated: bool,
+        progress: Callable[[str], None],
     ) -> None:
         self._understanding = understanding
         self._parities = parities
-        self._inputs = list(inputs)
+        self._variables = list(variables)
         self._translation = translation
-        self._draw = random.Random(0)
-        self.satisfying = self._satisfying()
-        near = self._neighbours()
-        others = [self._draw.getrandbits(len(self._inputs)) for _ in range(RANDOM)]
-        self._chosen = list(dict.fromkeys([*self.satisfying, *near, *others]))
+        self._translated = translated
+        self._progress = progress
+        self._spec = SampledSpec(understanding)
+        self.count = self.random = self.inside = 0
 
-    @property
-    def count(self) -> int:
-        """Inputs compared."""
-        return len(self._chosen)
+    def first_hit(self, chosen: Sequence[int], literals: Sequence[Literal]) -> Hit | None:
+        """Compare the spec with its gates, and find an input at which one of the literals is 1.
 
-    def _satisfying(self) -> list[int]:
-        """Inputs of the domain at which an output bit is 1, as different as a few forced bits make them."""
-        found: dict[int, None] = {}
-        encoding = Encoding(self._parities)
-        try:
-            for bit in self._translation.bits[:SATISFYING]:
-                if bit == FALSE:
-                    continue
-                for attempt in range(max(SATISFYING // len(self._translation.bits), 1)):
-                    forced = self._forced(4 * attempt)
-                    for literals in (forced, forced[: len(forced) // 4]):
-                        if encoding.ever([bit, self._translation.domain, *literals], CONFLICTS):
-                            model = encoding.model(self._inputs)
-                            found[sum(one << place for place, one in enumerate(model))] = None
-                            break
-        finally:
-            encoding.close()
-        return list(found)
-
-    def _forced(self, count: int) -> list[Literal]:
-        """Random values for some of the inputs."""
-        chosen = self._draw.sample(self._inputs, min(count, len(self._inputs) // 2))
-        return [literal ^ self._draw.getrandbits(1) for literal in chosen]
-
-    def _neighbours(self) -> list[int]:
-        size = len(self._inputs)
-        pairs = [(index, bit) for index in self.satisfying for bit in range(size)]
-        if len(pairs) > NEIGHBOURS:
-            pairs = self._draw.sample(pairs, NEIGHBOURS)
-        return [index ^ (1 << bit) for index, bit in pairs]
-
-    def check(self) -> list[str]:
-        """Compare at all of them; what was done, in words.
-
-        Raises ExpressionError where the spec is undefined at one, AssertionError at a difference.
+        chosen: inputs by combined index, before the random ones. Raises ExpressionError where the spec is
+        undefined at an input inside its domain, AssertionError where its gates are not the spec.
         """
-        translation = self._translation
-        literals = [translation.domain, *translation.bits, *translation.free]
-        cone = Cone(self._parities, self._inputs, literals)
-        values = cone.values(literals, self._words())
-        expectation = Expectation(self._understanding)
-        size = len(translation.bits)
-        for place, (index, wanted) in enumerate(zip(self._chosen, expectation.at(self._chosen), strict=True)):
-            column = [int(row[place >> 6]) >> (place & 63) & 1 for row in values]
-            inside = expectation.in_domain(index)
-            bits = tuple(
-                None if free else bit
-                for bit, free in zip(column[1 : 1 + size], column[1 + size :], strict=True)
-            )
-            if bool(column[0]) != inside or (inside and bits != wanted):
-                raise AssertionError(
-                    f"a defect of revsynth: {self._understanding.spec.source} written in gates and evaluated "
-                    f"differ at {describe(self._understanding.spec.inputs, index)}"
-                )
-        return [
-            "spec: written a second time in gates, which agree with its evaluation in plain integers at "
-            f"{len(self.satisfying)} satisfying inputs found by a solver, at neighbours of them, and at "
-            f"random ones: {self.count} in all"
-        ]
+        size = self._understanding.input_bits
+        said = [self._translation.domain, *self._translation.bits, *self._translation.free]
+        cone = Cone(self._parities, self._variables, [*said, *literals])
+        random = min(self._spec.count(RANDOM), max(64 * NODE_WORDS // max(len(cone), 1), BLOCK) & -64)
+        for inputs, lanes, drawn in self._blocks(chosen, random):
+            wanted = self._spec.wanted(inputs)
+            starts = self._starts(inputs, wanted)
+            values = cone.values([*said, *literals], starts)
+            if self._translated:
+                self._compare(wanted, values[: len(said)], inputs[:size])
+            self.count += lanes
+            if drawn:
+                self.random += lanes
+                self.inside += int(np.bitwise_count(wanted.domain).sum())
+            hit = _first(values[len(said) :], starts)
+            if hit is not None:
+                return hit
+        return None
 
-    def _words(self) -> Words:
-        return packed(self._chosen, len(self._inputs))
+    def _blocks(self, chosen: Sequence[int], random: int) -> Iterator[tuple[Words, int, bool]]:
+        """Columns of inputs, how many inputs they are, and whether they are random."""
+        size = self._understanding.input_bits
+        for begin in range(0, len(chosen), BLOCK):
+            some = chosen[begin : begin + BLOCK]
+            yield packed(some, size), len(some), False
+        draw = np.random.default_rng(0)
+        for begin in range(0, random, BLOCK):
+            self._progress(f"verifying: {begin} of {random} random inputs")
+            lanes = min(BLOCK, random - begin)
+            yield draw.integers(0, 1 << 64, (size, lanes // 64), dtype=np.uint64), lanes, True
 
-    def starts(self, variables: int) -> Words:
+    def _starts(self, inputs: Words, wanted: Wanted) -> Words:
+        """All variables: those beyond the inputs are random."""
+        rest = len(self._variables) - len(inputs)
+        words = inputs.shape[1]
+        draw = np.random.default_rng(words)
+        others = draw.integers(0, 1 << 64, (rest, words), dtype=np.uint64)
+        starts = np.concatenate([inputs, others])
+        if not self._translated:
+            rows = {literal: row for row, literal in enumerate(self._variables)}
+            said = [self._translation.domain, *self._translation.bits, *self._translation.free]
+            for literal, row in zip(said, (wanted.domain, *wanted.bits, *wanted.free), strict=True):
+                starts[rows[literal]] = row
+        return starts
+
+    def bound(self) -> str:
+        """What the random inputs support, in words (rule of three: common practice)."""
+        if not self.inside:
+            return f"{self.count} inputs are right, none of them random and inside the domain: no proof"
+        return (
+            f"{self.count} inputs are right, which is no proof: with {self.inside} random ones among them, "
+            f"at 95 % confidence at most 3 in {self.inside} of the domain's inputs are wrong (rule of three)"
+        )
+
+    def tests(self, chosen: Sequence[int]) -> Words:
         """The first of the inputs as tests for a proof, variables beyond the inputs at random."""
-        some = self._chosen[: 64 * 8]
-        some += self._chosen[: -len(some) % 64]
-        words = packed(some, len(self._inputs))
-        draw = np.random.default_rng(2)
-        rest = draw.integers(0, 1 << 64, (variables - len(self._inputs), words.shape[1]), dtype=np.uint64)
-        return np.concatenate([words, rest])
+        inputs = packed(chosen[:TESTS], self._understanding.input_bits)
+        rest = (len(self._variables) - len(inputs), inputs.shape[1])
+        others = np.random.default_rng(2).integers(0, 1 << 64, rest, dtype=np.uint64)
+        return np.concatenate([inputs, others])
+
+    def _compare(self, wanted: Wanted, values: Words, inputs: Words) -> None:
+        size = len(wanted.bits)
+        domain, bits, free = values[0], values[1 : 1 + size], values[1 + size :]
+        wrong = domain ^ wanted.domain
+        inside = np.bitwise_or.reduce((free ^ wanted.free) | ((bits ^ wanted.bits) & ~free), axis=0)
+        wrong |= inside & wanted.domain
+        hit = _first(wrong[None, :], inputs)
+        if hit is not None:
+            raise AssertionError(
+                f"a defect of revsynth: {self._understanding.spec.source} written in gates and evaluated "
+                f"differ at {describe(self._understanding.spec.inputs, number(hit.variables))}"
+            )
 
 
-def packed(indices: Sequence[int], inputs: int) -> Words:
-    """Columns of input bits, 64 indices a word."""
-    count = len(indices)
-    size = -(-inputs // 8)
-    raw = b"".join(index.to_bytes(size, "little") for index in indices)
-    octets = np.frombuffer(raw, dtype=np.uint8).reshape(count, size)
-    bits = np.unpackbits(octets, axis=1, bitorder="little")[:, :inputs].T
-    padded = np.zeros((inputs, -(-count // 64) * 64), dtype=np.uint8)
-    padded[:, :count] = bits
-    return np.packbits(padded, axis=1, bitorder="little").view("<u8").astype(np.uint64)
+def _first(rows: Words, starts: Words) -> Hit | None:
+    """The first row that is 1 somewhere, at its first place."""
+    some = np.flatnonzero(rows.any(axis=1))
+    if not len(some):
+        return None
+    row = rows[some[0]]
+    word = int(np.flatnonzero(row)[0])
+    bit = (int(row[word]) & -int(row[word])).bit_length() - 1
+    return Hit(int(some[0]), tuple(int(start[word]) >> bit & 1 for start in starts))

@@ -1,7 +1,12 @@
-"""A broken obligation in words: the input, what was expected, what came, and why it is wrong."""
+"""A broken obligation in words: the input, what was expected, what came, and why it is wrong.
+
+The circuit is run at that input through the engines for narrow specs, which confirm it and tell it in their
+words. Where they cannot follow, or the fault lies between two starts, it is told from the lifting.
+"""
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from typing import Any
 
@@ -9,14 +14,20 @@ import numpy as np
 
 from revsynth.circuit.model import Circuit
 from revsynth.one_line import one_line
-from revsynth.spec.layout import bit_names, decode
+from revsynth.spec.expectation import Expectation
+from revsynth.spec.layout import bit_names, decode, describe
 from revsynth.spec.model import Predicate, Word
 from revsynth.spec.understand import Understanding
+from revsynth.verification.counterexample import Teller
 from revsynth.verification.evidence import Counterexample
 from revsynth.verification.lifting.model import Lifted
 from revsynth.verification.lifting.parities import Literal
 from revsynth.verification.matching import Roles
+from revsynth.verification.outcome import TooLargeError
+from revsynth.verification.proof.choice import number
+from revsynth.verification.proof.chosen_demand import ChosenDemand
 from revsynth.verification.proof.cone import Cone
+from revsynth.verification.proof.running import Runner
 from revsynth.verification.proof.wide import Failure
 from revsynth.verification.translation import Translation
 
@@ -39,24 +50,53 @@ class WideTeller:
         self.translation = translation
 
     def tell(self, failure: Failure) -> Counterexample:
-        """The counterexample of a failure."""
-        obligation = failure.obligation
-        start = list(failure.variables)
-        index = sum(bit << place for place, bit in enumerate(start[: self.understanding.input_bits]))
+        """The counterexample of a failure.
+
+        Raises ExpressionError where the spec is undefined there; AssertionError where running the circuit
+        does not show the fault.
+        """
+        run = number(failure.variables[: self.lifted.start_variables])
+        runner = Runner(self.understanding, self.circuit, self.roles, number(failure.reference))
+        try:
+            told = runner.fault([run])
+        except TooLargeError:
+            return self._from_lifting(failure)
+        if told is None and failure.obligation.kind == "undefined":
+            return self._from_lifting(failure)
+        if told is None:
+            at = describe(self.understanding.spec.inputs, self._index(failure.variables))
+            raise AssertionError(f"a defect of revsynth: a proof and the run at {at} disagree")
+        return told
+
+    def constant_phase(self, radians: float, reference: Sequence[int]) -> Counterexample:
+        """For `exact_phase`: the whole block is off by one constant phase."""
+        index = number(reference)
+        demand = ChosenDemand(self.roles, self.understanding, self.circuit.qubits, index)
+        marked = self.roles.oracle == "phase" and Expectation(self.understanding)(index) == (1,)
+        return Teller(self.understanding, self.circuit, demand).constant_phase(
+            math.remainder(radians, 2 * math.pi), marked
+        )
+
+    def _index(self, start: Sequence[int]) -> int:
+        return number(start[: self.understanding.input_bits])
+
+    def _from_lifting(self, failure: Failure) -> Counterexample:
+        obligation, start = failure.obligation, failure.variables
+        index = self._index(start)
         expected: dict[str, Any] = {}
         got: dict[str, Any] = {}
         name = self._name(obligation.qubit) if obligation.qubit >= 0 else ""
         why = f"{name}: {obligation.why}" if name else obligation.why
         if obligation.kind == "output" and obligation.bit >= 0:
             expected, got, why = self._outputs(start)
-        elif obligation.kind == "phase" and self.roles.oracle == "phase" and obligation.bit >= 0:
+        elif obligation.kind == "phase" and obligation.bit >= 0:
             wanted = self._value(start, self.translation.bits[0])
             expected, got = {"phase": -1 if wanted else 1}, {"phase": 1 if wanted else -1}
-        elif obligation.kind == "input":
-            expected, got = self._inputs(start)
-        elif obligation.qubit >= 0:
+        elif obligation.kind in ("input", "scratch") and obligation.literal > 1:
             begun = self._value(start, self.lifted.start[obligation.qubit])
             expected, got = {name: begun}, {name: begun ^ 1}
+        if obligation.relative:
+            why += f", compared with {describe(self.understanding.spec.inputs, number(failure.reference))}"
         labels = self.understanding.spec.labels
         names = bit_names(self.understanding.spec.inputs)
         bits = {labels[name]: index >> bit & 1 for bit, name in enumerate(names) if name in labels}
@@ -94,14 +134,6 @@ class WideTeller:
         expected = {name: value for name, value in wanted.items() if value != ends[name]}
         return expected, {name: ends[name] for name in expected}, "it is not the value of the spec"
 
-    def _inputs(self, start: Sequence[int]) -> tuple[dict[str, Any], dict[str, Any]]:
-        words = self.understanding.spec.inputs
-        came = [self._value(start, self.lifted.values[q].literal) for q in self.roles.inputs]
-        begun = [self._value(start, self.lifted.start[q]) for q in self.roles.inputs]
-        ends, wanted = _words(words, came), _words(words, begun)
-        expected = {name: value for name, value in wanted.items() if value != ends[name]}
-        return expected, {name: ends[name] for name in expected}
-
     def _value(self, start: Sequence[int], literal: Literal) -> int:
         if literal < 2:
             return literal
@@ -117,4 +149,4 @@ class WideTeller:
 
 
 def _words(words: Sequence[Word], bits: Sequence[int]) -> dict[str, Any]:
-    return dict(decode(words, sum(bit << place for place, bit in enumerate(bits))))
+    return dict(decode(words, number(bits)))

@@ -1,25 +1,39 @@
 """Deciding about circuits too wide to run on every input: the file lifted, the spec translated, both equal.
 
 Three links: the file's circuit is lifted exactly (every start, outcome and phase at once); the spec's
-translation is held against its evaluation in Python's own integers, at satisfying inputs first; a solver
-proves that the two never differ.
+translation is held against its evaluation in exact integers, at satisfying inputs first, and so is the
+circuit; a solver proves that the two never differ.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
 
 from revsynth.circuit.model import Circuit
+from revsynth.errors import SpecError
+from revsynth.spec.expectation import Expectation
+from revsynth.spec.sampled import SampledSpec
 from revsynth.spec.understand import Understanding
-from revsynth.verification.evidence import Level
-from revsynth.verification.lifting import Lifted, NotClosedError, account, lift, start_of
+from revsynth.verification.evidence import Counterexample, Level
+from revsynth.verification.lifting import Account, Lifted, NotClosedError, account, lift, start_of
 from revsynth.verification.lifting.linear_proofs import GuessError
-from revsynth.verification.lifting.parities import TRUE
+from revsynth.verification.lifting.parities import TRUE, Literal, Parities
 from revsynth.verification.matching import Roles
-from revsynth.verification.proof.cone import Cone
+from revsynth.verification.outcome import TooLargeError
+from revsynth.verification.proof.choice import Choice, number
 from revsynth.verification.proof.encoding import Encoding
-from revsynth.verification.proof.obligations import Obligation, PlainGates, obligations
+from revsynth.verification.proof.obligations import (
+    Obligation,
+    Obligations,
+    PlainGates,
+    UnsettledError,
+    active,
+    obligations,
+)
+from revsynth.verification.proof.running import Runner
 from revsynth.verification.proof.samples import Samples
 from revsynth.verification.proof.sweep import LAST_CONFLICTS, Answer, Sweep
 from revsynth.verification.translation import Translation, translate
@@ -30,17 +44,22 @@ Progress = Callable[[str], None]
 
 @dataclass(frozen=True)
 class Failure:
-    """An obligation that is broken, and the start at which it is, by variable of the lifting."""
+    """An obligation that is broken, and the start at which it is, by variable of the lifting.
+
+    reference: by input bit; with what is relative the start was compared with this one.
+    """
 
     obligation: Obligation
     variables: tuple[int, ...]
+    reference: tuple[int, ...]
 
 
 @dataclass(frozen=True)
 class WideDecision:
-    """holds: None where undecided. samples: inputs at which the translation met plain integers.
+    """holds: None where undecided. samples: inputs at which the circuit met the spec's plain integers.
 
-    lifted: None where the circuit could not be lifted.
+    lifted: None where the circuit could not be lifted. told: a counterexample that running it gave. marked:
+    whether the spec wants a sign at the reference.
     """
 
     holds: bool | None
@@ -52,6 +71,8 @@ class WideDecision:
     failure: Failure | None = None
     lifted: Lifted | None = None
     translation: Translation | None = None
+    told: Counterexample | None = None
+    reference: tuple[int, ...] = field(default=())
 
 
 def decide_wide(
@@ -64,14 +85,14 @@ def decide_wide(
         lifted = lift(circuit, start, variables)
     except NotClosedError as error:
         where = f" (at operation {error.operation})" if error.operation >= 0 else ""
-        return WideDecision(None, "none", 0, (), f"the circuit could not be followed: {error}{where}")
+        why = f"the circuit could not be followed for all inputs at once: {error}{where}"
+        return _run_only(understanding, circuit, roles, why, progress)
     try:
         return _Decider(understanding, circuit, roles, lifted, progress).decide()
-    except TooLargeToTranslateError as error:
-        detail = f"the spec could not be written out in gates: {error}"
-        return WideDecision(None, "none", 0, (), detail, lifted=lifted)
     except GuessError:
         return WideDecision(None, "none", 0, (), "signatures of different sums coincide", lifted=lifted)
+    except UnsettledError as error:
+        return WideDecision(None, "none", 0, (), str(error), lifted=lifted)
 
 
 class _Decider:
@@ -90,69 +111,132 @@ class _Decider:
         self.progress = progress
         progress("verifying: writing the spec in gates")
         self.inputs = lifted.variables[: understanding.input_bits]
-        self.translation = translate(
-            understanding.spec, understanding.outputs, PlainGates(lifted.parities), self.inputs
-        )
+        self.untranslated = ""
+        self.translation = self._translated()
+        self.reference: list[int] = []
         self.links: list[str] = []
+        self.samples = Samples(
+            understanding,
+            lifted.parities,
+            [*lifted.variables, *self.stand_ins],
+            self.translation,
+            translated=not self.untranslated,
+            progress=progress,
+        )
+
+    def _translated(self) -> Translation:
+        """The spec in gates; where that is too large, variables that stand for its values."""
+        parities, understanding = self.lifted.parities, self.understanding
+        self.stand_ins: list[Literal] = []
+        try:
+            gates = PlainGates(parities)
+            return translate(understanding.spec, understanding.outputs, gates, self.inputs)
+        except TooLargeToTranslateError as error:
+            self.untranslated = f"the spec could not be written out in gates: {error}"
+        size = understanding.output_bits
+        self.stand_ins = [parities.free() for _ in range(2 * size + 1)]
+        domain, *rest = self.stand_ins
+        return Translation(tuple(rest[:size]), tuple(rest[size:]), domain)
 
     def decide(self) -> WideDecision:
         lifted, roles = self.lifted, self.roles
         accounted = account(lifted, roles)
+        chosen = self._chosen()
         reference = self._reference()
-        if reference is None:
-            return self._decision(None, "none", "no input of the domain was found within the solver's limit")
-        self.progress("verifying: comparing the spec's gates with plain integers")
-        samples = Samples(self.understanding, lifted.parities, self.inputs, self.translation)
-        self.links += samples.check()
-        owed = obligations(
-            lifted,
-            accounted,
-            self.translation,
-            phase=roles.oracle == "phase",
-            reference=[*reference, *[0] * (lifted.start_variables - len(reference))],
-        )
-        loose = self._loose_garbage([literal for _, literal in accounted.kept])
-        if loose:
-            return self._decision(None, "none", loose)
+        if isinstance(reference, WideDecision):
+            return reference
+        self.reference = reference
+        owed = self._owed(accounted)
+        lifted.parities.proofs.finish()
+        self.progress("verifying: comparing with the spec in plain integers")
+        hit = self.samples.first_hit(chosen, [one.literal for one in owed.all])
+        if hit is not None:
+            variables = hit.variables[: len(lifted.variables)]
+            return self._refuted(owed.all[hit.place], variables)
+        self._say_samples(len(chosen))
         self._say_lifting()
+        if self.untranslated:
+            return self._decision(None, "sampled", f"{self.untranslated}; {self.samples.bound()}")
+        tests = self.samples.tests(chosen)
         sweep = Sweep(
-            lifted.parities,
-            lifted.variables,
-            [one.literal for one in owed.all],
-            samples.starts(len(lifted.variables)),
-            self.progress,
+            lifted.parities, lifted.variables, [one.literal for one in owed.all], tests, self.progress
         )
         try:
-            return self._settle(owed.all, sweep, owed.global_phase, samples)
+            return self._settle(owed, sweep)
         finally:
             sweep.close()
 
-    def _reference(self) -> list[int] | None:
-        """An input inside the domain where no value is free; None where none was found."""
-        free = self.translation.free
-        wanted = [self.translation.domain, *(literal ^ 1 for literal in free)]
-        if all(literal == TRUE for literal in wanted):
+    def _owed(self, accounted: Account) -> Obligations:
+        start = [*self.reference, *[0] * (self.lifted.start_variables - len(self.reference))]
+        values: dict[Literal, int] = {}
+        if self.untranslated:
+            bits = Expectation(self.understanding)(number(self.reference))
+            said = [1, *(bit or 0 for bit in bits), *(int(bit is None) for bit in bits)]
+            values = dict(zip(self.stand_ins, said, strict=True))
+        return obligations(self.lifted, accounted, self.translation, self.roles, start, stand_ins=values)
+
+    def _chosen(self) -> list[int]:
+        """Inputs to try before random ones."""
+        if self.untranslated:
+            return [0, (1 << len(self.inputs)) - 1]
+        self.progress("verifying: looking for satisfying inputs")
+        choice = Choice(self.lifted.parities, self.inputs, self.translation)
+        self.satisfying = len(choice.satisfying)
+        return choice.chosen or [0]
+
+    def _reference(self) -> list[int] | WideDecision:
+        """An input at which everything is demanded; the decision where there is none or none was found."""
+        parities, translation = self.lifted.parities, self.translation
+        if self.untranslated:
+            return self._sampled_reference()
+        wanted = active(translation, self.roles, parities)
+        if self.roles.oracle == "phase":
+            wanted = parities.and_(translation.domain, translation.free[0] ^ 1)
+        if wanted == TRUE and translation.domain == TRUE:
             return [0] * len(self.inputs)
-        encoding = Encoding(self.lifted.parities)
+        encoding = Encoding(parities)
         try:
-            for literals in (wanted, wanted[:1]):
-                if encoding.ever(literals, LAST_CONFLICTS):
-                    return encoding.model(self.inputs)
+            inside = encoding.ever([translation.domain], LAST_CONFLICTS)
+            if inside is False:
+                raise SpecError(
+                    "no input satisfies it: a domain needs at least one",
+                    source=self.understanding.spec.source,
+                    place="[domain] where",
+                )
+            some = encoding.ever([wanted], LAST_CONFLICTS)
+            if some:
+                return encoding.model(self.inputs)
         finally:
             encoding.close()
-        return None
+        if some is None or inside is None:
+            return self._decision(None, "none", "no input of the domain was found within the solver's limit")
+        if self.roles.oracle == "phase":
+            return [0] * len(self.inputs)
+        return self._decision(True, "proved", "the spec leaves every input free")
 
-    def _loose_garbage(self, kept: list[int]) -> str:
-        """Why garbage that must depend on the inputs alone is not shown to; empty where it is."""
-        allowed = {literal >> 1 for literal in self.inputs}
-        others = [literal for literal in self.lifted.variables if literal >> 1 not in allowed]
-        cone = Cone(self.lifted.parities, self.lifted.variables, kept)
-        parities = self.lifted.parities
-        read = {part for node in cone.gates for part in (parities.left[node], parities.right[node])}
-        read |= {literal >> 1 for literal in kept}
-        if any(literal >> 1 in read for literal in others):
-            return "garbage is not shown to depend on the inputs alone"
-        return ""
+    def _sampled_reference(self) -> list[int] | WideDecision:
+        draw = np.random.default_rng(3)
+        inputs = draw.integers(0, 1 << 64, (len(self.inputs), 64), dtype=np.uint64)
+        wanted = SampledSpec(self.understanding).wanted(inputs)
+        fixed = ~np.bitwise_or.reduce(wanted.free, axis=0)
+        for word in np.flatnonzero(fixed):
+            bit = (int(fixed[word]) & -int(fixed[word])).bit_length() - 1
+            return [int(row[word]) >> bit & 1 for row in inputs]
+        return self._decision(None, "none", f"{self.untranslated}; no random input was inside the domain")
+
+    def _say_samples(self, chosen: int) -> None:
+        samples = self.samples
+        found = "" if self.untranslated else f"{self.satisfying} satisfying ones found by a solver, "
+        near = "" if self.untranslated else "their neighbours, "
+        what = (
+            "spec: evaluated in exact integers"
+            if self.untranslated
+            else "spec: written a second time in gates, which agree with its evaluation in exact integers"
+        )
+        self.links.append(
+            f"{what}, and the circuit with both, at {samples.count} inputs: "
+            f"{found}{near}{samples.random} random"
+        )
 
     def _say_lifting(self) -> None:
         circuit = self.circuit
@@ -160,32 +244,33 @@ class _Decider:
         outcomes = f", {measured} outcomes followed both ways" if measured else ""
         self.links.append(
             f"circuit: {len(circuit)} operations on {circuit.qubits} qubits followed exactly as sums over "
-            f"paths, for every start, outcome and phase at once{outcomes}"
+            f"paths, for every start, outcome and phase at once, form {self.roles.oracle}{outcomes}"
         )
 
-    def _settle(
-        self, owed: tuple[Obligation, ...], sweep: Sweep, turn: float, samples: Samples
-    ) -> WideDecision:
+    def _settle(self, owed: Obligations, sweep: Sweep) -> WideDecision:
         methods: dict[str, int] = {}
-        for place, obligation in enumerate(owed):
-            self.progress(f"verifying: claim {place + 1} of {len(owed)}")
+        count = len(owed.all)
+        for place, obligation in enumerate(owed.all):
+            self.progress(f"verifying: claim {place + 1} of {count}")
             answer: Answer = sweep.zero(obligation.literal)
             if answer.holds is False:
-                failure = Failure(obligation, answer.inputs)
-                return self._decision(False, "sampled", samples=samples.count, failure=failure)
+                return self._refuted(obligation, answer.inputs)
             if answer.holds is None:
-                detail = (
-                    f"the solver reached its limit on claim {place + 1} of {len(owed)} ({obligation.kind})"
-                )
-                return self._decision(None, "sampled", detail, samples=samples.count)
+                limit = f"the solver reached its limit on claim {place + 1} of {count} ({obligation.kind})"
+                return self._decision(None, "sampled", f"{limit}; {self.samples.bound()}")
             methods[answer.method] = methods.get(answer.method, 0) + 1
-        how = ", ".join(f"{count} by {method}" for method, count in methods.items())
+        how = ", ".join(f"{number} by {method}" for method, number in methods.items())
         equal = f", {sweep.merged} inner equalities proved on the way" if sweep.merged else ""
+        claims = f"{count} claim{'s' * (count != 1)} left to prove"
         self.links.append(
-            f"proof: that the circuit and the spec's gates differ nowhere: {len(owed)} claims left to prove"
-            + (f" ({how}{equal})" if owed else ", all the same by structure")
+            "proof: the circuit and the spec's gates differ nowhere: "
+            + (f"{claims} ({how}{equal})" if count else "all the same by structure")
         )
-        return self._decision(True, "proved", global_phase=turn, samples=samples.count)
+        return self._decision(True, "proved", global_phase=owed.global_phase)
+
+    def _refuted(self, obligation: Obligation, variables: Sequence[int]) -> WideDecision:
+        failure = Failure(obligation, tuple(variables), tuple(self.reference))
+        return self._decision(False, "sampled", "stopped at the first input that fails", failure=failure)
 
     def _decision(
         self,
@@ -193,18 +278,57 @@ class _Decider:
         level: Level,
         detail: str = "",
         *,
-        samples: int = 0,
         global_phase: float = 0.0,
         failure: Failure | None = None,
     ) -> WideDecision:
         return WideDecision(
             holds,
             level,
-            samples,
+            self.samples.count,
             tuple(self.links),
             detail,
             global_phase,
             failure,
             self.lifted,
             self.translation,
+            reference=tuple(self.reference),
         )
+
+
+def _run_only(
+    understanding: Understanding, circuit: Circuit, roles: Roles, why: str, progress: Progress
+) -> WideDecision:
+    """Run the circuit at satisfying and at random inputs: that may show a fault, and proves nothing."""
+    parities = Parities()
+    inputs = [parities.free() for _ in range(understanding.input_bits)]
+    chosen: list[int] = []
+    reference = 0
+    try:
+        translation = translate(understanding.spec, understanding.outputs, PlainGates(parities), inputs)
+        chosen = Choice(parities, inputs, translation).chosen
+        wanted = [translation.domain, *(free ^ 1 for free in translation.free)]
+        encoding = Encoding(parities)
+        try:
+            if not encoding.ever(wanted, LAST_CONFLICTS):
+                return WideDecision(None, "none", 0, (), f"{why}; no input of the domain was found")
+            reference = number(encoding.model(inputs))
+        finally:
+            encoding.close()
+        parities.proofs.finish()
+    except (TooLargeToTranslateError, GuessError):
+        if understanding.spec.domain is not None:
+            return WideDecision(None, "none", 0, (), why)
+    try:
+        runner = Runner(understanding, circuit, roles, reference)
+        count, told = runner.sample(chosen, progress)
+    except TooLargeError as limit:
+        return WideDecision(None, "none", 0, (), f"{why}; simulation stopped: {limit}")
+    if told is not None:
+        return WideDecision(
+            False, "sampled", count + 1, (), "stopped at the first input that fails", told=told
+        )
+    detail = (
+        f"{why}; run at {count} inputs, satisfying ones found by a solver among them, it is right, "
+        "which is no proof"
+    )
+    return WideDecision(None, "sampled", count, (), detail)
