@@ -365,7 +365,7 @@ def inspect(spec: Spec) -> Analysis | Overview:
     understanding = understand(spec)
     if understanding.tabulated is not None:
         return analyse(understanding)
-    understanding, network = structure_of(understanding, BuildOptions())
+    understanding, network, _ = structure_of(understanding, BuildOptions())
     if network is None:
         raise UsageError(f"{spec.source}: {spec.input_bits} input bits: there is no network to look at")
     return overview(understanding, network)

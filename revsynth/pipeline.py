@@ -62,7 +62,7 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
     oracle = options.oracle or natural_oracle(spec)
     check_oracle(spec, oracle)
     _check_widths(understanding, oracle)
-    understanding, network = structure_of(understanding, options)
+    understanding, network, program = structure_of(understanding, options)
     clock.lap("read")
 
     task = Task(
@@ -75,6 +75,7 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
         seed=options.seed,
         lines=options.qubits,
         network=network,
+        program=program,
     )
     layout = register_layout(understanding, oracle, options)
     gathering = Gathering(task, options, progress)

@@ -6,6 +6,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, field
 
 from revsynth.errors import SpecError
+from revsynth.logic.in_place_program import Program
 from revsynth.logic.network import Network
 from revsynth.logic.network_function import NetworkFunction
 from revsynth.spec.model import Word
@@ -33,9 +34,11 @@ class Elaboration:
     outputs:  () for a predicate, the output words with their bits, or the input words of a permutation.
     checks:   what must not happen inside the domain; where all are constant 0 there are none.
     warnings: comparisons that are constant, as far as that shows without looking at inputs.
+    program:  the same function step by step in place, where the spec says it so or is recognised.
     """
 
     function: NetworkFunction
     outputs: tuple[Word, ...]
     checks: tuple[Check, ...]
     warnings: tuple[str, ...] = ()
+    program: Program | None = None

@@ -8,9 +8,12 @@ from revsynth.elaborate.expressions import Expressions
 from revsynth.elaborate.formulas import formula_literal
 from revsynth.elaborate.linear import modulo_power, plain
 from revsynth.elaborate.model import Check, Elaboration
+from revsynth.elaborate.modular_maps import modular_program
 from revsynth.elaborate.numbers import pattern_of
+from revsynth.elaborate.stepped import elaborate_steps
 from revsynth.elaborate.tables import listed_literals
 from revsynth.errors import SpecError
+from revsynth.logic.in_place_program import after
 from revsynth.logic.network import FALSE, TRUE, Literal, Network
 from revsynth.logic.network_builder import NetworkBuilder
 from revsynth.logic.network_function import NetworkFunction
@@ -31,10 +34,28 @@ def elaborate(spec: Spec, outputs: tuple[Word, ...] | None = None) -> Elaboratio
     `outputs` are the output words with their bits, where they are known already; otherwise a width that is
     left out is worked out up to MAX_INPUT_BITS input bits, and refused beyond. Raises SpecError for what is
     wrong whatever the input is: words without a width, tables of the wrong length, a domain that is empty by
-    its structure, networks of too many gates; ExpressionError where an expression is not allowed. A
-    permutation by steps has no function here: ValueError.
+    its structure, networks of too many gates; ExpressionError where an expression is not allowed.
     """
+    if isinstance(spec.body, Permutation) and spec.body.steps is not None:
+        return _stepped(spec)
     return _Elaborator(spec, outputs).elaborate()
+
+
+def _stepped(spec: Spec) -> Elaboration:
+    """Steps, and their function as one network over the bits at the start."""
+    stepped = elaborate_steps(spec)
+    if stepped.domain is not None and stepped.domain.outputs[0] == FALSE:
+        raise _empty_domain(spec)
+    builder = NetworkBuilder(spec.input_bits)
+    bits = after(stepped.program, builder, [builder.input(place) for place in range(spec.input_bits)])
+    function = NetworkFunction(builder.build(bits), stepped.domain)
+    return Elaboration(function, spec.inputs, stepped.checks, stepped.warnings, stepped.program)
+
+
+def _empty_domain(spec: Spec) -> SpecError:
+    return SpecError(
+        "no input satisfies it: a domain needs at least one", source=spec.source, place="[domain] where"
+    )
 
 
 class _Elaborator:
@@ -51,11 +72,7 @@ class _Elaborator:
         if spec.domain is not None:
             domain = self.expressions.condition(spec.domain, "[domain] where")
             if domain == FALSE:
-                raise SpecError(
-                    "no input satisfies it: a domain needs at least one",
-                    source=spec.source,
-                    place="[domain] where",
-                )
+                raise _empty_domain(spec)
             self.expressions.domain = domain
         body = spec.body
         if isinstance(body, Predicate):
@@ -70,7 +87,10 @@ class _Elaborator:
         care = builder.and_(care, self.expressions.domain)
         function = NetworkFunction(builder.build(values), None if care == TRUE else builder.build([care]))
         checks = (*self.expressions.checks(), *self.checks)
-        return Elaboration(function, words, checks, tuple(self.expressions.warnings))
+        program = None
+        if isinstance(body, Permutation) and body.map is not None:
+            program = modular_program(spec, body.map)
+        return Elaboration(function, words, checks, tuple(self.expressions.warnings), program)
 
     def _predicate(self, body: Predicate) -> tuple[list[Literal], Literal]:
         if body.where is not None:
@@ -132,10 +152,8 @@ class _Elaborator:
         size = self.spec.input_bits
         if body.values is not None:
             return self._listed(body.values, size, "[permutation] values")
-        if body.map is None:
-            raise ValueError("steps are built in place, not as a function")
         values = [self.builder.input(place) for place in range(size)]
-        for name, text in body.map.items():
+        for name, text in (body.map or {}).items():
             shift, word = register_of(self.spec, name)
             number = self.expressions.word(text, f"[permutation] map {name}", name, word)
             kept = plain(self.builder, modulo_power(self.builder, number, word.bits))

@@ -12,6 +12,7 @@ from typing import Protocol
 
 from revsynth.cascade.model import Cascade, Line
 from revsynth.logic.function import Function
+from revsynth.logic.in_place_program import Program
 from revsynth.logic.network_function import NetworkFunction
 from revsynth.options import Aim, Controls, Effort, Oracle, Uncompute
 
@@ -28,7 +29,8 @@ class Task:
     """What is to be synthesised.
 
     tabulated: the function as a table, None where it is too wide for one. network: the same function by its
-    structure, None where only the table is at hand; one of the two is there.
+    structure, None where only the table is at hand. program: the same, for a permutation that is given step
+    by step, or whose arithmetic is known to work in place. One of the three is there.
     `lines` is the most lines the cascade may use (None: as many as it likes); lowering may need more.
     """
 
@@ -41,6 +43,7 @@ class Task:
     seed: int = 0
     lines: int | None = None
     network: NetworkFunction | None = None
+    program: Program | None = None
 
     @property
     def function(self) -> Function:
@@ -52,11 +55,15 @@ class Task:
     @property
     def inputs(self) -> int:
         """Input bits."""
+        if self.program is not None:
+            return self.program.bits
         return self.function.inputs if self.network is None else self.network.inputs
 
     @property
     def outputs(self) -> int:
         """Output bits."""
+        if self.program is not None:
+            return self.program.bits
         return self.function.outputs if self.network is None else self.network.outputs
 
 

@@ -12,6 +12,7 @@ from dataclasses import replace
 from revsynth.errors import BudgetError
 from revsynth.logic.network import Network
 from revsynth.options import Aim, Oracle
+from revsynth.synthesis.in_place import in_place_blocks
 from revsynth.synthesis.interface import Block, Progress, Task, silent
 from revsynth.synthesis.scratch.blocks import cnots
 from revsynth.synthesis.scratch.curve import curve
@@ -35,6 +36,8 @@ class FromNetwork:
 
     def unfit(self, task: Task) -> str | None:
         """Why a network cannot serve the task."""
+        if task.oracle == "inplace" and task.program is not None:
+            return None
         if task.oracle in ("inplace", "embedded"):
             return f"a network leaves its inputs as they are, so nothing can be '{task.oracle}'"
         if task.oracle == "phase" and task.outputs != 1:
@@ -51,6 +54,8 @@ class FromNetwork:
 
         Raises BudgetError where no plan was found that fits `task.lines`.
         """
+        if task.oracle == "inplace":
+            return in_place_blocks(task, progress)
         positive = task.controls == "positive"
         networks = candidates(task, progress)
         found: list[Block] = []
