@@ -8,14 +8,14 @@ from __future__ import annotations
 import numpy as np
 from numba import njit
 
-_DE_BRUIJN = np.uint64(0x03F79D71B4CB0A89)
+DE_BRUIJN = 0x03F79D71B4CB0A89
 """Multiplied by a power of two it has its exponent's place in the top six bits."""
 
 
 def _places() -> np.ndarray:
     places = np.zeros(64, dtype=np.int64)
     for exponent in range(64):
-        places[(0x03F79D71B4CB0A89 << exponent & 0xFFFFFFFFFFFFFFFF) >> 58] = exponent
+        places[(DE_BRUIJN << exponent & 0xFFFFFFFFFFFFFFFF) >> 58] = exponent
     return places
 
 
@@ -121,6 +121,117 @@ def targets_in_span(basis, masks, rank, slices, count, places, alive):  # type: 
 
 
 @njit(cache=True)
+def draw_base(signals, products, state, chosen, basis, where, masks):  # type: ignore[no-untyped-def]  # pragma: no cover
+    """Eliminate the signals and their products with all left factors but one (drawn here); the rank."""
+    zero = np.uint64(0)
+    one = np.uint64(1)
+    d, words = signals.shape
+    row = np.empty(words, np.uint64)
+    factor = np.empty(words, np.uint64)
+    rank = 0
+    for s in range(d):
+        row[:] = signals[s]
+        rank = insert_row(row, basis, where, masks, rank)
+    chosen[:, :] = 0
+    for k in range(products - 1):
+        factor[:] = zero
+        random = zero
+        for s in range(d):
+            if s & 63 == 0:
+                random = next_word(state)
+            if s > 0 and (random >> np.uint64(s & 63)) & one != zero:
+                chosen[k, s] = 1
+                for w in range(words):
+                    factor[w] ^= signals[s, w]
+        for s in range(1, d):
+            for w in range(words):
+                row[w] = factor[w] & signals[s, w]
+            rank = insert_row(row, basis, where, masks, rank)
+    return rank
+
+
+@njit(cache=True)
+def free_columns(where, masks, rank, bits, places, free):  # type: ignore[no-untyped-def]  # pragma: no cover
+    """The first columns, at most 64, that are no pivots, into `free`; how many."""
+    pivot = np.zeros(bits, np.bool_)
+    for r in range(rank):
+        exponent = places[(masks[r] * np.uint64(0x03F79D71B4CB0A89)) >> np.uint64(58)]
+        pivot[(where[r] << 6) + exponent] = True
+    count = 0
+    for column in range(bits):
+        if not pivot[column] and count < 64:
+            free[count] = column
+            count += 1
+    return count
+
+
+@njit(cache=True)
+def project(signals, targets, basis, where, masks, rank, free, count, slices, pairs):  # type: ignore[no-untyped-def]  # pragma: no cover
+    """What is left, in the free columns, of the targets (slices, by column) and of all products."""
+    one = np.uint64(1)
+    d, words = signals.shape
+    row = np.empty(words, np.uint64)
+    slices[:, :] = np.uint64(0)
+    for k in range(targets.shape[0]):
+        row[:] = targets[k]
+        reduce_row(row, basis, where, masks, rank)
+        word = packed_row(row, free, count)
+        for f in range(count):
+            slices[f, k >> 6] |= ((word >> np.uint64(f)) & one) << np.uint64(k & 63)
+    for i in range(1, d):
+        for j in range(i + 1, d):
+            for w in range(words):
+                row[w] = signals[i, w] & signals[j, w]
+            reduce_row(row, basis, where, masks, rank)
+            pairs[i, j] = packed_row(row, free, count)
+            pairs[j, i] = pairs[i, j]
+
+
+@njit(cache=True)
+def run_last(targets, tries, state, places, slices, pairs, count, chosen):  # type: ignore[no-untyped-def]  # pragma: no cover
+    """Run the last left factor, `chosen`: uint8 (d,), over sums of signals; a target within reach, or -1.
+
+    One signal comes or goes at each step: in Gray-code order where all sums are tried, else at random.
+    """
+    zero = np.uint64(0)
+    one = np.uint64(1)
+    d = chosen.size
+    everything = d - 1 < 40 and (1 << (d - 1)) <= tries
+    vectors = np.zeros(d, np.uint64)
+    basis = np.empty(64, np.uint64)
+    masks = np.empty(64, np.uint64)
+    alive = np.empty((targets + 63) >> 6, np.uint64)
+    if not everything:
+        for i in range(1, d):
+            if next_word(state) >> np.uint64(63) != zero:
+                chosen[i] ^= 1
+                for j in range(1, d):
+                    vectors[j] ^= pairs[i, j]
+    steps = (1 << (d - 1)) if everything else tries
+    for step in range(steps):
+        rank = reduced_span(vectors, basis, masks)
+        alive[:] = ~zero
+        if targets & 63:
+            alive[alive.size - 1] = (one << np.uint64(targets & 63)) - one
+        if targets_in_span(basis, masks, rank, slices, count, places, alive):
+            for k in range(targets):
+                if (alive[k >> 6] >> np.uint64(k & 63)) & one != zero:
+                    return k
+        if everything:
+            turned = 1
+            while (step + 1) >> (turned - 1) & 1 == 0:
+                turned += 1
+            if turned >= d:
+                break
+        else:
+            turned = 1 + int((next_word(state) >> np.uint64(33)) % np.uint64(d - 1))
+        chosen[turned] ^= 1
+        for j in range(1, d):
+            vectors[j] ^= pairs[turned, j]
+    return -1
+
+
+@njit(cache=True)
 def search(signals, targets, bits, products, bases, tries, state, places, chosen):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Draw left factors of `products` products until some target is a sum of signals and products.
 
@@ -128,95 +239,18 @@ def search(signals, targets, bits, products, bases, tries, state, places, chosen
     times; then the last one runs over `tries` sums of signals, all of them where they are no more. Returns
     the number of a target, with the left factors in chosen: uint8 (products, d); or -1.
     """
-    zero = np.uint64(0)
-    one = np.uint64(1)
     d, words = signals.shape
-    everything = d - 1 < 40 and (1 << (d - 1)) <= tries
     basis = np.empty((bits + 1, words), np.uint64)
     where = np.empty(bits + 1, np.int64)
     masks = np.empty(bits + 1, np.uint64)
-    row = np.empty(words, np.uint64)
-    factor = np.empty(words, np.uint64)
     pairs = np.zeros((d, d), np.uint64)
     free = np.empty(64, np.int64)
-    vectors = np.zeros(d, np.uint64)
-    small = np.empty(64, np.uint64)
-    small_masks = np.empty(64, np.uint64)
-    target_words = (targets.shape[0] + 63) >> 6
-    slices = np.zeros((64, target_words), np.uint64)
-    alive = np.empty(target_words, np.uint64)
-    pivot = np.zeros(bits, np.bool_)
+    slices = np.zeros((64, (targets.shape[0] + 63) >> 6), np.uint64)
     for _ in range(bases):
-        rank = 0
-        for s in range(d):
-            row[:] = signals[s]
-            rank = insert_row(row, basis, where, masks, rank)
-        for k in range(products - 1):
-            factor[:] = zero
-            random = zero
-            for s in range(d):
-                if s & 63 == 0:
-                    random = next_word(state)
-                take = s > 0 and (random >> np.uint64(s & 63)) & one != zero
-                chosen[k, s] = take
-                if take:
-                    for w in range(words):
-                        factor[w] ^= signals[s, w]
-            for s in range(1, d):
-                for w in range(words):
-                    row[w] = factor[w] & signals[s, w]
-                rank = insert_row(row, basis, where, masks, rank)
-        chosen[products - 1, :] = 0
-        pivot[:] = False
-        for r in range(rank):
-            mask = masks[r]
-            pivot[(where[r] << 6) + places[(mask * np.uint64(0x03F79D71B4CB0A89)) >> np.uint64(58)]] = True
-        count = 0
-        for column in range(bits):
-            if not pivot[column] and count < 64:
-                free[count] = column
-                count += 1
-        slices[:, :] = zero
-        for k in range(targets.shape[0]):
-            row[:] = targets[k]
-            reduce_row(row, basis, where, masks, rank)
-            word = packed_row(row, free, count)
-            for f in range(count):
-                slices[f, k >> 6] |= ((word >> np.uint64(f)) & one) << np.uint64(k & 63)
-        for i in range(1, d):
-            for j in range(i + 1, d):
-                for w in range(words):
-                    row[w] = signals[i, w] & signals[j, w]
-                reduce_row(row, basis, where, masks, rank)
-                pairs[i, j] = packed_row(row, free, count)
-                pairs[j, i] = pairs[i, j]
-        vectors[:] = zero
-        if not everything:
-            for i in range(1, d):
-                if next_word(state) >> np.uint64(63) != zero:
-                    chosen[products - 1, i] ^= 1
-                    for j in range(1, d):
-                        vectors[j] ^= pairs[i, j]
-        steps = (1 << (d - 1)) if everything else tries
-        for step in range(steps):
-            small_rank = reduced_span(vectors, small, small_masks)
-            for w in range(target_words):
-                alive[w] = ~zero
-            if targets.shape[0] & 63:
-                alive[target_words - 1] = (one << np.uint64(targets.shape[0] & 63)) - one
-            if targets_in_span(small, small_masks, small_rank, slices, count, places, alive):
-                for k in range(targets.shape[0]):
-                    if (alive[k >> 6] >> np.uint64(k & 63)) & one != zero:
-                        return k
-            if everything:
-                turned = 1
-                while (step + 1) >> (turned - 1) & 1 == 0:
-                    turned += 1
-                if turned >= d:
-                    break
-            else:
-                turned = 1 + int((next_word(state) >> np.uint64(33)) % np.uint64(d - 1))
-            chosen[products - 1, turned] ^= 1
-            for j in range(1, d):
-                vectors[j] ^= pairs[turned, j]
+        rank = draw_base(signals, products, state, chosen, basis, where, masks)
+        count = free_columns(where, masks, rank, bits, places, free)
+        project(signals, targets, basis, where, masks, rank, free, count, slices, pairs)
+        k = run_last(targets.shape[0], tries, state, places, slices, pairs, count, chosen[products - 1])
+        if k >= 0:
+            return k
     return -1

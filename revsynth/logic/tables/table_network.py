@@ -57,15 +57,15 @@ BUDGETS: dict[str, Budget] = {
     "normal": Budget(
         compiled_from=6,
         peeling=Level(forms=(3, 3, 2, 1), places=24, kept=1, rounds=4, work=Work(8, 1 << 12), hope=0.0),
-        outputs=Level(*_ONCE, work=Work(8, 1 << 12), hope=-1.0),
-        starts=2,
+        outputs=Level(*_ONCE, work=Work(8, 1 << 12), hope=0.5),
+        starts=3,
         nodes=300,
     ),
     "high": Budget(
         compiled_from=5,
         peeling=Level(forms=(16, 4, 2, 1), places=126, kept=4, rounds=64, work=Work(16, 1 << 14), hope=1.0),
-        outputs=Level(*_ONCE, work=Work(32, 1 << 14), hope=-1.0),
-        starts=6,
+        outputs=Level(*_ONCE, work=Work(64, 1 << 14), hope=0.0),
+        starts=4,
         nodes=3000,
     ),
 }

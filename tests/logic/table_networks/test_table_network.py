@@ -173,3 +173,10 @@ def test_random_functions_at_high_effort(inputs: int, most: int) -> None:
     rng = random.Random(100 * inputs)
     values = [rng.randrange(2) for _ in range(1 << inputs)]
     assert best(function_of(values, inputs, 1), "high") <= most
+
+
+@pytest.mark.slow
+@pytest.mark.quality
+@pytest.mark.parametrize(("inputs", "most"), [(6, 18), (7, 35), (8, 60)])
+def test_random_permutations_at_high_effort(inputs: int, most: int) -> None:
+    assert best(function_of(shuffled(inputs, 0), inputs, inputs), "high") <= most
