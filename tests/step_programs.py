@@ -2,6 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from functools import cache
+from typing import Any
+
 from hypothesis import strategies as st
 
 from revsynth.spec.model import Permutation, Spec, Word
@@ -11,7 +15,10 @@ WORDS = (Word("x", 4), Word("k", 3, signed=True), Word("y", 3), Word("cell", 2, 
 FEW = (Word("x", 3), Word("k", 2, signed=True), Word("cell", 2, count=2))
 """9 input bits."""
 
+_SMALL = st.integers(0, 59)
 
+
+@cache
 def targets(words: tuple[Word, ...]) -> list[tuple[str, str, int]]:
     """(text, word that it is part of, bits) of everything that a step may change."""
     found = []
@@ -24,50 +31,62 @@ def targets(words: tuple[Word, ...]) -> list[tuple[str, str, int]]:
     return found
 
 
-def operands(words: tuple[Word, ...], apart: str) -> st.SearchStrategy[str]:
-    """Expressions that do not read the word `apart`."""
-    names = [name for word in words if word.name != apart for name, _ in word.elements()]
-    terms = st.sampled_from([*names, "1", "2", "5", "-3"])
-    pair = st.builds("{} {} {}".format, terms, st.sampled_from(["+", "-", "*", "&", "|", "^"]), terms)
-    other = st.one_of(
-        st.builds("{} // ({} | 1)".format, terms, terms),
-        st.builds("({} if {} > {} else {})".format, terms, terms, terms, terms),
-        st.builds("{} << ({} & 1)".format, terms, terms),
-        st.builds("popcount({})".format, st.sampled_from(names)),
-    )
-    return st.one_of(terms, pair, other)
+SHAPES = (
+    "{}",
+    "{} + {}",
+    "{} - {}",
+    "{} * {}",
+    "{} & {}",
+    "{} ^ ({} | 1)",
+    "{} // ({} | 1)",
+    "({} if {} > 1 else 5)",
+    "{} << ({} & 1)",
+    "{} + popcount({} & 7)",
+)
+FORMS = (
+    "{t} += {e}",
+    "{t} -= {e}",
+    "{t} ^= {e}",
+    "{t} = rotate({t}, {e})",
+    "{t} = rotate({t}, {k})",
+    "{t} *= 2 * {k} + 1",
+    "{t} = -{t}",
+    "{t} = ~{t}",
+    "{t} ^= {t} << {u}",
+    "{t} ^= {t} >> {u}",
+)
+
+
+def names(words: tuple[Word, ...], *apart: str) -> list[str]:
+    """Single words and array elements but for those of some words."""
+    return [name for word in words if word.name not in apart for name, _ in word.elements()]
 
 
 @st.composite
 def steps(draw: st.DrawFn, words: tuple[Word, ...]) -> str:
     """One step."""
-    text, word, bits = draw(st.sampled_from(targets(words)))
-    operand = operands(words, word)
+
+    def pick(items: Sequence[Any]) -> Any:
+        return items[draw(_SMALL) % len(items)]
+
+    text, word, bits = pick(targets(words))
+    terms = [*names(words, word), "1", "2", "-3"]
+    form = pick(FORMS)
     signed = next(one.signed for one in words if one.name == word) and "[" not in text
-    forms = [
-        st.builds(f"{text} += {{}}".format, operand),
-        st.builds(f"{text} -= {{}}".format, operand),
-        st.builds(f"{text} ^= {{}}".format, operand),
-        st.builds(f"{text} = rotate({text}, {{}})".format, st.one_of(operand, st.integers(-9, 9))),
-        st.builds(f"{text} *= {{}}".format, st.integers(-20, 20).map(lambda k: 2 * k + 1)),
-        st.sampled_from([f"{text} = -{text}", f"{text} = ~{text}"]),
-        st.builds(f"{text} ^= {text} << {{}}".format, st.integers(1, 4)),
-    ]
-    if not signed:
-        forms.append(st.builds(f"{text} ^= {text} >> {{}}".format, st.integers(1, 4)))
-    read = {word}
+    if signed and ">>" in form:
+        form = FORMS[0]
+    operand = pick(SHAPES).format(pick(terms), pick(terms))
+    step = form.format(t=text, e=operand, k=draw(_SMALL) - 30, u=1 + draw(_SMALL) % 4)
+    changed = {word}
     twins = [one for one in targets(words) if one[2] == bits and one[1] != word]
-    if twins:
-        other = draw(st.sampled_from(twins))
-        if draw(st.integers(0, 5)) == 0:
-            forms = [st.just(f"{text}, {other[0]} = {other[0]}, {text}")]
-            read.add(other[1])
-    step = draw(st.one_of(forms))
-    free = [name for one in words if one.name not in read for name, _ in one.elements()]
-    if free and draw(st.booleans()):
-        condition = draw(st.sampled_from(free))
-        relation = draw(st.sampled_from(["", " > 1", " == 2", " != 0", "[0]"]))
-        step = f"if {condition}{relation}: {step}"
+    if twins and draw(_SMALL) % 6 == 0:
+        other, partner, _ = pick(twins)
+        step = f"{text}, {other} = {other}, {text}"
+        changed.add(partner)
+    free = names(words, *changed)
+    if free and draw(_SMALL) % 2:
+        relation = pick(["", " > 1", " == 2", " != 0", "[0]"])
+        step = f"if {pick(free)}{relation}: {step}"
     return step
 
 
