@@ -50,7 +50,7 @@ def test_they_cover_every_section_and_every_alternative() -> None:
         alternatives = {
             Predicate: ("where", "formula", "table", "clauses", "cover"),
             Outputs: ("cover",),
-            Permutation: ("values", "map"),
+            Permutation: ("values", "map", "steps"),
         }[type(body)]
         used |= {f"{spec.kind} {key}" for key in alternatives if getattr(body, key) is not None}
         if isinstance(body, Outputs):
@@ -59,7 +59,8 @@ def test_they_cover_every_section_and_every_alternative() -> None:
         used |= {key for key in ("domain", "title", "constants", "labels") if getattr(spec, key)}
     assert used >= {
         "predicate where", "predicate formula", "predicate table", "predicate clauses", "outputs cover",
-        "permutation values", "permutation map", "output value", "output table", "output bits",
+        "permutation values", "permutation map", "permutation steps", "output value", "output table",
+        "output bits",
         "output signed",
         "array False", "word True", "domain", "title", "constants", "labels",
     }  # fmt: skip
@@ -136,8 +137,21 @@ def test_lamp_digits_light_the_usual_bars() -> None:
         assert table[digit] == sum(1 << "abcdefg".index(bar) for bar in names) | (digit % 2) << 7
 
 
+def code_wheel(index: int) -> int:
+    """The evening's scrambling with plain operators."""
+    code, tide, spring = index & 255, (index >> 8 & 7) - (index >> 8 & 8), index >> 12
+    code = (code + 3 * tide + 7) % 256
+    code ^= code >> 3
+    code = code * 5 % 256
+    code = (code << tide % 8 | code >> 8 - tide % 8) % 256
+    code = code ^ 255 if spring else code
+    code = code // 16 | code % 16 * 16 if tide < 0 else code
+    return index >> 8 << 8 | code
+
+
 IN_PLACE: dict[str, Callable[[int], int]] = {
     "dial_code.toml": lambda place: place ^ (place >> 1),
+    "code_wheel.toml": code_wheel,
     "rota_shift.toml": lambda keeper: (keeper + 3) % 11,
     "locker_keys.toml": lambda key: (3, 6, 1, 4, 7, 0)[key],
     "lens_turn.toml": lambda v: (
