@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import random
+from collections import deque
 from collections.abc import Callable, Iterator
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 
 from revsynth.circuit.model import Circuit, Qubit
@@ -26,6 +28,9 @@ LOOK_BITS = 11
 FIRST_LOOK = 16
 MOST_STEPS = 1 << 33
 """Inputs times steps up to which the sparse engine runs all inputs: some ten minutes."""
+THREADS = 2
+THREADS_FROM = 4
+"""Blocks from which threads share them; each thread holds the state of one block."""
 SAMPLE_BITS = 12
 SAMPLE_BLOCKS = 16
 """A sample has so many blocks of 2**SAMPLE_BITS inputs."""
@@ -134,10 +139,10 @@ class _Decider:
             return
         size = self.engines.block_bits(bits)
         looked = bits <= LOOK_BITS
-        for base in range(0, 1 << bits, 1 << size):
+        for base, chunk in self._blocks(bits, size):
             if base:
                 self.progress(f"verifying: {base} of {1 << bits} inputs")
-            part = self.engines.fast(self.demand.block(base, size))
+            part = self.engines.fast(chunk)
             if part is not None:
                 yield part
                 continue
@@ -154,6 +159,26 @@ class _Decider:
                 yield from self._sample()
                 return
             yield from self.engines.run_slow(self.demand, base, size)
+
+    def _blocks(self, bits: int, size: int) -> Iterator[tuple[int, Chunk]]:
+        """All lanes in blocks; where there are many, two threads run the next ones meanwhile."""
+        bases = range(0, 1 << bits, 1 << size)
+        if len(bases) < THREADS_FROM:
+            for base in bases:
+                yield base, self.demand.block(base, size)
+            return
+        helper = ThreadPoolExecutor(THREADS)
+        ahead: deque[tuple[int, Chunk]] = deque()
+        try:
+            for base in bases:
+                chunk = self.demand.block(base, size)
+                self.engines.begin(chunk, helper)
+                ahead.append((base, chunk))
+                if len(ahead) > THREADS:
+                    yield ahead.popleft()
+            yield from ahead
+        finally:
+            helper.shutdown(cancel_futures=True)
 
     def _first_look(self) -> list[int]:
         """Marked inputs and a spread of others."""

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import sys
 from collections.abc import Iterator
+from concurrent.futures import Executor, Future
 from dataclasses import dataclass
 from functools import cached_property
 from typing import TYPE_CHECKING
@@ -68,6 +69,7 @@ class Engines:
         self._sparse_bits = SPARSE_BITS
         self._ordered = False
         self._compiled: Compiled | None = None
+        self._ahead: list[tuple[Chunk, Future[Finals]]] = []
         self.name = ""
 
     def block_bits(self, bits: int) -> int:
@@ -103,6 +105,12 @@ class Engines:
             return self._fast(chunk)
         return self._through_compiled(chunk)
 
+    def begin(self, chunk: Chunk, helper: Executor) -> None:
+        """Have lanes run in another thread, where they are for the kernel; `fast` is to ask in this order."""
+        if self._compiled is not None and not self._use_sparse:
+            future = helper.submit(self._run_compiled, self._compiled, chunk, self._limit)
+            self._ahead.append((chunk, future))
+
     def told(self, chunk: Chunk) -> Part:
         """The final states with records of outcomes, for lanes that the compiled engine has run."""
         return (None if self._use_sparse else self._fast(chunk)) or self._sparse(chunk)
@@ -136,9 +144,10 @@ class Engines:
         while True:
             assert self._compiled is not None
             try:
-                finals = self._compiled.run(
-                    chunk.start, chunk.lanes + 1, most_branches=self._limit, most_runs=self._limit
-                )
+                if self._ahead and self._ahead[0][0] is chunk:
+                    finals = self._ahead.pop(0)[1].result()
+                else:
+                    finals = self._run_compiled(self._compiled, chunk, self._limit)
                 return Part(chunk, finals, brief=True)
             except RevealsSomewhereError:
                 return self.told(chunk)
@@ -150,6 +159,10 @@ class Engines:
                 self._reorder()
         self._use_sparse = True
         return None
+
+    @staticmethod
+    def _run_compiled(compiled: Compiled, chunk: Chunk, limit: int) -> Finals:
+        return compiled.run(chunk.start, chunk.lanes + 1, most_branches=limit, most_runs=limit)
 
     def _name_fast(self) -> None:
         self.name = (
@@ -189,6 +202,7 @@ class Engines:
         self.__dict__.pop("_plan", None)
         self._limit = MANY
         self._ordered = True
+        self._ahead = []
         if self._compiled is not None:
             self._compile()
 

@@ -8,7 +8,8 @@ one of these two, so that "the same in all lanes" is seen from the number of the
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
+
+from revsynth.verification.kernel import kernel
 
 ALL = np.uint64(0xFFFFFFFFFFFFFFFF)
 
@@ -52,31 +53,31 @@ HEADER: how many places there are.
 """
 
 
-@njit(cache=True)
+@kernel
 def column_of(st, slot, qubit):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Where in `st` the row of a closed qubit is."""
     return st[COLUMN] + slot * st[QUBITS] + qubit
 
 
-@njit(cache=True)
+@kernel
 def opened_of(st, slot, qubit):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Where in `st` the three rows of an open qubit's phase are."""
     return st[OPENED] + 3 * (slot * st[QUBITS] + qubit)
 
 
-@njit(cache=True)
+@kernel
 def phase_of(st, slot):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Where in `st` the three rows of a branch's phase are."""
     return st[PHASE] + 3 * slot
 
 
-@njit(cache=True)
+@kernel
 def member(st, run, k):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Where in `st` the slot of branch k of a run is."""
     return st[MEMBERS] + run * st[BRANCH_SPACE] + k
 
 
-@njit(cache=True)
+@kernel
 def taken(pool, st):  # type: ignore[no-untyped-def]  # pragma: no cover
     """A row nobody uses, with one user now."""
     st[FREE_ROWS] -= 1
@@ -85,7 +86,7 @@ def taken(pool, st):  # type: ignore[no-untyped-def]  # pragma: no cover
     return row
 
 
-@njit(cache=True)
+@kernel
 def dropped(pool, st, row):  # type: ignore[no-untyped-def]  # pragma: no cover
     """One user less."""
     if row >= 2:
@@ -95,7 +96,7 @@ def dropped(pool, st, row):  # type: ignore[no-untyped-def]  # pragma: no cover
             st[FREE_ROWS] += 1
 
 
-@njit(cache=True)
+@kernel
 def shared(pool, st, row):  # type: ignore[no-untyped-def]  # pragma: no cover
     """One user more."""
     if row >= 2:
@@ -103,7 +104,7 @@ def shared(pool, st, row):  # type: ignore[no-untyped-def]  # pragma: no cover
     return row
 
 
-@njit(cache=True)
+@kernel
 def private(pool, st, row):  # type: ignore[no-untyped-def]  # pragma: no cover
     """For one of its users: a row with the same lanes that may be written."""
     if row >= 2 and st[st[REFS] + row] == 1:
@@ -116,7 +117,7 @@ def private(pool, st, row):  # type: ignore[no-untyped-def]  # pragma: no cover
     return new
 
 
-@njit(cache=True)
+@kernel
 def settled(pool, st, row, some, every):  # type: ignore[no-untyped-def]  # pragma: no cover
     """A row just written, the OR and the AND of its words known: itself, or 0 or 1."""
     if some == np.uint64(0):
@@ -128,7 +129,7 @@ def settled(pool, st, row, some, every):  # type: ignore[no-untyped-def]  # prag
     return row
 
 
-@njit(cache=True)
+@kernel
 def xored(pool, st, row, where):  # type: ignore[no-untyped-def]  # pragma: no cover
     """The row XOR `where`, in place of the row for the one user that asks."""
     if where == 0:
@@ -149,7 +150,7 @@ def xored(pool, st, row, where):  # type: ignore[no-untyped-def]  # pragma: no c
     return settled(pool, st, row, some, every)
 
 
-@njit(cache=True)
+@kernel
 def both(pool, st, one, other):  # type: ignore[no-untyped-def]  # pragma: no cover
     """One user more of the row one AND other."""
     if one == 0 or other == 0:
@@ -168,13 +169,13 @@ def both(pool, st, one, other):  # type: ignore[no-untyped-def]  # pragma: no co
     return settled(pool, st, row, some, np.uint64(0))
 
 
-@njit(cache=True)
+@kernel
 def inverted(pool, st, row):  # type: ignore[no-untyped-def]  # pragma: no cover
     """The complement, in place of the row for the one user that asks."""
     return xored(pool, st, row, 1)
 
 
-@njit(cache=True)
+@kernel
 def equal(pool, st, one, other):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Whether two rows hold the same."""
     if one == other:
@@ -188,7 +189,7 @@ def equal(pool, st, one, other):  # type: ignore[no-untyped-def]  # pragma: no c
     return i == a.size
 
 
-@njit(cache=True)
+@kernel
 def opposite(pool, st, one, other):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Whether two rows differ in every lane."""
     if one < 2 or other < 2:
@@ -200,7 +201,29 @@ def opposite(pool, st, one, other):  # type: ignore[no-untyped-def]  # pragma: n
     return i == a.size
 
 
-@njit(cache=True)
+@kernel
+def narrowed(pool, st, found, row, negative):  # type: ignore[no-untyped-def]  # pragma: no cover
+    """`found` AND the row (its complement where negative), in place of `found`."""
+    if found == 1:
+        found = shared(pool, st, row)
+        return inverted(pool, st, found) if negative else found
+    found = private(pool, st, found)
+    f, a = pool[found], pool[row]
+    some = np.uint64(0)
+    if negative:
+        for i in range(f.size):
+            value = f[i] & ~a[i]
+            f[i] = value
+            some |= value
+    else:
+        for i in range(f.size):
+            value = f[i] & a[i]
+            f[i] = value
+            some |= value
+    return settled(pool, st, found, some, np.uint64(0))
+
+
+@kernel
 def product(pool, st, slot, literal, begin, end):  # type: ignore[no-untyped-def]  # pragma: no cover
     """One user more of the row of lanes in which the literals begin ... end - 1 hold; all closed."""
     left = 0
@@ -227,56 +250,7 @@ def product(pool, st, slot, literal, begin, end):  # type: ignore[no-untyped-def
     return found
 
 
-@njit(cache=True)
-def narrowed(pool, st, found, row, negative):  # type: ignore[no-untyped-def]  # pragma: no cover
-    """`found` AND the row (its complement where negative), in place of `found`."""
-    if found == 1:
-        found = shared(pool, st, row)
-        return inverted(pool, st, found) if negative else found
-    found = private(pool, st, found)
-    f, a = pool[found], pool[row]
-    some = np.uint64(0)
-    if negative:
-        for i in range(f.size):
-            value = f[i] & ~a[i]
-            f[i] = value
-            some |= value
-    else:
-        for i in range(f.size):
-            value = f[i] & a[i]
-            f[i] = value
-            some |= value
-    return settled(pool, st, found, some, np.uint64(0))
-
-
-@njit(cache=True)
-def turned(pool, st, place, where, amount):  # type: ignore[no-untyped-def]  # pragma: no cover
-    """Add `amount` modulo 8 to the phase in st[place : place + 3] in the lanes of `where`."""
-    if where == 0:
-        return
-    p0, p1, p2 = st[place], st[place + 1], st[place + 2]
-    if where == 1 and p0 < 2 and p1 < 2 and p2 < 2:
-        total = p0 + 2 * p1 + 4 * p2 + amount
-        for plane in range(3):
-            st[place + plane] = (total >> plane) & 1
-        return
-    if amount & 1:
-        _one_more(pool, st, place, where, (amount & 2) != 0)
-        if amount == 3 or amount == 5:
-            st[place + 2] = xored(pool, st, st[place + 2], where)
-        return
-    if amount & 2:
-        part = both(pool, st, p1, where)
-        if amount == 6:
-            part = xored(pool, st, part, where)
-        st[place + 1] = xored(pool, st, p1, where)
-        st[place + 2] = xored(pool, st, p2, part)
-        dropped(pool, st, part)
-    else:
-        st[place + 2] = xored(pool, st, p2, where)
-
-
-@njit(cache=True)
+@kernel
 def _one_more(pool, st, place, where, less):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Add 1 modulo 8, or take 1 away where `less`."""
     r0, r1, r2 = (
@@ -306,7 +280,54 @@ def _one_more(pool, st, place, where, less):  # type: ignore[no-untyped-def]  # 
     st[place + 2] = settled(pool, st, r2, some2, every2)
 
 
-@njit(cache=True)
+@kernel
+def turned(pool, st, place, where, amount):  # type: ignore[no-untyped-def]  # pragma: no cover
+    """Add `amount` modulo 8 to the phase in st[place : place + 3] in the lanes of `where`."""
+    if where == 0:
+        return
+    p0, p1, p2 = st[place], st[place + 1], st[place + 2]
+    if where == 1 and p0 < 2 and p1 < 2 and p2 < 2:
+        total = p0 + 2 * p1 + 4 * p2 + amount
+        for plane in range(3):
+            st[place + plane] = (total >> plane) & 1
+        return
+    if amount & 1:
+        _one_more(pool, st, place, where, (amount & 2) != 0)
+        if amount == 3 or amount == 5:
+            st[place + 2] = xored(pool, st, st[place + 2], where)
+        return
+    if amount & 2:
+        part = both(pool, st, p1, where)
+        if amount == 6:
+            part = xored(pool, st, part, where)
+        st[place + 1] = xored(pool, st, p1, where)
+        st[place + 2] = xored(pool, st, p2, part)
+        dropped(pool, st, part)
+    else:
+        st[place + 2] = xored(pool, st, p2, where)
+
+
+@kernel
+def _full_adder(pool, st, slot, part, carry):  # type: ignore[no-untyped-def]  # pragma: no cover
+    """Plane 1 of the slot's phase plus two rows; what goes over into plane 2, with one user."""
+    row, over = private(pool, st, st[phase_of(st, slot) + 1]), taken(pool, st)
+    a, o, b, c = pool[row], pool[over], pool[part], pool[carry]
+    some, every, some_over, every_over = np.uint64(0), ALL, np.uint64(0), ALL
+    for i in range(a.size):
+        half = a[i] ^ b[i]
+        out = (a[i] & b[i]) | (half & c[i])
+        value = half ^ c[i]
+        a[i] = value
+        o[i] = out
+        some |= value
+        every &= value
+        some_over |= out
+        every_over &= out
+    st[phase_of(st, slot) + 1] = settled(pool, st, row, some, every)
+    return settled(pool, st, over, some_over, every_over)
+
+
+@kernel
 def added(pool, st, slot, o0, o1, o2, where):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Add the phase in the rows o0, o1, o2 to that of a slot in the lanes of `where`.
 
@@ -336,27 +357,7 @@ def added(pool, st, slot, o0, o1, o2, where):  # type: ignore[no-untyped-def]  #
     dropped(pool, st, over)
 
 
-@njit(cache=True)
-def _full_adder(pool, st, slot, part, carry):  # type: ignore[no-untyped-def]  # pragma: no cover
-    """Plane 1 of the slot's phase plus two rows; what goes over into plane 2, with one user."""
-    row, over = private(pool, st, st[phase_of(st, slot) + 1]), taken(pool, st)
-    a, o, b, c = pool[row], pool[over], pool[part], pool[carry]
-    some, every, some_over, every_over = np.uint64(0), ALL, np.uint64(0), ALL
-    for i in range(a.size):
-        half = a[i] ^ b[i]
-        out = (a[i] & b[i]) | (half & c[i])
-        value = half ^ c[i]
-        a[i] = value
-        o[i] = out
-        some |= value
-        every &= value
-        some_over |= out
-        every_over &= out
-    st[phase_of(st, slot) + 1] = settled(pool, st, row, some, every)
-    return settled(pool, st, over, some_over, every_over)
-
-
-@njit(cache=True)
+@kernel
 def negated(pool, st, place, where):  # type: ignore[no-untyped-def]  # pragma: no cover
     """Minus the phase in st[place : place + 3], in the lanes of `where`."""
     low, middle = st[place], st[place + 1]
