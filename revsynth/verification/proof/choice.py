@@ -21,6 +21,11 @@ MOST_OUTPUTS = 64
 NEIGHBOURS = 4096
 """Neighbours (one bit changed) of satisfying inputs."""
 CONFLICTS = 20_000
+"""Conflicts for each question, where that is a second or two; fewer where a conflict costs more."""
+NODE_CONFLICTS = 100_000_000
+"""Conflicts times nodes for each question: a conflict visits more of a large encoding."""
+HOPELESS = 2
+"""Output bits for which nothing could be decided, after which no more is looked for."""
 
 
 class Choice:
@@ -39,19 +44,32 @@ class Choice:
         found: dict[int, None] = {}
         bits = [bit for bit in dict.fromkeys(self._translation.bits) if bit != FALSE][:MOST_OUTPUTS]
         encoding = Encoding(self._parities)
+        hopeless = 0
         try:
             for bit in bits:
                 for attempt in range(max(SATISFYING // len(bits), 1)):
-                    forced = self._forced(4 * attempt)
-                    for literals in (forced, forced[: len(forced) // 4], ()):
-                        answer = encoding.ever([bit, self._translation.domain, *literals], CONFLICTS)
-                        if answer:
-                            found[number(encoding.model(self._inputs))] = None
-                        if answer is not False:
-                            break
+                    answer = self._ask(encoding, bit, self._forced(4 * attempt))
+                    if answer:
+                        found[number(encoding.model(self._inputs))] = None
+                    elif answer is None and attempt == 0:
+                        hopeless += 1
+                        break
+                if hopeless == HOPELESS:
+                    break
         finally:
             encoding.close()
         return list(found)
+
+    def _ask(self, encoding: Encoding, bit: Literal, forced: list[Literal]) -> bool | None:
+        """Whether the bit is 1 somewhere in the domain, with as many forced bits as go with that."""
+        answer: bool | None = False
+        for literals in (forced, forced[: len(forced) // 4], []):
+            wanted = [bit, self._translation.domain, *literals]
+            nodes = encoding.size(wanted)
+            answer = encoding.ever(wanted, min(CONFLICTS, NODE_CONFLICTS // nodes))
+            if answer is not False:
+                break
+        return answer
 
     def _forced(self, count: int) -> list[Literal]:
         """Random values for some of the inputs."""

@@ -47,6 +47,12 @@ class Encoding:
             join(known[node], a, b)
         return known[top]
 
+    def size(self, literals: Sequence[Literal]) -> int:
+        """How many nodes the solver knows, these literals and all that they rest on included."""
+        for literal in literals:
+            self.variable(literal)
+        return len(self._variable)
+
     def ever(self, literals: Sequence[Literal], conflicts: int | None) -> bool | None:
         """Whether all the literals are 1 for some input; None where the limit of conflicts was reached."""
         if FALSE in literals:
