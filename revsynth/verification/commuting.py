@@ -12,25 +12,23 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from revsynth.verification.steps import FLIP, HADAMARD, MEASURE, RESET, TURN, Step
+from revsynth.verification.steps import FLIP, HADAMARD, MEASURE, RESET, TURN, Step, Steps
 
 
 def commuting(steps: Sequence[Step], qubits: int, wanted: Sequence[int]) -> list[int]:
     """Those of the qubits `wanted` whose X the circuit provably commutes with, sign included."""
     paulis = _Paulis(qubits, wanted)
-    for step in steps:
-        if step.condition >= 0:
-            paulis.demand_commuting(step)
-        elif step.act == FLIP:
-            paulis.flip(step)
-        elif step.act == HADAMARD:
-            paulis.hadamard(step.target)
-        elif step.act == MEASURE:
-            paulis.failed |= paulis.x[step.target]
-        elif step.act == RESET:
-            paulis.failed |= paulis.x[step.target] | paulis.z[step.target]
-        else:
-            paulis.turn(step)
+    flat = Steps.of(steps)
+    x, z = paulis.x, paulis.z
+    literal, offset = flat.literal.tolist(), flat.offset.tolist()
+    for index, (target, begin, end) in enumerate(
+        zip(flat.target.tolist(), offset[:-1], offset[1:], strict=True)
+    ):
+        touched = x[target] | z[target] if target >= 0 else 0
+        for one in literal[begin:end]:
+            touched |= x[one >> 1] | z[one >> 1]
+        if touched:
+            paulis.pass_through(steps[index])
     return paulis.unchanged(wanted)
 
 
@@ -44,6 +42,21 @@ class _Paulis:
         self.failed = 0
         for number, qubit in enumerate(wanted):
             self.x[qubit] = 1 << number
+
+    def pass_through(self, step: Step) -> None:
+        """Carry all operators through one step; a step on qubits where they do nothing changes nothing."""
+        if step.condition >= 0:
+            self.demand_commuting(step)
+        elif step.act == FLIP:
+            self.flip(step)
+        elif step.act == HADAMARD:
+            self.hadamard(step.target)
+        elif step.act == MEASURE:
+            self.failed |= self.x[step.target]
+        elif step.act == RESET:
+            self.failed |= self.x[step.target] | self.z[step.target]
+        else:
+            self.turn(step)
 
     def demand_commuting(self, step: Step) -> None:
         """Give up operators that a step could change."""

@@ -98,8 +98,14 @@ class Steps(Sequence[Step]):
     @overload
     def __getitem__(self, index: slice) -> Steps: ...
     def __getitem__(self, index: int | slice) -> Step | Steps:
-        order = np.arange(len(self), dtype=np.int64)[index]
-        return self.take(order) if isinstance(index, slice) else next(iter(self.take(np.atleast_1d(order))))
+        if isinstance(index, slice):
+            return self.take(np.arange(len(self), dtype=np.int64)[index])
+        place = range(len(self))[index]
+        literals = self.literal[self.offset[place] : self.offset[place + 1]].tolist()
+        act, target, amount, angle, condition, bit, source = (
+            getattr(self, name)[place].item() for name in _BY_STEP
+        )
+        return Step(act, tuple(literals), target, amount, angle, condition, bit, source)
 
     def __iter__(self) -> Iterator[Step]:
         literal = self.literal.tolist()

@@ -27,6 +27,10 @@ CASES = {
     "build 16 inputs without structure": [
         *("build", "--where", "(a * b + a) % 251 < 97", "--input", "a=8", "--input", "b=8", "-o", "/dev/null")
     ],
+    "build 16 inputs as 780,000 gates": [
+        *("build", "--where", "(a * b + a) % 251 < 97", "--input", "a=8", "--input", "b=8"),
+        *("--method", "products", "-o", "/dev/null"),
+    ],
 }
 
 

@@ -16,6 +16,7 @@ from revsynth.verification.elementary import (
     HADAMARD,
     TURN,
     Step,
+    Steps,
     elementary,
     has_angles,
     is_classical,
@@ -83,3 +84,23 @@ def test_what_counts_as_classical() -> None:
     assert is_classical(elementary(c.build()))
     c.x(0, condition=(Guard((0,)),))
     assert not is_classical(elementary(c.build()))
+
+
+def test_steps_are_a_sequence_and_join_and_reorder() -> None:
+    c = CircuitBuilder()
+    c.add_register("q", 3)
+    c.x(0, (3, 4))
+    c.t(1)
+    c.add(Kind.GPHASE, (), (), (0.3,))
+    c.h(2)
+    steps = elementary(c.build())
+    every = list(steps)
+    assert [steps[index] for index in range(4)] == every
+    assert steps[-1] == every[-1]
+    assert list(steps[1:3]) == every[1:3]
+    assert list(Steps.of(every)) == every
+    assert list(Steps.of([])) == []
+    assert list(steps.take(np.array([3, 0, 0]))) == [every[3], every[0], every[0]]
+    assert list(steps[:2].followed_by(steps[2:])) == every
+    with pytest.raises(IndexError):
+        steps[4]
