@@ -106,7 +106,9 @@ class Gathering:
         if short and not self._too_large:
             misses = (f"{trial.method}: {trial.failed}" for trial in self.trials if trial.method in short)
             return BudgetError("nothing fits the budget: " + "; ".join(misses))
-        reasons = "; ".join(f"{trial.method}: {trial.failed}" for trial in self.trials)
+        able = {method.name for method in WIDE} if self.task.tabulated is None else set()
+        told = [trial for trial in self.trials if trial.method in able] or self.trials
+        reasons = "; ".join(f"{trial.method}: {trial.failed}" for trial in told)
         text = f"no method serves this spec with oracle '{self.task.oracle}': {reasons}"
         return BudgetError(text) if self._too_large else UsageError(text)
 

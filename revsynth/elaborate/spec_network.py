@@ -7,6 +7,7 @@ from revsynth.elaborate.explain import OfCover
 from revsynth.elaborate.expressions import Expressions
 from revsynth.elaborate.formulas import formula_literal
 from revsynth.elaborate.linear import modulo_power, plain
+from revsynth.elaborate.map_steps import stepped_map
 from revsynth.elaborate.model import Check, Elaboration
 from revsynth.elaborate.modular_maps import modular_program
 from revsynth.elaborate.numbers import pattern_of
@@ -89,7 +90,7 @@ class _Elaborator:
         checks = (*self.expressions.checks(), *self.checks)
         program = None
         if isinstance(body, Permutation) and body.map is not None:
-            program = modular_program(spec, body.map)
+            program = modular_program(spec, body.map) or stepped_map(spec, body.map)
         return Elaboration(function, words, checks, tuple(self.expressions.warnings), program)
 
     def _predicate(self, body: Predicate) -> tuple[list[Literal], Literal]:

@@ -59,6 +59,14 @@ def elaborate_steps(spec: Spec) -> Stepped:
     return Stepped(program, checks, domain, tuple(warnings))
 
 
+def program_of_steps(spec: Spec, steps: tuple[Step, ...]) -> Program:
+    """The program of steps already read, without checks of what is undefined in them."""
+    parts = [_StepBuilder(spec, step) for step in steps]
+    for part in parts:
+        part.build()
+    return Program(spec.input_bits, tuple(part.made() for part in parts))
+
+
 @dataclass(frozen=True)
 class _RunsInto:
     """The error that an input runs into."""

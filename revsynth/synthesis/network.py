@@ -38,6 +38,12 @@ class FromNetwork:
         """Why a network cannot serve the task."""
         if task.oracle == "inplace" and task.program is not None:
             return None
+        if task.oracle == "inplace" and task.tabulated is None:
+            return (
+                "too wide for a table, a block in place is built from steps, or from a map whose new "
+                "values are (a * c + d) % N with a < N all over the domain, or sums modulo 2**bits, XORs and "
+                "exchanges"
+            )
         if task.oracle in ("inplace", "embedded"):
             return f"a network leaves its inputs as they are, so nothing can be '{task.oracle}'"
         if task.oracle == "phase" and task.outputs != 1:

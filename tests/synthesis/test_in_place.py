@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
 import pytest
 from hypothesis import given
@@ -152,10 +154,50 @@ def test_two_words_of_a_map_at_once_and_a_constant_by_name() -> None:
     check(spec, dirty_outside=True)
 
 
-@pytest.mark.parametrize("text", ["(a + b) % 11", "a ^ 1", "(a + 3) % 17", "(a * a) % 11", "(0 * a) % 11"])
+@pytest.mark.parametrize("text", ["(a + b) % 11", "a | 1", "(a + 3) % 17", "(a * a) % 11", "(0 * a) % 11"])
 def test_other_maps_have_no_program(text: str) -> None:
     spec = revsynth.permutation(map={"a": text}, inputs={"a": 4, "b": 30}, domain="a < 11")
     assert elaborate(spec).program is None
+
+
+@pytest.mark.parametrize(
+    "new_values",
+    [
+        {"a": "(a + b) % 16", "b": "b ^ c[0]", "c[0]": "c[0]"},
+        {"b": "c[0] ^ b", "a": "(b * 3 + a) % 16"},
+        {"a": "b", "b": "a", "c[0]": "(c[0] - a * b) % 4"},
+        {"c[1]": "(c[1] + c[0]) % 4", "c[0]": "c[0] ^ (a & 3)"},
+    ],
+)
+def test_maps_that_are_steps_in_other_words(new_values: dict[str, str]) -> None:
+    inputs: dict[str, Any] = {"a": 4, "b": 4, "c": {"bits": 2, "count": 2}}
+    check(revsynth.permutation(map=new_values, inputs=inputs))
+
+
+@pytest.mark.parametrize(
+    "new_values",
+    [
+        {"a": "(a + b) % 16", "b": "(b + a) % 16"},
+        {"a": "b", "b": "(a + 1) % 16"},
+        {"s": "s ^ 1", "a": "(a + s) % 8"},
+        {"s": "s", "a": "15 - a"},
+    ],
+)
+def test_maps_that_go_around_in_a_circle_or_are_of_another_form_have_no_program(
+    new_values: dict[str, str],
+) -> None:
+    inputs: dict[str, Any] = {"a": 4, "b": 4, "s": {"bits": 3, "signed": True}}
+    assert elaborate(revsynth.permutation(map=new_values, inputs=inputs)).program is None
+
+
+def test_a_wide_map_of_another_form_is_refused_with_what_is_possible() -> None:
+    spec = revsynth.permutation(map={"a": "(a * a) % 16"}, inputs={"a": 4, "b": 34})
+    with pytest.raises(
+        revsynth.RevsynthError,
+        match=r"oracle 'inplace': network: too wide for a table, a block in place is built from steps, or "
+        r"from a map whose new values are \(a \* c \+ d\) % N with a < N all over the domain",
+    ):
+        revsynth.build(spec)
 
 
 def test_a_modular_map_that_its_domain_does_not_bound_has_no_program() -> None:

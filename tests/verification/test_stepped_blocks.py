@@ -8,6 +8,7 @@ import pytest
 from hypothesis import given
 
 import revsynth
+from revsynth.circuit.model import Kind
 from revsynth.qasm import Program
 from revsynth.spec.expectation import Expectation
 from revsynth.spec.layout import decode, encode
@@ -96,7 +97,8 @@ def break_gates(name: str, count: int) -> None:
     """Some faults, every one found; an input that is shown is run through the steps in plain Python."""
     spec = WIDE[name]
     build = revsynth.build(spec, uncompute="measured", gates="toffoli")
-    faults = [one for one in mutants(build.circuit) if one.fault != "condition dropped"]
+    # A Z is the same whichever of its qubits is called the target.
+    faults = [one for one in mutants(build.circuit) if one.op.kind != Kind.Z or "exchanged" not in one.fault]
     expectation = Expectation(understand(spec))
     for mutant in random.Random(7).sample(faults, count):
         verdict = verify_program(spec, Program(mutant.circuit, "3.0"), oracle="inplace")
