@@ -8,7 +8,7 @@ from hypothesis import strategies as st
 
 from revsynth.errors import ExpressionError
 from revsynth.spec.expectation import Expectation
-from revsynth.spec.expression import parse
+from revsynth.spec.expression import Scope, parse
 from revsynth.spec.layout import decode
 from revsynth.spec.model import Clauses, Cover, Predicate, Spec, Word
 from revsynth.spec.reference import evaluate
@@ -53,12 +53,18 @@ def words_of(gates: TableGates) -> dict[str, Number | Items]:
 def check(text: str) -> None:
     """The walk agrees with the reference wherever the reference has a value."""
     expression = parsed(text)
-    gates = TableGates(SCOPE.input_bits)
-    try:
-        number = Walk(expression, gates, words_of(gates)).result()
-    except TooLargeToTranslateError:
-        return
-    found = values(number, gates, SCOPE.input_bits)
+    for by_columns in (False, True):
+        gates = TableGates(SCOPE.input_bits)
+        try:
+            number = Walk(expression, gates, words_of(gates), by_columns=by_columns).result()
+        except TooLargeToTranslateError:
+            continue
+        compare(text, values(number, gates, SCOPE.input_bits))
+
+
+def compare(text: str, found: list[int]) -> None:
+    """The values are those of the reference."""
+    expression = parsed(text)
     for x in range(1 << SCOPE.input_bits):
         try:
             wanted = evaluate(expression, decode(WORDS, x))
@@ -176,9 +182,15 @@ def test_clauses(clauses: tuple[tuple[int, ...], ...], xors: tuple[tuple[int, ..
 
 def check_spec(spec: Spec) -> None:
     """Bits, free values and domain at all inputs, against the plain evaluation of the spec."""
+    for by_columns in (False, True):
+        check_translation(spec, by_columns=by_columns)
+
+
+def check_translation(spec: Spec, *, by_columns: bool) -> None:
+    """The same for one way to add."""
     understanding = understand(spec)
     gates = TableGates(spec.input_bits)
-    found = translate(spec, understanding.outputs, gates, gates.inputs)
+    found = translate(spec, understanding.outputs, gates, gates.inputs, by_columns=by_columns)
     expectation = Expectation(understanding)
     bits, free = [[gates.table(bit) for bit in row] for row in (found.bits, found.free)]
     domain = gates.table(found.domain)
@@ -206,8 +218,7 @@ def test_wide_words_are_translated() -> None:
     assert isinstance(spec.body, Predicate)
     for a, b in [(3, 5), ((1 << 64) - 1, 1), (1 << 63, (1 << 63) + 9), (12345, 0)]:
         bits = [(value >> place & 1) for value in (a, b) for place in range(64)]
-        found = translate(spec, (), TableGates(1), bits)
-        from revsynth.spec.expression import Scope
-
         expression = parse(scope_text, Scope({word.name: word for word in spec.inputs}))
-        assert found.bits == (int(evaluate(expression, {"a": a, "b": b})),)
+        for by_columns in (False, True):
+            found = translate(spec, (), TableGates(1), bits, by_columns=by_columns)
+            assert found.bits == (int(evaluate(expression, {"a": a, "b": b})),)

@@ -12,7 +12,6 @@ from revsynth.spec.expectation import Expectation
 from revsynth.spec.layout import encode
 from revsynth.spec.model import Cover, Outputs, Predicate, Spec, Word
 from revsynth.spec.understand import Understanding, understand
-from revsynth.verification import verify_program
 from revsynth.verification.decide import decide
 from revsynth.verification.evidence import Counterexample
 from revsynth.verification.matching import Roles, match

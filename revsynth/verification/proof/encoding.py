@@ -59,6 +59,10 @@ class Encoding:
             return False
         return self.solver.solve([self.variable(literal) for literal in literals], conflicts)
 
+    def never(self, literal: Literal) -> None:
+        """The literal has been shown to be 0 for every input: further questions may use it."""
+        self.solver.add([-self.variable(literal)])
+
     def same(self, a: Literal, b: Literal, conflicts: int) -> bool | None:
         """Whether two literals are equal for every input; what is proved is learnt for good."""
         one, other = self.variable(a), self.variable(b)

@@ -23,6 +23,8 @@ RANDOM = 1 << 20
 """Random inputs, where they take about a second; fewer where one takes longer."""
 BLOCK = 1 << 18
 """Inputs at a time."""
+LEAST = 1 << 16
+"""Random inputs that are simulated in any case."""
 TESTS = 512
 NODE_WORDS = 1 << 31
 """Nodes times words of 64 inputs that are simulated: a second or two."""
@@ -57,36 +59,45 @@ class Samples:
         self._understanding = understanding
         self._parities = parities
         self._variables = list(variables)
-        self._translation = translation
+        self.translation = translation
         self._translated = translated
         self._progress = progress
         self._spec = SampledSpec(understanding)
         self.count = self.random = self.inside = 0
 
-    def first_hit(self, chosen: Sequence[int], literals: Sequence[Literal]) -> Hit | None:
+    def first_hit(
+        self, chosen: Sequence[int], literals: Sequence[Literal], most: int | None = None
+    ) -> Hit | None:
         """Compare the spec with its gates, and find an input at which one of the literals is 1.
 
-        chosen: inputs by combined index, before the random ones. Raises ExpressionError where the spec is
+        chosen: inputs by combined index, before the random ones; most: a limit to those. Inputs are counted
+        only where there is none. Raises ExpressionError where the spec is
         undefined at an input inside its domain, AssertionError where its gates are not the spec.
         """
         size = self._understanding.input_bits
-        said = [self._translation.domain, *self._translation.bits, *self._translation.free]
+        said = [self.translation.domain, *self.translation.bits, *self.translation.free]
         cone = Cone(self._parities, self._variables, [*said, *literals])
-        random = min(self._spec.count(RANDOM), max(64 * NODE_WORDS // max(len(cone), 1), BLOCK) & -64)
+        random = min(self._spec.count(RANDOM), max(64 * NODE_WORDS // max(len(cone), 1), LEAST) & -64)
+        if most is not None:
+            random = min(random, most)
         for inputs, lanes, drawn in self._blocks(chosen, random):
             wanted = self._spec.wanted(inputs)
             starts = self._starts(inputs, wanted)
             values = cone.values([*said, *literals], starts)
             if self._translated:
                 self._compare(wanted, values[: len(said)], inputs[:size])
-            self.count += lanes
-            if drawn:
-                self.random += lanes
-                self.inside += int(np.bitwise_count(wanted.domain).sum())
+            if most is None:
+                self._add(wanted, lanes, drawn)
             hit = _first(values[len(said) :], starts)
             if hit is not None:
                 return hit
         return None
+
+    def _add(self, wanted: Wanted, lanes: int, drawn: bool) -> None:
+        self.count += lanes
+        if drawn:
+            self.random += lanes
+            self.inside += int(np.bitwise_count(wanted.domain).sum())
 
     def _blocks(self, chosen: Sequence[int], random: int) -> Iterator[tuple[Words, int, bool]]:
         """Columns of inputs, how many inputs they are, and whether they are random."""
@@ -109,7 +120,7 @@ class Samples:
         starts = np.concatenate([inputs, others])
         if not self._translated:
             rows = {literal: row for row, literal in enumerate(self._variables)}
-            said = [self._translation.domain, *self._translation.bits, *self._translation.free]
+            said = [self.translation.domain, *self.translation.bits, *self.translation.free]
             for literal, row in zip(said, (wanted.domain, *wanted.bits, *wanted.free), strict=True):
                 starts[rows[literal]] = row
         return starts

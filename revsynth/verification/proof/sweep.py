@@ -13,17 +13,22 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from revsynth.verification.lifting.linear_proofs import GuessError
 from revsynth.verification.lifting.parities import AND, FALSE, TRUE, Literal, Parities
 from revsynth.verification.proof.cone import Cone, Words
 from revsynth.verification.proof.encoding import Encoding
 
 WORDS = 16
-"""Random words at the start; each counterexample adds one more."""
-MOST_WORDS = 256
+"""Random words at the start; every batch of counterexamples adds one more."""
+MOST_WORDS = 512
+BATCH = 32
+"""Counterexamples that are gathered before all nodes are told apart by them."""
+TRIES = 4
+"""Earlier nodes with the same values that a node is compared with."""
 STEP_CONFLICTS = 400
 """Conflicts that a question about two nodes may take."""
-LAST_CONFLICTS = 2_000_000
-"""Conflicts that a question about an output may take."""
+ATTEMPTS = 3
+"""Guesses from signatures that may be wrong."""
 
 
 @dataclass(frozen=True)
@@ -69,8 +74,8 @@ class Sweep:
         if self._encoding is not None:
             self._encoding.close()
 
-    def zero(self, literal: Literal) -> Answer:
-        """Whether a literal (one of those given) is 0 for every input."""
+    def zero(self, literal: Literal, conflicts: int) -> Answer:
+        """Whether one of the literals given is 0 for every input; `conflicts` limit the last question."""
         if literal == FALSE:
             return Answer(True)
         if literal == TRUE:
@@ -84,11 +89,19 @@ class Sweep:
         if image == FALSE:
             return Answer(True, method="sweeping")
         self._progress("proving: asking the solver about an output")
-        answer = self._encoding.ever([image], LAST_CONFLICTS)
+        answer = self._encoding.ever([image], conflicts)
         if answer:
             free = [self._image[variable >> 1] for variable in self._variables]
             return Answer(False, tuple(self._encoding.model(free)), "solver")
-        return Answer(None if answer is None else True, method="solver")
+        if answer is None:
+            return Answer(None, method="solver")
+        self._encoding.never(image)
+        return Answer(True, method="solver")
+
+    @property
+    def conflicts(self) -> int:
+        """Conflicts that the solver has met so far."""
+        return 0 if self._encoding is None else self._encoding.solver.conflicts
 
     def _seen(self, literal: Literal) -> tuple[int, ...] | None:
         """A test input at which the literal is 1."""
@@ -102,12 +115,23 @@ class Sweep:
 
     def _sweep(self) -> None:
         """Build all nodes anew, in order, those that are proved equal as one."""
-        if self._new is not None:
-            return
-        old, new = self._old, Parities(1)
+        for attempt in range(ATTEMPTS):
+            if self._new is not None:
+                return
+            try:
+                self._sweep_once(attempt + 1)
+            except GuessError:
+                self.close()
+                self._new = None
+                if attempt + 1 == ATTEMPTS:
+                    raise
+
+    def _sweep_once(self, seed: int) -> None:
+        old, new = self._old, Parities(seed)
         self._new = new
         encoding = self._encoding = Encoding(new)
-        image = self._image
+        self._image = image = {0: FALSE}
+        self.merged = self.undecided = 0
         for variable in self._variables:
             image[variable >> 1] = new.free()
         keys = _Keys(self._cone, self._tests)
@@ -127,22 +151,23 @@ class Sweep:
 
     def _merged(self, node: int, made: Literal, keys: _Keys, encoding: Encoding) -> Literal:
         """An earlier literal that is proved equal to the new one, else the new one."""
-        while True:
-            candidate = keys.candidate(node)
-            if candidate is None:
-                keys.enter(node, made)
-                return made
-            if candidate == made:
-                return made
+        free = [self._image[variable >> 1] for variable in self._variables]
+        tried: set[Literal] = set()
+        while len(tried) < TRIES:
+            candidate = next((one for one in keys.candidates(node) if one not in tried), None)
+            if candidate is None or candidate == made:
+                break
+            tried.add(candidate)
             answer = encoding.same(candidate, made, STEP_CONFLICTS)
             if answer:
                 self.merged += 1
                 return candidate
-            if answer is None or keys.words >= MOST_WORDS:
+            if answer is None:
                 self.undecided += 1
-                return made
-            free = [self._image[variable >> 1] for variable in self._variables]
-            keys.refine(encoding.model(free))
+            else:
+                keys.learn(encoding.model(free))
+        keys.enter(node, made)
+        return made
 
 
 class _Keys:
@@ -150,43 +175,50 @@ class _Keys:
 
     def __init__(self, cone: Cone, tests: Words) -> None:
         self._cone = cone
-        self._rows = cone.rows(tests)
+        rows = cone.rows(tests).astype("<u8")
+        self._values = [int.from_bytes(row.tobytes(), "little") for row in rows]
+        self._words = tests.shape[1]
+        self._every = (1 << 64 * self._words) - 1
         self._entered: list[tuple[int, Literal]] = []
-        self._found: dict[bytes, tuple[Literal, int]] = {}
+        self._found: dict[int, list[Literal]] = {}
+        self._waiting: list[list[int]] = []
         self._draw = np.random.default_rng(1)
 
-    @property
-    def words(self) -> int:
-        """Test words so far."""
-        return int(self._rows.shape[1])
-
-    def _key(self, node: int) -> tuple[bytes, int]:
+    def _key(self, node: int) -> tuple[int, int]:
         """The values, complemented where the first one is 1, and whether they were."""
-        row = self._rows[self._cone.row(node)]
-        flip = int(row[0]) & 1
-        return (~row if flip else row).tobytes(), flip
+        values = self._values[self._cone.row(node)]
+        flip = values & 1
+        return values ^ self._every if flip else values, flip
 
-    def candidate(self, node: int) -> Literal | None:
-        """The literal entered first with the same values as the node, complemented to match."""
+    def candidates(self, node: int) -> list[Literal]:
+        """The literals entered with the same values as the node, complemented to match."""
         key, flip = self._key(node)
-        found = self._found.get(key)
-        return None if found is None else found[0] ^ found[1] ^ flip
+        return [literal ^ flip for literal in self._found.get(key, ())]
 
     def enter(self, node: int, literal: Literal) -> None:
-        """The node is now the literal `literal`; the first of equal ones counts."""
+        """The node is now the literal `literal`."""
         self._entered.append((node, literal))
         key, flip = self._key(node)
-        self._found.setdefault(key, (literal, flip))
+        some = self._found.setdefault(key, [])
+        if literal ^ flip not in some:
+            some.append(literal ^ flip)
 
-    def refine(self, inputs: Sequence[int]) -> None:
-        """Add a word of tests: one that tells two nodes apart, and inputs near it."""
-        bits = np.array(inputs, dtype=np.uint64)
-        word = np.uint64(0) - bits
-        noise = self._draw.integers(0, 1 << 64, (3, len(bits)), dtype=np.uint64)
-        near = noise[0] & noise[1] & noise[2] & ~np.uint64(1)
-        rows = self._cone.rows((word ^ near)[:, None])
-        self._rows = np.concatenate([self._rows, rows], axis=1)
+    def learn(self, inputs: list[int]) -> None:
+        """An input that tells two nodes apart; a batch of them, and inputs near them, become tests."""
+        self._waiting.append(inputs)
+        if len(self._waiting) < BATCH or self._words >= MOST_WORDS:
+            return
+        lanes = np.array(self._waiting, dtype=np.uint8).T
+        near = lanes ^ (self._draw.integers(0, 8, lanes.shape) == 0)
+        octets = np.packbits(np.concatenate([lanes, near], axis=1), axis=1, bitorder="little")
+        word = np.ascontiguousarray(octets).view("<u8").astype(np.uint64)
+        self._waiting = []
+        new = self._cone.rows(word)[:, 0].tolist()
+        shift = 64 * self._words
+        self._values = [old | more << shift for old, more in zip(self._values, new, strict=True)]
+        self._words += 1
+        self._every = (1 << 64 * self._words) - 1
         self._found = {}
-        for node, literal in self._entered:
-            key, flip = self._key(node)
-            self._found.setdefault(key, (literal, flip))
+        entered, self._entered = self._entered, []
+        for node, literal in entered:
+            self.enter(node, literal)

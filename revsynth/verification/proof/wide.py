@@ -8,6 +8,7 @@ circuit; a solver proves that the two never differ.
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
+from contextlib import ExitStack, closing
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -35,11 +36,18 @@ from revsynth.verification.proof.obligations import (
 )
 from revsynth.verification.proof.running import Runner
 from revsynth.verification.proof.samples import Samples
-from revsynth.verification.proof.sweep import LAST_CONFLICTS, Answer, Sweep
+from revsynth.verification.proof.sweep import Answer, Sweep
 from revsynth.verification.translation import Translation, translate
 from revsynth.verification.translation.gates import TooLargeToTranslateError
 
 Progress = Callable[[str], None]
+
+REFERENCE_CONFLICTS = 500_000
+"""Conflicts for finding an input of the domain."""
+FIRST_CONFLICTS = 30_000
+"""Conflicts for the claims that sweeping leaves, in the first attempt with each way to write the spec."""
+LAST_CONFLICTS = 600_000
+"""The same in the last attempt, over all claims: some minutes."""
 
 
 @dataclass(frozen=True)
@@ -124,13 +132,15 @@ class _Decider:
             progress=progress,
         )
 
-    def _translated(self) -> Translation:
+    def _translated(self, *, by_columns: bool = True) -> Translation:
         """The spec in gates; where that is too large, variables that stand for its values."""
         parities, understanding = self.lifted.parities, self.understanding
         self.stand_ins: list[Literal] = []
         try:
             gates = PlainGates(parities)
-            return translate(understanding.spec, understanding.outputs, gates, self.inputs)
+            return translate(
+                understanding.spec, understanding.outputs, gates, self.inputs, by_columns=by_columns
+            )
         except TooLargeToTranslateError as error:
             self.untranslated = f"the spec could not be written out in gates: {error}"
         size = understanding.output_bits
@@ -139,32 +149,60 @@ class _Decider:
         return Translation(tuple(rest[:size]), tuple(rest[size:]), domain)
 
     def decide(self) -> WideDecision:
-        lifted, roles = self.lifted, self.roles
-        accounted = account(lifted, roles)
+        accounted = account(self.lifted, self.roles)
         chosen = self._chosen()
         reference = self._reference()
         if isinstance(reference, WideDecision):
             return reference
         self.reference = reference
         owed = self._owed(accounted)
-        lifted.parities.proofs.finish()
-        self.progress("verifying: comparing with the spec in plain integers")
-        hit = self.samples.first_hit(chosen, [one.literal for one in owed.all])
-        if hit is not None:
-            variables = hit.variables[: len(lifted.variables)]
-            return self._refuted(owed.all[hit.place], variables)
-        self._say_samples(len(chosen))
+        refuted = self._compared(owed, chosen)
+        if refuted is not None:
+            return refuted
+        self._say_samples()
         self._say_lifting()
         if self.untranslated:
             return self._decision(None, "sampled", f"{self.untranslated}; {self.samples.bound()}")
-        tests = self.samples.tests(chosen)
-        sweep = Sweep(
-            lifted.parities, lifted.variables, [one.literal for one in owed.all], tests, self.progress
-        )
+        with ExitStack() as stack:
+            first = stack.enter_context(closing(self._sweep(owed, chosen)))
+            decision = self._settle(owed, first, FIRST_CONFLICTS)
+            if decision.holds is None:
+                decision = self._by_rows(accounted, chosen) or decision
+            if decision.holds is None:
+                decision = self._settle(owed, first, LAST_CONFLICTS)
+        return decision
+
+    def _by_rows(self, accounted: Account, chosen: list[int]) -> WideDecision | None:
+        """The same with the spec written another way; None where that changes nothing."""
+        first = self.translation
         try:
-            return self._settle(owed, sweep)
+            self.translation = self.samples.translation = self._translated(by_columns=False)
+            if self.translation == first or self.untranslated:
+                return None
+            owed = self._owed(accounted)
+            refuted = self._compared(owed, chosen, random=1 << 12)
+            if refuted is not None:
+                return refuted
+            with closing(self._sweep(owed, chosen)) as sweep:
+                return self._settle(owed, sweep, FIRST_CONFLICTS)
         finally:
-            sweep.close()
+            self.translation = self.samples.translation = first
+
+    def _compared(
+        self, owed: Obligations, chosen: Sequence[int], random: int | None = None
+    ) -> WideDecision | None:
+        """Compare with the spec in exact integers; the decision where a claim fails."""
+        self.lifted.parities.proofs.finish()
+        self.progress("verifying: comparing with the spec in plain integers")
+        hit = self.samples.first_hit(chosen, [one.literal for one in owed.all], random)
+        if hit is None:
+            return None
+        return self._refuted(owed.all[hit.place], hit.variables[: len(self.lifted.variables)])
+
+    def _sweep(self, owed: Obligations, chosen: Sequence[int]) -> Sweep:
+        lifted = self.lifted
+        literals = [one.literal for one in owed.all]
+        return Sweep(lifted.parities, lifted.variables, literals, self.samples.tests(chosen), self.progress)
 
     def _owed(self, accounted: Account) -> Obligations:
         start = [*self.reference, *[0] * (self.lifted.start_variables - len(self.reference))]
@@ -196,14 +234,14 @@ class _Decider:
             return [0] * len(self.inputs)
         encoding = Encoding(parities)
         try:
-            inside = encoding.ever([translation.domain], LAST_CONFLICTS)
+            inside = encoding.ever([translation.domain], REFERENCE_CONFLICTS)
             if inside is False:
                 raise SpecError(
                     "no input satisfies it: a domain needs at least one",
                     source=self.understanding.spec.source,
                     place="[domain] where",
                 )
-            some = encoding.ever([wanted], LAST_CONFLICTS)
+            some = encoding.ever([wanted], REFERENCE_CONFLICTS)
             if some:
                 return encoding.model(self.inputs)
         finally:
@@ -224,7 +262,7 @@ class _Decider:
             return [int(row[word]) >> bit & 1 for row in inputs]
         return self._decision(None, "none", f"{self.untranslated}; no random input was inside the domain")
 
-    def _say_samples(self, chosen: int) -> None:
+    def _say_samples(self) -> None:
         samples = self.samples
         found = "" if self.untranslated else f"{self.satisfying} satisfying ones found by a solver, "
         near = "" if self.untranslated else "their neighbours, "
@@ -247,12 +285,17 @@ class _Decider:
             f"paths, for every start, outcome and phase at once, form {self.roles.oracle}{outcomes}"
         )
 
-    def _settle(self, owed: Obligations, sweep: Sweep) -> WideDecision:
+    def _settle(self, owed: Obligations, sweep: Sweep, conflicts: int) -> WideDecision:
+        """Prove claim by claim; the conflicts are for all of them together."""
         methods: dict[str, int] = {}
         count = len(owed.all)
+        begun = -1
         for place, obligation in enumerate(owed.all):
             self.progress(f"verifying: claim {place + 1} of {count}")
-            answer: Answer = sweep.zero(obligation.literal)
+            spent = sweep.conflicts - begun if begun >= 0 else 0
+            answer: Answer = sweep.zero(obligation.literal, max(conflicts - spent, 1))
+            if begun < 0:
+                begun = sweep.conflicts
             if answer.holds is False:
                 return self._refuted(obligation, answer.inputs)
             if answer.holds is None:
@@ -309,7 +352,7 @@ def _run_only(
         wanted = [translation.domain, *(free ^ 1 for free in translation.free)]
         encoding = Encoding(parities)
         try:
-            if not encoding.ever(wanted, LAST_CONFLICTS):
+            if not encoding.ever(wanted, REFERENCE_CONFLICTS):
                 return WideDecision(None, "none", 0, (), f"{why}; no input of the domain was found")
             reference = number(encoding.model(inputs))
         finally:

@@ -86,6 +86,11 @@ class ListOperations:
 
     def sum(self, items: Items, start: Number) -> Number:
         """The sum of the items that are there, and `start`."""
+        if self.numbers.by_columns:
+            terms = self.numbers.weighted(start)
+            for present, item in self.numbers_of(items):
+                terms += self.numbers.weighted(self.numbers.choose(present, item, constant(0)))
+            return self.numbers.total(terms)
         for present, item in self.numbers_of(items):
             start = self.numbers.add(start, self.numbers.choose(present, item, constant(0)))
         return start

@@ -78,10 +78,15 @@ def _check_size(rows: int, columns: int) -> None:
 
 
 class Arithmetic:
-    """Operations on numbers, written into `gates`."""
+    """Operations on numbers, written into `gates`.
 
-    def __init__(self, gates: Gates) -> None:
+    by_columns: sums and products are added up column by column, three bits to two at a time, first come first
+    served (Wallace, IEEE Transactions on Electronic Computers, 1964); else number by number.
+    """
+
+    def __init__(self, gates: Gates, *, by_columns: bool = False) -> None:
         self.gates = gates
+        self.by_columns = by_columns
 
     def extended(self, number: Number, size: int) -> Number:
         """The same value in `size` bits, or more where it has more."""
@@ -128,9 +133,11 @@ class Arithmetic:
 
     def multiply(self, a: Number, b: Number) -> Number:
         """a * b: a row a bit of b, the row of the sign taken away."""
-        if sum(bit != FALSE for bit in a) < sum(bit != FALSE for bit in b):
+        if not self.by_columns and sum(bit != FALSE for bit in a) < sum(bit != FALSE for bit in b):
             a, b = b, a
         _check_size(len(a), sum(bit != FALSE for bit in b))
+        if self.by_columns:
+            return self.total(self.partial_products(a, b))
         total: Number = (FALSE,)
         for place, bit in enumerate(b):
             if bit == FALSE:
@@ -138,6 +145,81 @@ class Arithmetic:
             row = tuple([FALSE] * place + [self.gates.both(bit, x) for x in a])
             total = self.subtract(total, row) if place == len(b) - 1 else self.add(total, row)
         return total
+
+    def weighted(self, number: Number, factor: int = 1) -> list[tuple[Bit, int]]:
+        """The bits of a number with what they count, times a factor."""
+        last = len(number) - 1
+        return [(bit, factor * (-1 if place == last else 1) << place) for place, bit in enumerate(number)]
+
+    def partial_products(self, a: Number, b: Number, factor: int = 1) -> list[tuple[Bit, int]]:
+        """Every bit of a with every bit of b, and what they count, times a factor."""
+        return [
+            (self.gates.both(one, other), weight * by)
+            for one, weight in self.weighted(a, factor)
+            for other, by in self.weighted(b)
+            if FALSE not in (one, other)
+        ]
+
+    def total(self, terms: Sequence[tuple[Bit, int]]) -> Number:
+        """The sum of bits, each with what it counts: columns of bits of one weight, the lowest first."""
+        fixed = sum(weight for bit, weight in terms if bit == TRUE)
+        loose = [(bit, weight) for bit, weight in terms if bit > TRUE]
+        low = fixed + sum(weight for _, weight in loose if weight < 0)
+        high = fixed + sum(weight for _, weight in loose if weight > 0)
+        size = max(low.bit_length(), high.bit_length()) + 1
+        if size > MOST_BITS:
+            raise TooLargeToTranslateError(f"a number of {size} bits")
+        columns: list[list[Bit]] = [[] for _ in range(size + 1)]
+        for bit, weight in loose:
+            digits = abs(weight)
+            for place in range(digits.bit_length()):
+                if digits >> place & 1:
+                    columns[place].append(bit ^ (weight < 0))
+                    fixed -= (1 << place) * (weight < 0)
+        found: list[Bit] = []
+        for place in range(size):
+            total, fixed = self._column(columns, place, fixed)
+            found.append(total)
+        return trimmed(found)
+
+    def _column(self, columns: list[list[Bit]], place: int, fixed: int) -> tuple[Bit, int]:
+        """The bit of the sum at one place, its carries put into the next column; what is left of `fixed`."""
+        column, fixed = self._without_pairs(columns, place, fixed)
+        position = 0
+        while len(column) - position > 2:
+            x, y, z = column[position : position + 3]
+            position += 3
+            total, carry = self._full_adder(x, y, z)
+            for bit, where in ((total, column), (carry, columns[place + 1])):
+                if bit > TRUE:
+                    where.append(bit)
+            fixed += ((total == TRUE) << place) + ((carry == TRUE) << place + 1)
+        one = fixed >> place & 1
+        first, second = [*column[position:], FALSE, FALSE][:2]
+        total, carry = self._full_adder(first, second, one)
+        if carry > TRUE:
+            columns[place + 1].append(carry)
+        return total, fixed - (one << place) + ((carry == TRUE) << place + 1)
+
+    def _without_pairs(self, columns: list[list[Bit]], place: int, fixed: int) -> tuple[list[Bit], int]:
+        """The same bit twice counts once, one place up; a bit and its complement are 1."""
+        kept: dict[Bit, None] = {}
+        for bit in columns[place]:
+            if bit in kept:
+                del kept[bit]
+                columns[place + 1].append(bit)
+            elif bit ^ 1 in kept:
+                del kept[bit ^ 1]
+                fixed += 1 << place
+            else:
+                kept[bit] = None
+        return list(kept), fixed
+
+    def _full_adder(self, x: Bit, y: Bit, z: Bit) -> tuple[Bit, Bit]:
+        """Sum and carry of three bits."""
+        half = self.gates.differ(x, y)
+        carry = self.gates.differ(x, self.gates.both(half, self.gates.differ(x, z)))
+        return self.gates.differ(half, z), carry
 
     def equal(self, a: Number, b: Number) -> Bit:
         """a == b."""
@@ -224,6 +306,8 @@ class Arithmetic:
 
     def count(self, bits: Sequence[Bit]) -> Number:
         """How many of the bits are 1."""
+        if self.by_columns:
+            return self.total([(bit, 1) for bit in bits])
         numbers = [truth(bit) for bit in bits] or [constant(0)]
         while len(numbers) > 1:
             pairs = [self.add(x, y) for x, y in zip(numbers[::2], numbers[1::2], strict=False)]

@@ -36,18 +36,34 @@ class Translation:
     domain: Bit
 
 
-def translate(spec: Spec, outputs: Sequence[Word], gates: Gates, inputs: Sequence[Bit]) -> Translation:
+def translate(
+    spec: Spec,
+    outputs: Sequence[Word],
+    gates: Gates,
+    inputs: Sequence[Bit],
+    *,
+    by_columns: bool = False,
+) -> Translation:
     """Say the spec in gates over the literals of its input bits, the first word lowest, bit 0 first.
 
-    outputs: the output words with their widths. Raises TooLargeToTranslateError where it cannot be said in
-    reasonable size (and for tables, which are looked up instead).
+    outputs: the output words with their widths. by_columns: how sums and products are added up (see
+    `Arithmetic`): the same function in other gates. Raises TooLargeToTranslateError where it cannot be said
+    in reasonable size (and for tables, which are looked up instead).
     """
-    return _Translator(spec, outputs, gates, inputs).translation()
+    return _Translator(spec, outputs, gates, inputs, by_columns).translation()
 
 
 class _Translator:
-    def __init__(self, spec: Spec, outputs: Sequence[Word], gates: Gates, inputs: Sequence[Bit]) -> None:
+    def __init__(
+        self,
+        spec: Spec,
+        outputs: Sequence[Word],
+        gates: Gates,
+        inputs: Sequence[Bit],
+        by_columns: bool,
+    ) -> None:
         self.spec = spec
+        self.by_columns = by_columns
         self.outputs = outputs
         self.gates = gates
         self.inputs = list(inputs)
@@ -66,7 +82,8 @@ class _Translator:
         return Translation(tuple(bits), tuple(free or [FALSE] * len(bits)), domain)
 
     def _expression(self, text: str) -> Number:
-        return Walk(parse(text, self.scope, source=self.spec.source), self.gates, self.words).result()
+        expression = parse(text, self.scope, source=self.spec.source)
+        return Walk(expression, self.gates, self.words, by_columns=self.by_columns).result()
 
     def _condition(self, text: str) -> Bit:
         return Arithmetic(self.gates).nonzero(self._expression(text))
@@ -75,7 +92,8 @@ class _Translator:
         if body.where is not None:
             return [self._condition(body.where)], []
         if body.formula is not None:
-            return [_formula(read_again(body.formula, self.spec.inputs), self.words, self.gates)], []
+            nodes = read_again(body.formula, self.spec.inputs)
+            return [_formula(nodes, self.words, self.gates, self.by_columns)], []
         if body.clauses is not None:
             return [_clauses(body.clauses, self.inputs, self.gates)], []
         if body.cover is not None:
@@ -115,7 +133,7 @@ class _Translator:
         return bits
 
 
-def _formula(nodes: Sequence[Node], words: Mapping[str, Value], gates: Gates) -> Bit:
+def _formula(nodes: Sequence[Node], words: Mapping[str, Value], gates: Gates, by_columns: bool) -> Bit:
     found: list[Bit] = []
     for node in nodes:
         if node.kind == "constant":
@@ -126,11 +144,11 @@ def _formula(nodes: Sequence[Node], words: Mapping[str, Value], gates: Gates) ->
             assert isinstance(number, tuple)
             found.append(number[node.bit])
         else:
-            found.append(_operate(node.kind, [found[part] for part in node.parts], gates))
+            found.append(_operate(node.kind, [found[part] for part in node.parts], gates, by_columns))
     return found[-1]
 
 
-def _operate(kind: str, parts: list[Bit], gates: Gates) -> Bit:
+def _operate(kind: str, parts: list[Bit], gates: Gates, by_columns: bool) -> Bit:
     if kind in ("~", "not", "Not"):
         return parts[0] ^ 1
     if kind in ("&", "and", "And"):
@@ -145,7 +163,7 @@ def _operate(kind: str, parts: list[Bit], gates: Gates) -> Bit:
         return either(gates, parts[0] ^ 1, parts[1])
     if kind == "ITE":
         return choose(gates, parts[0], parts[1], parts[2])
-    numbers = Arithmetic(gates)
+    numbers = Arithmetic(gates, by_columns=by_columns)
     count = numbers.count(parts)
     if kind == "Majority":
         return numbers.less(constant(len(parts)), numbers.add(count, count))

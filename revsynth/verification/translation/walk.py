@@ -44,10 +44,12 @@ def constant_value(value: Constant) -> Value:
 class Walk:
     """Says one expression in gates."""
 
-    def __init__(self, expression: Expression, gates: Gates, words: Names) -> None:
+    def __init__(
+        self, expression: Expression, gates: Gates, words: Names, *, by_columns: bool = False
+    ) -> None:
         self.expression = expression
         self.gates = gates
-        self.numbers = Arithmetic(gates)
+        self.numbers = Arithmetic(gates, by_columns=by_columns)
         self.lists = ListOperations(self.numbers)
         constants = {name: constant_value(value) for name, value in expression.scope.constants.items()}
         self.names: Names = {**constants, **words}
@@ -86,7 +88,29 @@ class Walk:
     def _truth(self, node: ast.expr, names: Names) -> Bit:
         return self.numbers.nonzero(self._number(node, names))
 
+    def _terms(self, node: ast.expr, names: Names, factor: int) -> list[tuple[Bit, int]]:
+        """A part as bits with what they count, times a factor: sums and products are taken apart."""
+        if isinstance(node, ast.BinOp) and isinstance(node.op, ast.Add | ast.Sub):
+            first, operations = chain(node)
+            if all(isinstance(operation.op, ast.Add | ast.Sub) for operation in operations):
+                found = self._terms(first, names, factor)
+                for operation in operations:
+                    sign = -1 if isinstance(operation.op, ast.Sub) else 1
+                    found += self._terms(operation.right, names, sign * factor)
+                return found
+        if isinstance(node, ast.BinOp) and isinstance(node.op, ast.Mult):
+            first, operations = chain(node)
+            if len(operations) == 1:
+                right = operations[0].right
+                a, b = self._number(first, names), self._number(right, names)
+                return self.numbers.partial_products(a, b, factor)
+        return self.numbers.weighted(self._number(node, names), factor)
+
     def _binary(self, node: ast.BinOp, names: Names) -> Value:
+        if self.numbers.by_columns and isinstance(node.op, ast.Add | ast.Sub):
+            first, operations = chain(node)
+            if all(isinstance(operation.op, ast.Add | ast.Sub) for operation in operations):
+                return self.numbers.total(self._terms(node, names, 1))
         first, operations = chain(node)
         result = self._number(first, names)
         for operation in operations:
