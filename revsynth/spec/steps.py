@@ -13,6 +13,7 @@ from typing import Literal
 
 from revsynth.errors import SpecError
 from revsynth.spec.expression import Expression, Scope, parse
+from revsynth.spec.limits import MAX_BITS
 from revsynth.spec.model import Spec
 from revsynth.spec.step_bits import Place, Places
 from revsynth.spec.step_syntax import Statement, statement_of
@@ -155,6 +156,8 @@ class _Reader:
             raise self._error("the factor of *= is an odd constant, not something that depends on the input")
         if factor % 2 == 0:
             raise self._error("an even factor is not one-to-one modulo 2**bits: an odd one is wanted")
+        if target.bits > MAX_BITS:
+            raise self._error(f"{target.text} has {target.bits} bits: *= takes up to {MAX_BITS}")
         return self._made("multiply", target, amount=factor % (1 << target.bits))
 
     def _assigned(self, target: ast.expr, value: ast.expr) -> Step:

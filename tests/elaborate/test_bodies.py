@@ -210,6 +210,8 @@ def test_tables_that_would_become_too_large_are_refused(monkeypatch: pytest.Monk
         elaborate(spec)
 
 
-def test_steps_have_no_function_here() -> None:
-    with pytest.raises(ValueError, match="steps"):
-        elaborate(spec_of(Permutation(steps=("a += 1",))))
+def test_steps_are_a_function_and_a_program() -> None:
+    elaboration = elaborate(spec_of(Permutation(steps=("a += 1",))))
+    assert elaboration.program is not None
+    assert len(elaboration.program.steps) == 1
+    assert elaboration.function.values.ands == max(elaboration.outputs[0].bits - 2, 0)

@@ -76,8 +76,7 @@ TOML = [
     ("[predicate] table: entry 2 is 'x': only 0, 1 and - are allowed", IN + "[predicate]\ntable = '01 x'\n"),
     ("[predicate] table: 3 entries, but 4 input bits need 16 (input 0 first)",
      IN + "[predicate]\ntable = '01_ -'\n"),
-    ("25 input bits: this version tabulates functions and takes up to 24; more come with a later version",
-     "[inputs]\na = 25\n" + PRED),
+    ("65537 input bits: up to 65536 are allowed", "[inputs]\na = 65537\n" + PRED),
     ("2000000000 input bits", "[inputs]\na = { bits = 2, count = 1000000000 }\n[predicate]\nwhere = '1'\n"),
     ("[outputs]: at least one output word is wanted", IN + "[outputs]\n"),
     ("[outputs] t: a table such as", OUT + "t = 'a'\n"),
@@ -101,9 +100,11 @@ TOML = [
     ("[outputs] t value: values of up to 161 bits at 16777216 inputs need too much memory: "
      "keep the low bits in the expression",
      "[inputs]\na = 23\nb = 1\n[outputs]\nt = { value = 'a ** 7 + b', bits = 3 }\n"),
-    ("[permutation] steps: a list of texts with at least one is wanted, such as [\"x += y\"], not an empty list",
+    ("[permutation] steps: a list of texts with at least one is wanted, such as [\"x += y\"], "
+     "not an empty list",
      PERM + "steps = []\n"),
-    ("[permutation] steps: a list of texts with at least one is wanted, such as [\"x += y\"], not the text 'a'",
+    ("[permutation] steps: a list of texts with at least one is wanted, such as [\"x += y\"], "
+     "not the text 'a'",
      PERM + "steps = 'a'\n"),
     ("[permutation] steps 2: a text in quotes is wanted, not 3", PERM + "steps = ['a += 1', 3]\n"),
     ("[permutation]: exactly one of values, map and steps is wanted, not values and map at once",
@@ -279,5 +280,5 @@ def test_command_line(wanted: str, options: tuple[tuple[str, ...], tuple[str, ..
 
 
 def test_too_many_variables_of_a_cnf_are_refused_before_memory_is_used() -> None:
-    with pytest.raises(SpecError, match=r"big\.cnf: 100000 input bits: this version .* up to 24"):
+    with pytest.raises(SpecError, match=r"big\.cnf: 100000 input bits: up to 65536 are allowed"):
         understand(parse_dimacs("p cnf 100000 1\n1 0\n", "big.cnf"))

@@ -190,6 +190,19 @@ def test_a_step_may_be_written_over_several_lines_with_comments() -> None:
     assert image(["if y > 4:  # high water\n  x += (\n y + 1)\n"], {"x": 4, "y": 3}, x=1, y=5)["x"] == 7
 
 
+def test_too_many_steps_and_too_wide_factors_are_refused() -> None:
+    with pytest.raises(SpecError, match=r"\[permutation\] steps: 10001 steps: up to 10000 are allowed"):
+        understand(revsynth.permutation(steps=["x += 1"] * 10_001, inputs={"x": 30}))
+    with pytest.raises(SpecError, match=r"steps 1: x has 4097 bits: \*= takes up to 4096"):
+        understand(revsynth.permutation(steps=["x *= 3"], inputs={"x": 4097}))
+    with pytest.raises(SpecError, match=r"steps 1: 100003 characters: up to 100000 are allowed"):
+        understand(revsynth.permutation(steps=["x +=" + " " * 99_998 + "1"], inputs={"x": 4}))
+    for operand in ("-" * 150 + "1", "(" * 300 + "1" + ")" * 300, "~" * 90_000 + "1"):
+        with pytest.raises(SpecError, match=r"steps 1: .*nested") as caught:
+            understand(revsynth.permutation(steps=["x += " + operand], inputs={"x": 4}))
+        assert "\n" not in str(caught.value)
+
+
 def test_wide_steps_are_checked_without_a_table() -> None:
     spec = Spec((Word("x", 64), Word("y", 64)), Permutation(steps=("x += y", "y *= 5")))
     understanding = understand(spec)

@@ -20,7 +20,7 @@ from revsynth.logic.truth_table import unpack_values, variable, words_for
 from revsynth.options import Controls
 from revsynth.spec.model import Permutation, Spec, Word
 from revsynth.spec.understand import understand
-from revsynth.synthesis.in_place import in_place_blocks
+from revsynth.synthesis.in_place import in_place_blocks, sheet
 from revsynth.synthesis.interface import Block, Task
 from tests.step_programs import step_specs
 
@@ -268,6 +268,14 @@ def test_a_budget_of_lines_is_kept_or_refused_with_what_is_needed() -> None:
         in_place_blocks(Task(None, "inplace", program=program, lines=16))
     narrow = in_place_blocks(Task(None, "inplace", program=program, aim="qubits"))
     assert [block.cascade.lines for block in narrow] == [17, 23]
+
+
+def test_blocks_that_would_become_too_large_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(sheet, "MOST_GATES", 200)
+    with pytest.raises(BudgetError, match="the steps need more than 200 gates; narrower words need fewer"):
+        blocks_of(Spec((Word("x", 40), Word("y", 40)), Permutation(steps=("x += y",))))
+    with pytest.raises(BudgetError, match="more than 200 gates"):
+        blocks_of(Spec((Word("a", 20),), Permutation(map={"a": "a * 3 % 1000003"}), domain="a < 1000003"))
 
 
 def test_a_task_without_a_program_is_a_mistake() -> None:

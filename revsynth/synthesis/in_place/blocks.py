@@ -73,6 +73,7 @@ def _block(program: Program, style: Style, name: str, positive: bool) -> Block:
         values = sources.enter()
         for operation in step.operations:
             carry_out(operation, sheet, values, style.narrow)
+            sheet.check_size()
         sources.leave()
     sheet.bring_home()
     return Block(sheet.cascade(positive), name, inputs=program.bits, work=sheet.lines - program.bits)

@@ -47,6 +47,7 @@ def _add_chosen(sheet: Sheet, target: Sequence[Line], chosen: Value, constant: i
     (sign,) = sheet.take()
     wide = [*target, sign]
     less, more = -modulus % (2 << size), (constant - modulus) % (2 << size)
+    sheet.check_size()
     add_held(sheet, wide, _either(less, more, chosen, size + 1))
     add_held(sheet, target, _either(0, modulus, value_of(sign), size))
     xor_carry(sheet, sign, target, _either(0, constant, chosen, size), subtract=True)

@@ -7,12 +7,17 @@ complement, so that complementing is flipping the lowest bit for all of them.
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
+from heapq import heappop, heappush
 from typing import TypeAlias
 
 from revsynth.cascade.model import Cascade, Gate, Line
+from revsynth.errors import BudgetError
 
 Value: TypeAlias = int
 Bit: TypeAlias = int
+
+MOST_GATES = 4_000_000
+"""Larger blocks are refused: they take some hundred bytes a gate."""
 
 FALSE: Value = 0
 TRUE: Value = 1
@@ -47,11 +52,11 @@ class Sheet:
         return [self.home[bit] for bit in bits]
 
     def take(self, count: int = 1) -> list[Line]:
-        """Clean scratch lines, those used before first."""
+        """Clean scratch lines, the lowest first."""
         found: list[Line] = []
         for _ in range(count):
             if self._free:
-                found.append(self._free.pop())
+                found.append(heappop(self._free))
             else:
                 found.append(self.lines)
                 self.lines += 1
@@ -59,8 +64,8 @@ class Sheet:
 
     def give(self, lines: Iterable[Line]) -> None:
         """Lines that are clean again."""
-        self._free.extend(lines)
-        self._free.sort(reverse=True)
+        for line in lines:
+            heappush(self._free, line)
 
     def flip(self, target: Line) -> None:
         """NOT."""
@@ -99,6 +104,11 @@ class Sheet:
     def undo_from(self, start: int, end: int) -> None:
         """The gates from `start` to `end` once more, backwards."""
         self.gates.extend(self.gates[start:end][::-1])
+
+    def check_size(self) -> None:
+        """Raise BudgetError where the block is getting too large."""
+        if len(self.gates) > MOST_GATES:
+            raise BudgetError(f"the steps need more than {MOST_GATES:,} gates; narrower words need fewer")
 
     def bring_home(self) -> None:
         """Every bit back to the line of its number: swaps of what was only renamed."""
