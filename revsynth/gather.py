@@ -7,13 +7,14 @@ from collections.abc import Callable
 from dataclasses import replace
 
 from revsynth.choice import Trial
-from revsynth.errors import BudgetError, UsageError
+from revsynth.errors import BudgetError, UndecidedError, UsageError
 from revsynth.options import BuildOptions, Effort
 from revsynth.shortening import shorten, without_idle_work
 from revsynth.spec.limits import MAX_INPUT_BITS
 from revsynth.synthesis.interface import Block, Method, Task
 from revsynth.synthesis.keeping import keep_products
 from revsynth.synthesis.methods import METHODS, WIDE
+from revsynth.synthesis.optimal import OPTIMAL
 
 _LADDER: dict[Effort, tuple[Effort, ...]] = {
     "low": ("low",),
@@ -44,9 +45,13 @@ class Gathering:
         self._say = progress
         self._end = None if options.time_limit is None else time.monotonic() + options.time_limit
         self._too_large = False
+        self._undecided: UndecidedError | None = None
 
     def run(self) -> None:
-        """Ask every method that is wanted and fits; raises UsageError or BudgetError where none serves."""
+        """Ask every method that is wanted and fits; raises UsageError or BudgetError where none serves.
+
+        Raises UndecidedError where the one method that serves could not decide whether it has an answer.
+        """
         fit = self._fitting()
         try:
             for level in _levels(self.options):
@@ -57,13 +62,15 @@ class Gathering:
         except _TimeIsUpError:
             self.stopped_early = True
         if not self.blocks:
-            raise self._nothing_serves()
+            raise self._undecided or self._nothing_serves()
 
     def _fitting(self) -> list[Method]:
         fit = []
         for method in METHODS:
             if asked_for(method, self.options):
                 reason = unfit(method, self.task)
+                if reason is None and method is OPTIMAL and self.options.method == "auto":
+                    reason = OPTIMAL.on_request(self.task)
                 if reason is None:
                     fit.append(method)
                 else:
@@ -80,8 +87,12 @@ class Gathering:
                 self.trials.append(trial)
             self._too_large = True
             return
+        except UndecidedError as error:
+            self._undecided = error
+            self.trials.append(Trial(method.name, failed=str(error)))
+            return
         for block in found:
-            if method in WIDE:
+            if method in WIDE or method is OPTIMAL:
                 self._add(without_idle_work(block))
             if method not in WIDE or len(block.cascade) <= SHORT:
                 self._progress(f"{block.method}: reducing {len(block.cascade)} gates")

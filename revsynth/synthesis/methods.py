@@ -6,10 +6,11 @@ from revsynth.synthesis.decompose import DECOMPOSE
 from revsynth.synthesis.interface import Method
 from revsynth.synthesis.linear import LINEAR
 from revsynth.synthesis.network import NETWORK
+from revsynth.synthesis.optimal import OPTIMAL
 from revsynth.synthesis.products import PRODUCTS
 from revsynth.synthesis.transform import TRANSFORM
 
-METHODS: tuple[Method, ...] = (LINEAR, NETWORK, PRODUCTS, DECOMPOSE, TRANSFORM)
+METHODS: tuple[Method, ...] = (LINEAR, OPTIMAL, NETWORK, PRODUCTS, DECOMPOSE, TRANSFORM)
 """Tried in this order; `auto` keeps the cheapest result for the aim."""
 
 WIDE: tuple[Method, ...] = (NETWORK,)
