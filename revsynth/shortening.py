@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from revsynth.cascade.model import PHASE, Cascade, Gate
+import numpy as np
+
+from revsynth.cascade.model import PHASE, Cascade
 from revsynth.options import BuildOptions, Oracle
 from revsynth.reduction import reduce
 from revsynth.reduction.known_lines import drop_superfluous
@@ -24,17 +26,16 @@ def shorten(block: Block, oracle: Oracle, options: BuildOptions, progress: Progr
 
 def without_idle_work(block: Block) -> Block:
     """The block without work lines that no gate touches."""
-    touched = {line for gate in block.cascade for line in gate.lines}
-    first_work = block.cascade.lines - block.work
-    kept = [line for line in range(block.cascade.lines) if line < first_work or line in touched]
-    if len(kept) == block.cascade.lines:
+    cascade = block.cascade
+    first_work = cascade.lines - block.work
+    touched = np.zeros(cascade.lines, dtype=np.bool_)
+    touched[:first_work] = True
+    touched[cascade.control >> 1] = True
+    touched[cascade.target[cascade.target != PHASE]] = True
+    if touched.all():
         return block
-    place = {line: index for index, line in enumerate(kept)}
-    moved = (
-        Gate(
-            PHASE if gate.target == PHASE else place[gate.target],
-            tuple(2 * place[c >> 1] + (c & 1) for c in gate.controls),
-        )
-        for gate in block.cascade
-    )
-    return replace(block, cascade=Cascade.from_gates(len(kept), moved), work=len(kept) - first_work)
+    place = np.cumsum(touched, dtype=np.int32) - 1
+    target = np.where(cascade.target == PHASE, PHASE, place[cascade.target]).astype(np.int32)
+    control = 2 * place[cascade.control >> 1] + (cascade.control & 1)
+    kept = int(place[-1]) + 1
+    return replace(block, cascade=Cascade(kept, target, cascade.offset, control), work=kept - first_work)

@@ -8,6 +8,7 @@ no distinguished target (common practice), and with no literal at all it is the 
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
+from itertools import pairwise
 from typing import NamedTuple, TypeAlias
 
 import numpy as np
@@ -129,9 +130,9 @@ class Cascade:
 
     def __iter__(self) -> Iterator[Gate]:
         control = self.control.tolist()
-        offset = self.offset.tolist()
-        for index, target in enumerate(self.target.tolist()):
-            yield Gate(target, tuple(control[offset[index] : offset[index + 1]]))
+        ends = self.offset.tolist()
+        controls = [tuple(control[begin:end]) for begin, end in pairwise(ends)]
+        return map(Gate._make, zip(self.target.tolist(), controls, strict=True))
 
     def __eq__(self, other: object) -> bool:
         if not isinstance(other, Cascade):

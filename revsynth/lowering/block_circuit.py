@@ -55,8 +55,9 @@ def lower(
     once = gates == "clifford+t" or aim != "gates"
     units = gather_units(lines, block.cascade) if once else units_of(block.cascade)
     known = known_lines(block, oracle)
-    steps = steps_of(order_units(units, lines), lines, known)
-    if known:
+    ordered = order_units(units, lines)
+    steps = steps_of(ordered, lines, known)
+    if known and ordered != units:
         given = steps_of(units, lines, known)
         if clean_products(given) > clean_products(steps):
             steps = given

@@ -32,25 +32,25 @@ def gather_units(lines: int, gates: Iterable[Gate]) -> list[Unit]:
     latest: dict[tuple[int, ...], int] = {}
     changed = [-1] * lines
     read = [-1] * lines
-    for gate in gates:
-        place = latest.get(gate.controls, -1) if len(gate.controls) >= 2 and gate.target != PHASE else -1
+    for target, literals in gates:
+        place = latest.get(literals, -1) if len(literals) >= 2 and target != PHASE else -1
         if (
             place >= 0
-            and gate.target not in targets[place]
-            and read[gate.target] <= place
-            and all(changed[c >> 1] <= place for c in gate.controls)
+            and target not in targets[place]
+            and read[target] <= place
+            and all(changed[c >> 1] <= place for c in literals)
         ):
-            targets[place].append(gate.target)
+            targets[place].append(target)
         else:
             place = len(targets)
-            targets.append([] if gate.target == PHASE else [gate.target])
-            controls.append(gate.controls)
-            if gate.target != PHASE:
-                latest[gate.controls] = place
+            targets.append([] if target == PHASE else [target])
+            controls.append(literals)
+            if target != PHASE and len(literals) >= 2:
+                latest[literals] = place
         # Times are unit numbers; a joined gate counts as late as the newest unit, which only forbids more.
         now = len(targets) - 1
-        if gate.target != PHASE:
-            changed[gate.target] = now
-        for control in gate.controls:
+        if target != PHASE:
+            changed[target] = now
+        for control in literals:
             read[control >> 1] = now
     return [Unit(c, tuple(t)) for c, t in zip(controls, targets, strict=True)]

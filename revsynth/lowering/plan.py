@@ -11,8 +11,9 @@ from array import array
 from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass, field
-from heapq import nsmallest
 from typing import NamedTuple
+
+import numpy as np
 
 from revsynth.cascade.line_values import LineValues
 from revsynth.circuit.model import Kind
@@ -61,18 +62,28 @@ def steps_of(units: Sequence[Unit], lines: int, known: dict[int, int]) -> list[S
     if not known:
         return [_plain_step(unit) for unit in units]
     state = LineValues.start(lines, known)
-    zero_lines = {line for line in range(lines) if state.is_zero(line)}
+    values = state.values
+    zero = bytearray(not value for value in values)
     steps: list[Step] = []
     for unit in units:
-        before = [t for t in unit.targets if t in zero_lines]
-        state.apply(unit.controls, unit.targets)
-        after = [t for t in unit.targets if state.is_zero(t)]
+        controls, targets = unit
+        if len(controls) == 1 and len(targets) == 1:
+            # Nearly all units of a large network are CNOTs; this is what the rest of the loop makes of one.
+            target = targets[0]
+            value = values[target] = values[target] ^ state.factor(controls[0])
+            tip = Tip.NOT if value and not zero[target] else Tip.FROM_ZERO if value else Tip.TO_ZERO
+            zero[target] = not value
+            steps.append(Step._make((controls, tip, target, -1, (), (), ())))
+            continue
+        before = [t for t in targets if zero[t]]
+        state.apply(controls, targets)
+        after = [t for t in targets if not values[t]]
         zeros: tuple[int, ...] = ()
-        if len(unit.controls) > 2 or (len(unit.controls) == 2 and not (before or after)):
-            zeros = _idle_zeros(unit, zero_lines)
-        zero_lines.difference_update(unit.targets)
-        zero_lines.update(after)
-        steps.append(_not_step(unit, before, after, zeros) if unit.targets else _plain_step(unit, zeros))
+        if len(controls) > 2 or (len(controls) == 2 and not (before or after)):
+            zeros = _idle_zeros(unit, zero)
+        for t in targets:
+            zero[t] = not values[t]
+        steps.append(_not_step(unit, before, after, zeros) if targets else _plain_step(unit, zeros))
     return steps
 
 
@@ -81,10 +92,11 @@ def clean_products(steps: Sequence[Step]) -> int:
     return sum(len(step.controls) >= 2 and step.tip in (Tip.FROM_ZERO, Tip.TO_ZERO) for step in steps)
 
 
-def _idle_zeros(unit: Unit, zero_lines: set[int]) -> tuple[int, ...]:
+def _idle_zeros(unit: Unit, zero: bytearray) -> tuple[int, ...]:
     """The first of the lines in 0 that the unit does not touch: as many as any construction could use."""
     touched = {*unit.targets, *(c >> 1 for c in unit.controls)}
-    return tuple(nsmallest(MOST_ZEROS, zero_lines - touched))
+    first = np.flatnonzero(np.frombuffer(zero, dtype=np.uint8))[: MOST_ZEROS + len(touched)].tolist()
+    return tuple([line for line in first if line not in touched][:MOST_ZEROS])
 
 
 def arrange_steps(steps: Sequence[Step], shape: Shape) -> list[Step]:
@@ -99,6 +111,11 @@ def arrange_steps(steps: Sequence[Step], shape: Shape) -> list[Step]:
     previous: list[int] = []
     changed: set[int] = set()
     for index, step in enumerate(steps):
+        if len(literals[index]) <= 1 and not step.before and not step.after:
+            if step.tip is not Tip.Z:
+                changed.add(step.target)
+            arranged.append(step)
+            continue
         if len(literals[index]) > 1:
             previous = arrange(literals[index], previous, changed, following[index], shape)
             changed = set()
@@ -150,8 +167,9 @@ class Pieces:
 
     def put(self, template: Template, qubits: Sequence[int]) -> None:
         """Append a piece."""
-        number = self._number.setdefault(id(template), len(self.templates))
-        if number == len(self.templates):
+        number = self._number.get(id(template))
+        if number is None:
+            number = self._number[id(template)] = len(self.templates)
             self.templates.append(template)
         self.template.append(number)
         self.start.append(len(self.qubits))
@@ -169,27 +187,37 @@ class Plan:
 
 def plan(steps: Sequence[Step], lines: int, scratch: int, style: Style) -> Plan:
     """Write every step with that many scratch qubits, which must suffice."""
-    choices: dict[Demand, Choice] = {}
-    for demand in demands_of(steps, lines):
-        choice = demand.choice(scratch, style)
-        if choice is None:
-            raise ValueError(f"no construction for {demand} with {scratch} scratch qubits")
-        choices[demand] = choice
+    choices: dict[tuple[int, ...], Choice] = {}
     writer = _Writer(lines, scratch)
     for step in steps:
-        writer.write(step, choices[_demand(step, lines)] if step.controls else None)
+        choice = None
+        if step.controls:
+            key = (len(step.controls), step.tip, len(step.zeros))
+            choice = choices.get(key)
+            if choice is None:
+                choice = choices[key] = _chosen(_demand(key, lines), scratch, style)
+        writer.write(step, choice)
     writer.finish()
     return Plan(writer.pieces, scratch, writer.minus)
 
 
+def _chosen(demand: Demand, scratch: int, style: Style) -> Choice:
+    choice = demand.choice(scratch, style)
+    if choice is None:
+        raise ValueError(f"no construction for {demand} with {scratch} scratch qubits")
+    return choice
+
+
 def demands_of(steps: Sequence[Step], lines: int) -> Counter[Demand]:
     """How often each demand comes up."""
-    return Counter(_demand(step, lines) for step in steps if step.controls)
+    counts = Counter((len(step.controls), step.tip, len(step.zeros)) for step in steps if step.controls)
+    return Counter({_demand(key, lines): count for key, count in counts.items()})
 
 
-def _demand(step: Step, lines: int) -> Demand:
-    zeros = len(step.zeros)
-    return Demand(len(step.controls), step.tip, zeros, lines - len(step.controls) - 1 - zeros)
+def _demand(key: tuple[int, ...], lines: int) -> Demand:
+    """The demand of steps with so many controls, a tip, and so many lines known to be in 0."""
+    controls, tip, zeros = key
+    return Demand(controls, Tip(tip), zeros, lines - controls - 1 - zeros)
 
 
 class _Writer:
@@ -243,6 +271,10 @@ class _Writer:
     def _write_cnots(self, step: Step) -> None:
         control = step.controls[0] >> 1
         flips = (step.controls[0] & 1) ^ self._flipped[control]
+        if not step.before and not step.after:
+            self.pieces.put(COPY, (control, step.target))
+            self._flipped[step.target] ^= flips
+            return
         for target in dict.fromkeys((step.target, *step.before, *step.after)):
             self.pieces.put(COPY, (control, target))
             self._flipped[target] ^= flips

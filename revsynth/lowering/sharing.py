@@ -51,6 +51,8 @@ def arrange(
 
 def order_units(units: Sequence[Unit], lines: int) -> list[Unit]:
     """The same units, each run of mutually commuting ones ordered so that neighbours share literals."""
+    if all(len(unit.controls) < _few(lines) for unit in units):
+        return list(units)
     ordered: list[Unit] = []
     run: list[Unit] = []
     read = [-1] * lines
@@ -72,10 +74,14 @@ def order_units(units: Sequence[Unit], lines: int) -> list[Unit]:
     return ordered
 
 
+def _few(lines: int) -> int:
+    """Where no unit has so many controls nothing is put in order."""
+    return 2 if lines <= 64 else 3
+
+
 def _chain(run: Sequence[Unit], lines: int) -> list[Unit]:
     """Greedy: from the first on, always the unit with most literals in common with the last one."""
-    few = 2 if lines <= 64 else 3
-    if len(run) < 3 or all(len(unit.controls) < few for unit in run):
+    if len(run) < 3 or all(len(unit.controls) < _few(lines) for unit in run):
         return list(run)
     rows = sorted(run) if len(run) > WINDOW else list(run)
     ordered: list[Unit] = []
