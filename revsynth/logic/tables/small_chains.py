@@ -80,18 +80,21 @@ def _extend(
         budget.nodes -= 1
         if budget.nodes < 0 or len(signals) > _MOST_SIGNALS:
             return None
-        missing = missing_span(signals, tables, 1 << inputs)
-        if not len(missing):
+        residues = missing_residues(signals, tables, 1 << inputs)
+        if not residues:
             return products
+        if len(signals) + len(residues) > _MOST_SIGNALS:
+            return None  # each independent output takes a product of its own
+        missing = span_of(residues)
         sums = _all_sums(signals)
-        residues = _products_residues(signals, sums)
-        helpful = np.flatnonzero(np.isin(residues, missing))
+        reduced = _products_residues(signals, sums)
+        helpful = np.flatnonzero(np.isin(reduced, missing))
         if not len(helpful):
             break
         _append(signals, products, sums, int(helpful[0]))
     if detours == 0:
         return None
-    kept, first = np.unique(residues, return_index=True)
+    kept, first = np.unique(reduced, return_index=True)
     for place in np.sort(first[kept != 0]).tolist():
         longer, more = list(signals), list(products)
         _append(longer, more, sums, place)
@@ -101,16 +104,20 @@ def _extend(
     return None
 
 
-def missing_span(signals: list[Table], tables: list[Table], bits: int) -> Residues:
-    """All nonzero residues, modulo the signals, of sums of the outputs."""
-    span = [0]
+def missing_residues(signals: list[Table], tables: list[Table], bits: int) -> list[Table]:
+    """Independent residues of the outputs modulo the signals: as many as products are missing at least."""
     echelon, seen = Echelon(bits), Echelon(bits)
     for signal in signals:
         echelon.insert(signal)
-    for table in tables:
-        rest = echelon.residue(table)
-        if seen.insert(rest):
-            span += [rest ^ other for other in span]
+    residues = [echelon.residue(table) for table in tables]
+    return [rest for rest in residues if seen.insert(rest)]
+
+
+def span_of(residues: list[Table]) -> Residues:
+    """All sums of one residue or more: 2**n - 1 of n."""
+    span = [0]
+    for rest in residues:
+        span += [rest ^ other for other in span]
     return np.array(span[1:], dtype=np.uint32)
 
 

@@ -14,6 +14,7 @@ from revsynth.logic.affine_classes import and_count
 from revsynth.logic.function import Function
 from revsynth.logic.network import Network, evaluate
 from revsynth.logic.tables import table_network
+from revsynth.logic.tables.small_chains import small_chain
 from revsynth.logic.truth_table import pack, pack_values
 from revsynth.options import Effort
 
@@ -127,6 +128,13 @@ def test_published_layers() -> None:
 
     assert best(function_of([chi(x) for x in range(32)], 5, 5), "low") == 5
     assert best(function_of([ascon(x) for x in range(32)], 5, 5), "low") == 5
+
+
+def test_more_independent_outputs_than_products_are_refused_at_once() -> None:
+    """A decoder of five inputs has 26 outputs beyond sums of inputs; their 2^26 sums are never listed."""
+    decoder = [1 << x for x in range(32)]
+    assert small_chain(decoder, 5, 300) is None
+    assert best(function_of([1 << x for x in range(32)], 5, 32), "low") == 26
 
 
 def test_single_outputs_up_to_five_inputs_are_exact() -> None:
