@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING, Any, Literal
 import numpy as np
 from numpy.typing import NDArray
 
+from revsynth.errors import ExpressionError
 from revsynth.spec.expectation import Expectation
 from revsynth.spec.expression import Expression, Scope, parse
 from revsynth.spec.images import unfit_error
@@ -25,6 +26,8 @@ from revsynth.spec.model import Outputs, Permutation, Predicate, Word
 from revsynth.spec.over_domain import condition_error
 from revsynth.spec.reference import evaluate
 from revsynth.spec.sampled_gates import Gatewise, gatewise
+from revsynth.spec.sampled_steps import SampledSteps
+from revsynth.spec.step_reference import run_steps
 
 if TYPE_CHECKING:
     from revsynth.spec.understand import Understanding
@@ -97,21 +100,28 @@ class SampledSpec:
                 for word in self.spec.inputs
                 for name, bits in word.elements()
             ]
-        if not self._values:
+        self._steps: SampledSteps | None = None
+        if isinstance(body, Permutation) and body.steps is not None:
+            self._steps = SampledSteps(self.spec, body.steps, self._in_state)
+        elif not self._values:
             self._gatewise = gatewise(self.spec)
 
     def count(self, most: int) -> int:
         """How many inputs, at most `most`, take about a second: a function of the spec alone."""
         cost = 0
-        if self._values or self._domain is not None:
+        evaluated = [self._domain, *(wish.expression for wish in self._values)]
+        if self._steps is not None:
+            cost += self._steps.cost
+            evaluated += self._steps.expressions
+        if any(expression is not None for expression in evaluated):
             probe = self._probe()
-            for expression in (self._domain, *(wish.expression for wish in self._values)):
+            for expression in evaluated:
                 if expression is None:
                     continue
                 counting = _Counting(expression)
                 counting.value(expression.tree, probe)
                 cost += counting.cost
-        if not self._values:
+        if not self._values and self._steps is None:
             cost += _ALONE_COST if self._gatewise is None else self._gatewise.cost
         return max(min(most, _BUDGET // max(cost, 1)) & -64, 64)
 
@@ -143,11 +153,26 @@ class SampledSpec:
         free = np.zeros((self.size, words), dtype=np.uint64)
         if self._values:
             bits = self._words(sample, inside, inputs)
+        elif self._steps is not None:
+            bits = self._stepped(self._steps, sample, inside)
         elif self._gatewise is not None:
             bits, free = self._gatewise.columns(inputs)
         else:
             bits, free = self._alone(sample)
         return Wanted(domain, bits & domain, free | ~domain)
+
+    def _stepped(self, steps: SampledSteps, sample: _Sample, inside: Masks) -> Words:
+        """The columns after all steps; an error names the input from the start."""
+        try:
+            return steps.columns(sample.inputs, inside)
+        except ExpressionError as error:
+            if error.index is not None:
+                run_steps(self.spec, steps.steps, sample.index(error.index))
+            raise
+
+    def _in_state(self, expression: Expression, state: Words, inside: Masks) -> NDArray[Any]:
+        """The values of an expression between two steps."""
+        return _filled(self._evaluated(expression, _Sample(self.spec.inputs, state), inside), len(inside))
 
     def _words(self, sample: _Sample, inside: Masks, inputs: Words) -> Words:
         """The packed columns of all output words."""
@@ -186,7 +211,11 @@ class SampledSpec:
         value = Walk(expression).value(expression.tree, lanes)
         failure = lanes.shared.first_failure
         if failure is not None:
-            evaluate(expression, decode(self.spec.inputs, sample.index(failure)))
+            try:
+                evaluate(expression, decode(self.spec.inputs, sample.index(failure)))
+            except ExpressionError as error:
+                error.index = failure
+                raise
             raise AssertionError(f"row {failure} failed side by side, but not alone: {expression.text}")
         value = lanes.widened(value, outer)
         assert isinstance(value, int | Numbers)

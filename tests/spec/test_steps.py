@@ -12,7 +12,9 @@ from revsynth.logic.truth_table import unpack_values
 from revsynth.spec.expectation import Expectation
 from revsynth.spec.layout import decode, encode
 from revsynth.spec.model import Permutation, Spec, Word
+from revsynth.spec.sampled import SampledSpec
 from revsynth.spec.understand import understand
+from tests.spec.test_sampled import check as check_sampled
 from tests.step_programs import WORDS, step_specs
 
 INPUTS = {"x": 4, "y": 3, "s": {"bits": 4, "signed": True}, "cell": {"bits": 2, "count": 2}}
@@ -95,6 +97,52 @@ def test_all_inputs_at_once_agree_with_one_by_one_and_none_is_lost(spec: Spec) -
             assert not fixed[index]
         else:
             assert sum(bit << i for i, bit in enumerate(bits) if bit) == images[index]
+
+
+@given(step_specs(WORDS, 4))
+def test_many_chosen_inputs_at_once_agree_too(spec: Spec) -> None:
+    check_sampled(understand(spec))
+
+
+WIDE_STEPS = [
+    "x += y",
+    "x -= k * y",
+    "x ^= y >> 3",
+    "x ^= x << 13",
+    "x ^= x >> 7",
+    "x *= 6364136223846793005",
+    "x = -x",
+    "x = ~x",
+    "x = rotate(x, k)",
+    "x = rotate(x, 11)",
+    "x, y = y, x",
+    "if k < 0: x, y = y, x",
+    "if y > 2**63: x += y * y >> 64",
+    "x[3:70] -= y",
+    "k[0] ^= x[69] & y[1]",
+    "if x[0]: k = rotate(k, y)",
+    "y *= 3",
+    "z = rotate(z, y)",
+    "z ^= parity(x)",
+]
+
+
+@pytest.mark.parametrize("domain", [None, "y != 0 and k > -9"])
+def test_many_chosen_inputs_of_wide_words_at_once(domain: str | None) -> None:
+    wide = (Word("x", 70), Word("y", 70), Word("k", 5, signed=True), Word("z", 1))
+    for step in WIDE_STEPS:
+        check_sampled(understand(Spec(wide, Permutation(steps=(step,)), domain=domain)))
+    check_sampled(understand(Spec(wide, Permutation(steps=tuple(WIDE_STEPS)), domain=domain)))
+
+
+def test_an_undefined_operation_at_a_chosen_input_names_the_input_from_the_start() -> None:
+    wide = (Word("x", 30), Word("y", 1))
+    spec = Spec(wide, Permutation(steps=("y ^= 1", "x ^= 1 // y")))
+    inputs = np.zeros((31, 1), dtype=np.uint64)
+    inputs[30] = 4
+    wanted = r"steps 2: .*at x = 0, y = 0.*; the steps before make this of x = 0, y = 1"
+    with pytest.raises(SpecError, match=wanted):
+        SampledSpec(understand(spec)).wanted(inputs)
 
 
 REFUSED = [
