@@ -64,8 +64,8 @@ def test_what_a_method_gives_does_what_the_task_says(
         return
     try:
         blocks = method.synthesise(task)
-    except UndecidedError as error:
-        assert "needs at least 9 gates with positive controls (proved)" in str(error)
+    except UndecidedError:
+        assert method is optimal.OPTIMAL
         return
     assert blocks
     again = method.synthesise(task)
