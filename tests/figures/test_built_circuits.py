@@ -12,9 +12,11 @@ import pytest
 
 import revsynth
 from revsynth.api import Build
+from revsynth.spec.bristol import parse_bristol
 from revsynth.spec.dimacs import parse_dimacs
 from revsynth.spec.model import Spec
-from tests.naive_networks import aes_sbox
+from tests.bristol_text import bristol_text
+from tests.naive_networks import aes_sbox, sorting_network
 from tests.planted import dimacs, planted
 
 pytestmark = pytest.mark.quality
@@ -112,3 +114,37 @@ def test_the_aes_substitution_from_its_bare_table() -> None:
     assert found["ands"] <= 32
     assert found["t"] <= 128
     assert found["qubits"] <= 31
+
+
+def test_the_majority_of_63() -> None:
+    """57 ANDs (Boyar, Peralta, TCS 396, 2008), the last a CZ."""
+    found = counts(built(revsynth.predicate("popcount(x) >= 32", inputs={"x": 63})))
+    assert (found["ands"], found["t"]) == (57, 4 * 56)
+    assert found["qubits"] <= 119
+
+
+@pytest.mark.parametrize(
+    ("value", "bits", "inputs", "ands", "qubits"),
+    [
+        ("popcount(x)", 5, {"x": 31}, 26, 58),
+        ("a * b", 32, {"a": 16, "b": 16}, 496, 528),
+        ("((x << r) | (x >> (16 - r))) & 65535", 16, {"x": 16, "r": 4}, 49, 74),
+    ],
+    ids=["weight of 31", "16 x 16 product", "16-bit rotator"],
+)
+def test_words_onto_fresh_outputs(
+    value: str, bits: int, inputs: dict[str, int], ands: int, qubits: int
+) -> None:
+    spec = revsynth.outputs({"f": {"value": value, "bits": bits}}, inputs=inputs)
+    found = counts(built(spec, oracle="fresh"))
+    assert found["ands"] <= ands
+    assert found["t"] <= 4 * ands
+    assert found["qubits"] <= qubits
+
+
+def test_a_sorting_network_from_a_netlist() -> None:
+    """16 wires, odd-even (K. Batcher, 1968), every comparator written with two ANDs: 126, half of them go."""
+    spec = parse_bristol(bristol_text(sorting_network(16), [16]), "sorter.bristol")
+    found = counts(built(spec, oracle="bit"))
+    assert found["ands"] <= 63
+    assert found["t"] <= 4 * 63
