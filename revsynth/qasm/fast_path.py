@@ -11,7 +11,7 @@ from itertools import chain
 
 import numpy as np
 
-from revsynth.circuit.model import Condition, Kind
+from revsynth.circuit.model import Condition, Guard, Kind
 from revsynth.errors import CircuitFileError
 from revsynth.qasm.conditions import ConditionReader, as_condition
 from revsynth.qasm.interpreter import Interpreter
@@ -68,7 +68,7 @@ class FastPath:
             self._memory.clear()
         place = first
         while place < len(self._lines):
-            place += self._known(place)
+            place += self._block(place)
             if place == len(self._lines):
                 break
             numbers = self._memory.get(self._lines[place])
@@ -82,20 +82,21 @@ class FastPath:
             place += 1
         self._lexer.jump(min(int(self._starts[place]), len(self._lexer.text)))
 
-    def _known(self, place: int) -> int:
-        """Take the lines from a place on that were seen before and stand for one operation or none: how many.
+    def _block(self, place: int) -> int:
+        """Take the lines from a place on that stand for one operation or none each: how many.
 
-        They are looked up many at a time, twice as many each time that all of them are of this kind.
+        They are taken many at a time, twice as many each time that all of them are of this kind.
         """
-        size, first = 1, place
+        size, first, memory = 1, place, self._memory
         while place < len(self._lines):
-            found: list[tuple[OpNumber, ...]] = []
-            for numbers in map(self._memory.get, self._lines[place : place + size]):
-                if numbers is None:
+            some = self._lines[place : place + size]
+            for index, line in enumerate(some):
+                if line not in memory and self._operations(line) is None:
+                    del some[index:]
                     break
-                found.append(numbers)
+            found = [memory[line] for line in some]
             if max(map(len, found), default=0) > 1:
-                break
+                del found[next(index for index, numbers in enumerate(found) if len(numbers) > 1) :]
             self._recorder.sequence.extend(chain.from_iterable(found))
             place += len(found)
             if len(found) < size:
@@ -133,9 +134,8 @@ class FastPath:
         """What a line not seen before stands for; None where the parser has to look."""
         if len(line) > _LONGEST:
             return None
-        numbers = self._gate(line) or self._measurement(line) or self._conditional(line)
+        numbers = self._operations(line)
         if numbers is not None:
-            self._memory[line] = numbers
             return numbers
         stripped = line.strip(" \t")
         if stripped.startswith("//"):
@@ -143,7 +143,21 @@ class FastPath:
             return ()
         return None if stripped else ()
 
+    def _operations(self, line: str) -> tuple[OpNumber, ...] | None:
+        """The operations of a line not seen before, which is remembered; None where it is of another kind."""
+        if len(line) > _LONGEST:
+            return None
+        numbers = self._gate(line) or self._measurement(line) or self._conditional(line)
+        if numbers is not None:
+            self._memory[line] = numbers
+        return numbers
+
     def _gate(self, line: str) -> tuple[OpNumber, ...] | None:
+        head, _, operands = line.partition(" ")
+        if head in self._heads and operands.endswith(";"):
+            numbers = self._numbers(head, operands[:-1], ())
+            if numbers is not None:
+                return numbers
         found = _GATE.fullmatch(line)
         return None if found is None else self._numbers(found[1], found[2], ())
 
@@ -178,13 +192,13 @@ class FastPath:
         """The operations of `head operands` under a condition; None leaves any complaint to the parser."""
         qubits: list[int] = []
         for text in operands.split(","):
-            qubit = self._qubits.get(text)
-            if qubit is None:
+            qubit = self._qubits.get(text, -1)
+            if qubit < 0:
                 qubit = self._qubit(text)
-                if qubit is None:
+                if qubit < 0:
                     return None
             qubits.append(qubit)
-        if len(set(qubits)) != len(qubits):
+        if len(qubits) > 1 and len(set(qubits)) != len(qubits):
             return None
         known = self._heads.get(head)
         if known is None:
@@ -202,11 +216,12 @@ class FastPath:
             numbers.append(number(kind, tuple(where), angles, condition))
         return tuple(numbers)
 
-    def _qubit(self, text: str) -> int | None:
+    def _qubit(self, text: str) -> int:
+        """The number of the qubit that the text names; -1 where it names none by register and index."""
         found = _QUBIT.fullmatch(text.strip(" "))
         place = self._interpreter.scope.qubits.get(found[1]) if found else None
         if found is None or place is None or place.single or int(found[2]) >= len(place.members):
-            return None
+            return -1
         qubit = place.members[int(found[2])]
         self._qubits[text] = qubit
         return qubit
@@ -237,6 +252,8 @@ class FastPath:
         """The condition in the brackets of an `if`; None where it is constant, or refused by the parser."""
         known = self._conditions.get(text)
         if known is None:
+            known = self._one_bit(text)
+        if known is None:
             parser = self._snippet(text)
             scope = self._interpreter.scope
             try:
@@ -249,6 +266,15 @@ class FastPath:
                 return None
             self._conditions[text] = known
         return known or None
+
+    def _one_bit(self, text: str) -> Condition | None:
+        """The condition that one bit, named by register and index, is 1, the most common one."""
+        found = _QUBIT.fullmatch(text)
+        register = self._interpreter.scope.bits.get(found[1]) if found else None
+        if found is None or register is None or register.single or int(found[2]) >= len(register.members):
+            return None
+        known = self._conditions[text] = (Guard((2 * register.members[int(found[2])],)),)
+        return known
 
 
 def _blank_until(line: str, column: int) -> int:
