@@ -23,18 +23,38 @@ def multiply_modulo(sheet: Sheet, target: Sequence[Line], factor: int, modulus: 
     """x becomes x * factor % modulus for x < modulus; the factor is coprime to the modulus."""
     size = len(target)
     scratch = sheet.take(size)
-    weights = [(factor << place) % modulus for place in range(size)]
-    for place, weight in enumerate(weights):
-        if weight:
-            _add_chosen(sheet, scratch, value_of(target[place]), weight, modulus)
+    for place, weight, wraps in _weights(factor, size, modulus):
+        chosen = value_of(target[place])
+        if wraps:
+            _add_chosen(sheet, scratch, chosen, weight, modulus)
+        elif place == 0:
+            for line, value in zip(scratch, _either(0, weight, chosen, size), strict=True):
+                sheet.xor(line, value)
+        else:
+            add_held(sheet, scratch, _either(0, weight, chosen, size))
     for one, other in zip(target, scratch, strict=True):
         sheet.swap(one, other)
-    inverse = pow(factor, -1, modulus)
-    for place in range(size - 1, -1, -1):
-        weight = (inverse << place) % modulus
-        if weight:
-            _add_chosen(sheet, scratch, value_of(target[place]), modulus - weight, modulus)
+    for place, weight, wraps in reversed(_weights(pow(factor, -1, modulus), size, modulus)):
+        chosen = value_of(target[place])
+        if wraps:
+            _add_chosen(sheet, scratch, chosen, modulus - weight, modulus)
+        elif place == 0:
+            for line, value in zip(scratch, _either(0, weight, chosen, size), strict=True):
+                sheet.xor(line, value)
+        else:
+            add_held(sheet, scratch, _either(0, weight, chosen, size), subtract=True)
     sheet.give(scratch)
+
+
+def _weights(factor: int, size: int, modulus: int) -> list[tuple[int, int, bool]]:
+    """(place, factor * 2**place % modulus, whether the sum up to there may reach the modulus)."""
+    found: list[tuple[int, int, bool]] = []
+    most = 0
+    for place in range(size):
+        weight = (factor << place) % modulus
+        most += weight
+        found.append((place, weight, most >= modulus))
+    return found
 
 
 def _add_chosen(sheet: Sheet, target: Sequence[Line], chosen: Value, constant: int, modulus: int) -> None:
