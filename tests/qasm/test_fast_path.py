@@ -145,3 +145,16 @@ def test_reading_without_the_fast_path_gives_the_same(lines: list[str], version_
     with pytest.MonkeyPatch.context() as patch:
         patch.setattr(FastPath, "run", lambda _: None)
         assert outcome(text) == fast
+
+
+@pytest.mark.parametrize("text", ["m[0]", "m[2]", "k[0]", "m[3]", "a[0]", "m", "m[ 1 ]", "(m[1])", "!m[1]"])
+def test_a_condition_on_one_bit_is_what_the_parser_makes_of_it(text: str) -> None:
+    """Or refused by both."""
+    head = f"{H3}qubit[3] a;\nbit k;\nbit[3] m;\n"
+    told = []
+    for line in (f"if ({text}) {{ x a[1]; }}", f"if ({text})\n{{ x a[1]; }}"):
+        try:
+            told.append(read(head + line + "\n").circuit)
+        except CircuitFileError:
+            told.append(None)
+    assert told[0] == told[1]
