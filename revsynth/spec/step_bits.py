@@ -67,10 +67,24 @@ class Places:
         node = expression.tree
         while isinstance(node, ast.Subscript):
             node = node.value
-        if isinstance(node, ast.Name) and node.id in self._words:
-            return "an index on the left is a constant: which bits a step changes may not depend on the input"
         shown = " ".join(expression.text.split())
+        if isinstance(node, ast.Name) and node.id in self._words:
+            if self._constant_indexes(expression):
+                return f"{shown} holds no bits"
+            return "an index on the left is a constant: which bits a step changes may not depend on the input"
         return f"{shown} is not a word, nor bits of one: a step changes words, such as {self._some()}"
+
+    def _constant_indexes(self, expression: Expression) -> bool:
+        """Whether all indexes behind a name are constants."""
+        node = expression.tree
+        while isinstance(node, ast.Subscript):
+            index = node.slice
+            parts = [index.lower, index.upper] if isinstance(index, ast.Slice) else [index]
+            for part in parts:
+                if part is not None and self._constant(part, expression, self.constants) is None:
+                    return False
+            node = node.value
+        return True
 
     def array(self, node: ast.expr) -> str | None:
         """Why a bare name cannot be a target, where it is that of an array; None for all else."""

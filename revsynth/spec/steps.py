@@ -134,7 +134,8 @@ class _Reader:
         """The shift of x ^= x << k (positive) or x ^= x >> k (negative); None for anything else."""
         if not isinstance(value, ast.BinOp) or not isinstance(value.op, ast.LShift | ast.RShift):
             return None
-        if not self._is_target(value.left, target):
+        shifted = self._same_bits(value.left, target)
+        if shifted is None:
             return None
         amount = self._constant(value.right)
         if amount is None:
@@ -142,11 +143,12 @@ class _Reader:
         if amount < 1:
             raise self._error(f"a shift by {amount} is not one-to-one here: 1 or more is wanted")
         left = isinstance(value.op, ast.LShift)
-        if target.signed and not left:
-            bare = f"{target.text}[0:{target.bits}]"
+        if shifted.signed and not left:
+            name = shifted.text
+            bare = f"{name}[0:{target.bits}]"
             raise self._error(
-                f"{target.text} is signed, so {target.text} >> {amount} repeats its sign and the step is not "
-                f"one-to-one: write {bare} ^= {bare} >> {amount}"
+                f"{name} is signed, so {name} >> {amount} repeats its sign and the step is not one-to-one: "
+                f"write {bare} ^= {bare} >> {amount}"
             )
         return amount if left else -amount
 
@@ -216,10 +218,16 @@ class _Reader:
 
     def _is_target(self, node: ast.expr, place: Place) -> bool:
         """Whether a part stands for exactly these bits."""
-        if not isinstance(node, ast.Name | ast.Subscript):
-            return False
+        return self._same_bits(node, place) is not None
+
+    def _same_bits(self, node: ast.expr, place: Place) -> Place | None:
+        """A part that stands for exactly these bits; None for others."""
+        if not isinstance(node, ast.Name | ast.Subscript) or self.places.array(node):
+            return None
         found = self.places.target(self._expression(node))
-        return isinstance(found, Place) and (found.first, found.bits) == (place.first, place.bits)
+        if isinstance(found, str) or (found.first, found.bits) != (place.first, place.bits):
+            return None
+        return found
 
     def _constant(self, node: ast.expr) -> int | None:
         return self.places.constant(self._expression(node))

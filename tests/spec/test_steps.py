@@ -67,6 +67,11 @@ def test_signed_words_go_by_their_pattern_and_wrap_around() -> None:
     assert image(["x += s >> 1"], INPUTS, x=9, y=0, s=-3, cell=[0, 0])["x"] == 7
 
 
+def test_a_slice_of_a_signed_word_is_shifted_without_its_sign() -> None:
+    for step in ("s[0:4] ^= s[0:4] >> 1", "s ^= s[0:4] >> 1"):
+        assert image([step], INPUTS, x=0, y=0, s=-8, cell=[0, 0])["s"] == -4
+
+
 def test_steps_follow_one_another_as_in_python() -> None:
     """The example of a spec file: the same lines run as Python, for all inputs."""
     spec = revsynth.permutation(
@@ -163,6 +168,8 @@ REFUSED = [
     ("a shift by -1 is not one-to-one here: 1 or more is wanted", "x ^= x << -1"),
     ("s is signed, so s >> 1 repeats its sign and the step is not one-to-one: write s[0:4] ^= s[0:4] >> 1",
      "s ^= s >> 1"),
+    ("s is signed, so s >> 1 repeats its sign and the step is not one-to-one", "s[0:4] ^= s >> 1"),
+    ("x[2:2] holds no bits", "x[2:2] += 1"),
     ("an even factor is not one-to-one modulo 2**bits: an odd one is wanted", "x *= 6"),
     ("the factor of *= is an odd constant, not something that depends on the input", "x *= y"),
     ("it cannot be undone: +=, -=, ^= and *= by an odd constant are steps, and x = rotate(x, k)", "x |= y"),
