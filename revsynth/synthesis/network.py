@@ -69,7 +69,9 @@ class FromNetwork:
             # What is held at once are all ANDs but those that act straight on the outputs.
             if task.lines is None or task.inputs + network.ands - task.outputs <= task.lines:
                 progress(f"network: placing {network.ands} ANDs and {network.xors} XORs on lines")
-                found.extend(one.block for one in held(network, task.oracle, positive))
+                found.extend(
+                    one.block for one in held(network, task.oracle, positive, _thresholds(network, task))
+                )
         if task.lines is not None:
             found = [block for block in found if block.cascade.lines <= task.lines]
         misses: list[int] = []
@@ -163,6 +165,12 @@ def _reduced(network: Network, care: Network | None, task: Task, progress: Progr
     from revsynth.logic.and_reduction.cut_mapping import map_cuts
 
     return map_cuts(network).reachable()
+
+
+def _thresholds(network: Network, task: Task) -> tuple[int, ...]:
+    """Ways to place sums: of large networks one, where lines do not matter and CNOTs make the difference."""
+    few_cnots = network.gates > SEARCHED_GATES and task.lines is None and task.aim != "qubits"
+    return (2,) if few_cnots else (2, 3)
 
 
 def _bare_lines(task: Task) -> int:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import product
 
@@ -65,8 +66,13 @@ class Realised:
         )
 
 
-def held(network: Network, oracle: Oracle, positive: bool = False) -> list[Realised]:
-    """Every AND held until the mirror, sums placed in different ways; fewest CNOTs first."""
+def held(
+    network: Network, oracle: Oracle, positive: bool = False, thresholds: Sequence[int] = (2, 3)
+) -> list[Realised]:
+    """Every AND held until the mirror, sums placed in different ways; fewest CNOTs first.
+
+    thresholds: sums that so many others use get lines of their own; more of them take fewer CNOTs.
+    """
     phase = oracle == "phase"
 
     def prepared(units: Units) -> tuple[Units, Landing]:
@@ -79,7 +85,7 @@ def held(network: Network, oracle: Oracle, positive: bool = False) -> list[Reali
         return Realised(block, units.ands, act_ands(units, phase))
 
     found: list[Realised] = []
-    for threshold in (2, 3):
+    for threshold in thresholds:
         units, landing = prepared(units_of(network, threshold))
         sheet = homes.carry_out(units, hold_everything(units).operations, landing, phase)
         found.append(realised(units, sheet, "hold"))
