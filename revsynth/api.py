@@ -17,6 +17,7 @@ from revsynth.elaborate.overview import Overview, overview
 from revsynth.errors import BudgetError, RevsynthError, UndecidedError, UsageError
 from revsynth.files import is_regular, write_whole
 from revsynth.logic.analysis import Analysis, analyse
+from revsynth.logic.lower_bounds import lower_bound
 from revsynth.logic.truth_table import count_ones
 from revsynth.options import BuildOptions, Format, Oracle
 from revsynth.pipeline import Built, Progress
@@ -239,6 +240,18 @@ class Build:
         return None if self.spec.domain is not None else 1 << self.spec.input_bits
 
     @property
+    def lower_bound(self) -> dict[str, Any] | None:
+        """T gates that any circuit of this form takes, `t` with the reason `why`, and the ANDs where known.
+
+        None for gate sets without T gates, for free values and above 16 inputs.
+        """
+        function = self._built.understanding.tabulated
+        if function is None or self._built.options.gates != "clifford+t":
+            return None
+        bound = lower_bound(function, self._built.oracle, self._built.options.uncompute)
+        return None if bound is None else bound.to_json()
+
+    @property
     def options(self) -> BuildOptions:
         """The options it was built with."""
         return self._built.options
@@ -289,7 +302,7 @@ class Build:
             **self.counts,
             "cost": self.cost,
             "evidence": self.evidence.to_json(),
-            "lower_bound": None,
+            "lower_bound": self.lower_bound,
             "tried": [trial.to_json() for trial in built.tried],
             "seconds": built.seconds,
         }

@@ -17,7 +17,8 @@ from numpy.typing import NDArray
 from revsynth.cascade.model import Line
 from revsynth.embed.in_place import fewest_lines, tables
 from revsynth.errors import BudgetError, UndecidedError
-from revsynth.logic.affine_classes import MOST_INPUTS, and_counts, circuit
+from revsynth.logic.affine_classes import circuit
+from revsynth.logic.fillings import fewest_ands, unfillable
 from revsynth.logic.function import Function
 from revsynth.optimal.answers import shortest_with
 from revsynth.optimal.packed import pack
@@ -31,8 +32,6 @@ LARGE_SIZE = 7
 """With high effort, where that is not enough: 21 million classes, in a minute, 70 MB on disk."""
 FILLINGS = 24
 """Permutations of four lines may be completed in at most so many ways."""
-FREE_INPUTS = 16
-"""Predicates may be free at so many inputs."""
 
 
 class Optimal:
@@ -57,14 +56,7 @@ class Optimal:
             if lines > MOST_LINES and len(_additions(function)) > FILLINGS:
                 return f"its free output bits can be filled in in more than {FILLINGS} ways"
             return _over_budget(task, lines)
-        if function.outputs != 1:
-            return f"the fewest ANDs are known for one output bit, not {function.outputs}"
-        if function.inputs > MOST_INPUTS:
-            return f"the fewest ANDs are known up to {MOST_INPUTS} inputs, not {function.inputs}"
-        free = len(_free_inputs(function))
-        if free > FREE_INPUTS:
-            return f"{free} free inputs are too many to fill in in every way: at most {FREE_INPUTS}"
-        return None
+        return unfillable(function)
 
     def on_request(self, task: Task) -> str | None:
         """Why a task that the method serves is left to others where the user names none."""
@@ -279,25 +271,16 @@ def _spread(words: NDArray[np.int64], places: tuple[Line, ...]) -> NDArray[np.in
     return total
 
 
-def _free_inputs(function: Function) -> list[int]:
-    care = int(function.care[0][0])
-    return [x for x in range(1 << function.inputs) if not care >> x & 1]
-
-
 def _fewest_ands(task: Task) -> list[Block]:
     """Every AND once, on lines of their own; raises BudgetError where that takes more than `task.lines`."""
     from revsynth.synthesis.scratch.realise import held
 
-    function = task.function
-    fillings = np.array([int(function.values[0][0])], dtype=np.uint32)
-    for x in _free_inputs(function):
-        fillings = np.concatenate([fillings, fillings | np.uint32(1 << x)])
-    counts = and_counts(function.inputs, fillings)
-    network = circuit(function.inputs, int(fillings[np.argmin(counts)]))
-    said = f"{NAME}, proved fewest ANDs ({int(counts.min())})"
+    filling = fewest_ands(task.function)
+    network = circuit(task.function.inputs, filling.table)
+    said = f"{NAME}, proved fewest ANDs ({filling.ands})"
     found = [one.block for one in held(network, task.oracle, task.controls == "positive")]
     fitting = [one for one in found if task.lines is None or one.cascade.lines <= task.lines]
     if not fitting:
         least = min(one.cascade.lines for one in found)
-        raise BudgetError(f"{int(counts.min())} ANDs held at once need {least} lines, {task.lines} allowed")
+        raise BudgetError(f"{filling.ands} ANDs held at once need {least} lines, {task.lines} allowed")
     return [replace(one, method=said) for one in fitting]
