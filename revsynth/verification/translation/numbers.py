@@ -177,9 +177,11 @@ class Arithmetic:
                     columns[place].append(bit ^ (weight < 0))
                     fixed -= (1 << place) * (weight < 0)
         found: list[Bit] = []
-        for place in range(size):
+        for place in range(size if low < 0 <= high else size - 1):
             total, fixed = self._column(columns, place, fixed)
             found.append(total)
+        if len(found) < size:
+            found.append(TRUE if high < 0 else FALSE)
         return trimmed(found)
 
     def _column(self, columns: list[list[Bit]], place: int, fixed: int) -> tuple[Bit, int]:

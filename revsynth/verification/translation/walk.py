@@ -90,27 +90,21 @@ class Walk:
 
     def _terms(self, node: ast.expr, names: Names, factor: int) -> list[tuple[Bit, int]]:
         """A part as bits with what they count, times a factor: sums and products are taken apart."""
-        if isinstance(node, ast.BinOp) and isinstance(node.op, ast.Add | ast.Sub):
-            first, operations = chain(node)
-            if all(isinstance(operation.op, ast.Add | ast.Sub) for operation in operations):
-                found = self._terms(first, names, factor)
-                for operation in operations:
-                    sign = -1 if isinstance(operation.op, ast.Sub) else 1
-                    found += self._terms(operation.right, names, sign * factor)
-                return found
+        parts: list[tuple[ast.expr, int]] = []
+        while isinstance(node, ast.BinOp) and isinstance(node.op, ast.Add | ast.Sub):
+            parts.append((node.right, -factor if isinstance(node.op, ast.Sub) else factor))
+            node = node.left
+        if parts:
+            parts.append((node, factor))
+            return [term for part, by in reversed(parts) for term in self._terms(part, names, by)]
         if isinstance(node, ast.BinOp) and isinstance(node.op, ast.Mult):
-            first, operations = chain(node)
-            if len(operations) == 1:
-                right = operations[0].right
-                a, b = self._number(first, names), self._number(right, names)
-                return self.numbers.partial_products(a, b, factor)
+            a, b = self._number(node.left, names), self._number(node.right, names)
+            return self.numbers.partial_products(a, b, factor)
         return self.numbers.weighted(self._number(node, names), factor)
 
     def _binary(self, node: ast.BinOp, names: Names) -> Value:
         if self.numbers.by_columns and isinstance(node.op, ast.Add | ast.Sub):
-            first, operations = chain(node)
-            if all(isinstance(operation.op, ast.Add | ast.Sub) for operation in operations):
-                return self.numbers.total(self._terms(node, names, 1))
+            return self.numbers.total(self._terms(node, names, 1))
         first, operations = chain(node)
         result = self._number(first, names)
         for operation in operations:
