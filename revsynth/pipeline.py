@@ -197,7 +197,12 @@ def _verify_text(
         raise AssertionError("the text written does not read back as the circuit")
     named = Program(circuit=circuit, version=program.version, comments=program.comments)
     return verify_program(
-        spec, named, oracle=oracle, exact_phase=True, placement=describe_placement(block, understanding)
+        spec,
+        named,
+        oracle=oracle,
+        exact_phase=True,
+        placement=describe_placement(block, understanding),
+        progress=progress,
     )
 
 

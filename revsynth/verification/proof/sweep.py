@@ -151,7 +151,6 @@ class Sweep:
 
     def _merged(self, node: int, made: Literal, keys: _Keys, encoding: Encoding) -> Literal:
         """An earlier literal that is proved equal to the new one, else the new one."""
-        free = [self._image[variable >> 1] for variable in self._variables]
         tried: set[Literal] = set()
         while len(tried) < TRIES:
             candidate = next((one for one in keys.candidates(node) if one not in tried), None)
@@ -165,7 +164,7 @@ class Sweep:
             if answer is None:
                 self.undecided += 1
             else:
-                keys.learn(encoding.model(free))
+                keys.learn(encoding.model([self._image[variable >> 1] for variable in self._variables]))
         keys.enter(node, made)
         return made
 
