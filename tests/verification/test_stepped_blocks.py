@@ -140,3 +140,17 @@ def test_a_wide_step_that_is_undefined_somewhere_is_refused_with_such_an_input()
         r"the steps before make this of x = \d+, y = 72$",
     ):
         revsynth.build(spec)
+
+
+@pytest.mark.slow
+def test_a_wide_product_modulo_a_number_is_sampled_and_said_not_to_be_proved() -> None:
+    """Every one of a million inputs must be right; a wrong factor is found at once."""
+    domain = "a < 1073741789"
+    spec = Spec(words(a=30), Permutation(map={"a": "(a * 7 + 1) % 1073741789"}), domain=domain)
+    with pytest.raises(revsynth.UndecidedError, match="the new value of a is a product modulo 1073741789"):
+        revsynth.build(spec, uncompute="measured")
+    build = revsynth.build(spec, uncompute="measured", unverified=True)
+    assert build.evidence.level == "sampled"
+    assert build.evidence.inputs_checked > 1_000_000
+    other = Spec(words(a=30), Permutation(map={"a": "(a * 7 + 2) % 1073741789"}), domain=domain)
+    assert revsynth.verify(other, text=build.text()).holds is False

@@ -2,13 +2,16 @@
 
 from __future__ import annotations
 
+import ast
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 from revsynth.spec.expression import Scope, parse
 from revsynth.spec.formula_reference import Node, read_again
+from revsynth.spec.limits import MAX_INPUT_BITS
 from revsynth.spec.model import Clauses, Cover, Outputs, Permutation, Predicate, Spec, Word
 from revsynth.spec.netlist import Netlist
+from revsynth.spec.reference import constant_part
 from revsynth.verification.translation.gates import (
     FALSE,
     TRUE,
@@ -115,12 +118,29 @@ class _Translator:
             bits += numbers.extended(self._expression(output.value), word.bits)[: word.bits]
         return bits, []
 
+    def _check_provable(self, name: str, text: str) -> None:
+        """Raise where a proof would have to undo a product modulo a number in gates, which no solver does.
+
+        That scratch is clean then rests on c * c**-1 being 1 modulo N, which no step of a circuit shows.
+        """
+        expression = parse(text, self.scope, source=self.spec.source)
+        tree = expression.tree
+        if not isinstance(tree, ast.BinOp) or not isinstance(tree.op, ast.Mod):
+            return
+        modulus = constant_part(expression, tree.right, self.spec.constants)
+        if self.spec.input_bits <= MAX_INPUT_BITS or not isinstance(modulus, int):
+            return
+        if modulus & (modulus - 1) and _multiplies(tree.left, set(self.words)):
+            raise TooLargeToTranslateError(f"the new value of {name} is a product modulo {modulus}")
+
     def _permutation(self, body: Permutation) -> list[Bit]:
         if body.steps is not None:
             return stepped_bits(self.spec, body.steps, self.gates, self.inputs)
         if body.map is None:
             raise TooLargeToTranslateError("images one by one")
         numbers = Arithmetic(self.gates)
+        for name, text in body.map.items():
+            self._check_provable(name, text)
         images = {name: self._expression(text) for name, text in body.map.items()}
         bits: list[Bit] = []
         place = 0
@@ -131,6 +151,16 @@ class _Translator:
                 bits += kept if image is None else numbers.extended(image, width)[:width]
                 place += width
         return bits
+
+
+def _multiplies(tree: ast.expr, words: set[str]) -> bool:
+    """Whether a word is multiplied anywhere in a tree."""
+    return any(
+        isinstance(node, ast.BinOp)
+        and isinstance(node.op, ast.Mult)
+        and any(isinstance(part, ast.Name) and part.id in words for part in ast.walk(node))
+        for node in ast.walk(tree)
+    )
 
 
 def _formula(nodes: Sequence[Node], words: Mapping[str, Value], gates: Gates, by_columns: bool) -> Bit:
