@@ -7,6 +7,7 @@ common practice. Free images stay free to the end: where no state matters, a sum
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,6 +24,7 @@ from revsynth.logic.function import Function
 from revsynth.logic.sum_costs import SumCosts
 from revsynth.logic.truth_table import pack
 from revsynth.options import Effort
+from revsynth.synthesis.exchanges import exchanged
 from revsynth.synthesis.interface import Block, Placement, Progress, Task, silent
 from revsynth.synthesis.product_gates import conjugated, prices_for
 from revsynth.synthesis.young.search import Partial, Turn, Width, decompositions
@@ -103,10 +105,12 @@ def _embedded(task: Task, before: Lines, after: Lines, progress: Progress) -> li
     target = embed(task.function, fewest_lines(task.function), before, after)
     preset = tuple((line, 0) for line in range(target.lines) if line not in before)
     placement = Placement(before, preset, after)
-    return [
+    quick = task if task.effort == "high" else replace(task, effort="low")
+    blocks = [
         Block(cascade, said, target.lines, placement=placement)
-        for cascade, said in _cascades(task, target, progress)
+        for cascade, said in _cascades(quick, target, progress)
     ]
+    return exchanged(task, blocks, progress)
 
 
 def _cascades(task: Task, target: ReversibleTarget, progress: Progress) -> list[tuple[Cascade, str]]:

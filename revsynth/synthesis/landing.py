@@ -15,7 +15,6 @@ from dataclasses import dataclass
 import numpy as np
 
 from revsynth.cascade.model import Cascade, Gate, Line
-from revsynth.cascade.price import cascade_t
 from revsynth.embed.balancing import signed, splitting_order, swapping
 from revsynth.embed.directions import MAX_LINES as DIRECTION_LINES
 from revsynth.embed.directions import fewest_clashes
@@ -32,6 +31,7 @@ from revsynth.logic.exclusive_sum import minimise
 from revsynth.logic.function import Function
 from revsynth.logic.truth_table import Column, last_word_mask, ones, pack
 from revsynth.options import Effort
+from revsynth.synthesis.exchanges import exchanged
 from revsynth.synthesis.interface import Block, Placement, Progress, Task
 from revsynth.synthesis.product_gates import conjugated, onto_outputs, output_groups, prices_for
 
@@ -69,8 +69,7 @@ def in_place_blocks(task: Task, lines: int, progress: Progress) -> list[Block]:
         block = _Landing(task, function, lines, way, progress).run()
         if all(block.cascade != other.cascade for other in blocks):
             blocks.append(block)
-    blocks.sort(key=lambda block: _rank(block.cascade, task))
-    return blocks[:2]
+    return exchanged(task, blocks, progress)
 
 
 def why_not_in_place(function: Function) -> str | None:
@@ -78,11 +77,6 @@ def why_not_in_place(function: Function) -> str | None:
     if function.outputs > MAX_NUMBERED:
         return f"{function.outputs} output bits are too many in place: at most {MAX_NUMBERED}"
     return None
-
-
-def _rank(cascade: Cascade, task: Task) -> tuple[int, int]:
-    t = cascade_t(cascade, task.uncompute)
-    return (len(cascade), t) if task.aim == "gates" else (t, len(cascade))
 
 
 class _Landing:

@@ -18,6 +18,7 @@ from revsynth.embed.out_of_place import embed_fresh, embed_xor
 from revsynth.embed.target import ReversibleTarget, complete
 from revsynth.options import Effort
 from revsynth.synthesis import lazy
+from revsynth.synthesis.exchanges import exchanged
 from revsynth.synthesis.interface import Block, Placement, Progress, Task, silent
 from revsynth.synthesis.lazy import Variant, transform_lazily
 from revsynth.synthesis.relabelled import MAX_LINES, best_cascades, rank_for
@@ -91,7 +92,8 @@ class Transform:
         if task.oracle == "inplace":
             return _in_place(task, progress)
         if task.oracle == "embedded":
-            return [_embedded_block(task, one) for one in _embeddings(task, progress)]
+            blocks = [_embedded_block(task, one) for one in _embeddings(task, progress)]
+            return exchanged(task, blocks, progress)
         blocks = [*_undone(task, progress), *_direct(task, progress)]
         rank = rank_for(task.aim, task.uncompute)
         if task.aim == "qubits":
@@ -199,7 +201,7 @@ def _ways(task: Task, target: ReversibleTarget) -> tuple[bool, ...]:
 
 
 def _embeddings(task: Task, progress: Progress) -> list[_Candidate]:
-    """Embeddings with the fewest lines, best for the aim first: several line placements, lazily.
+    """All embeddings met with the fewest lines, best for the aim first: several line placements, lazily.
 
     Where lazy synthesis does not fit or meets only dead ends, a completion is synthesised instead.
     """
@@ -228,9 +230,7 @@ def _embeddings(task: Task, progress: Progress) -> list[_Candidate]:
         target = embed(function, lines, *places)
         for cascade, said in _completed(task, target, "low", progress):
             found.append(_Candidate(cascade, said, *places))
-    best = min(found, key=lambda one: rank(one.cascade))
-    shortest = min(found, key=lambda one: (len(one.cascade), *rank(one.cascade)))
-    return [best] if shortest is best else [best, shortest]
+    return sorted(found, key=lambda one: rank(one.cascade))
 
 
 def _embedded_block(task: Task, found: _Candidate) -> Block:
@@ -248,7 +248,7 @@ def _undone(task: Task, progress: Progress) -> list[Block]:
     if task.lines is not None and inputs + added + extra > task.lines:
         return []
     blocks = []
-    several = None if task.effort == "high" else 1
+    several = 2 if task.effort == "high" else 1
     for found in _embeddings(task, progress)[:several]:
         width = inputs + added + extra
         place = [0] * found.cascade.lines
