@@ -61,6 +61,9 @@ class BuildOptions:
                 raise UsageError(f"{name} {value!r}: a budget is a whole number from 0 on")
         if not _is_count(self.seed):
             raise UsageError(f"seed {self.seed!r}: a seed is a whole number from 0 on")
+        for name in ("qubits", "t", "depth", "seed"):
+            value = getattr(self, name)
+            object.__setattr__(self, name, None if value is None else int(value))
         if self.time_limit is not None and not _is_duration(self.time_limit):
             raise UsageError(f"time limit {self.time_limit!r}: a number of seconds above 0 is wanted")
         if self.format != "openqasm3":

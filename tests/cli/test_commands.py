@@ -162,7 +162,7 @@ def test_an_interrupt_leaves_nothing_behind(tmp_path: Path) -> None:
         stderr=subprocess.PIPE,
         env={**os.environ, "PYTHONPATH": str(ROOT)},
     )
-    time.sleep(0.6)
+    time.sleep(1.5)
     process.send_signal(signal.SIGINT)
     _, errors = process.communicate(timeout=60)
     assert process.returncode == 130

@@ -235,7 +235,7 @@ def test_standard_input_is_called_so(
 
 
 def test_draw_has_json_and_refuses_what_only_the_terminal_has(capsys: Capture, tmp_path: Path) -> None:
-    circuit = build(capsys, tmp_path, *SMALL, "--gates", "cascade")
+    circuit = build(capsys, tmp_path, *SMALL, "--gates", "cascade", "--method", "products")
     found = json.loads(run(capsys, "draw", circuit, "--json", "--title", "Pairs")[1])
     assert (found["circuit"], found["drawing"], found["qubits"]) == (str(circuit), None, 5)
     assert found["text"][0] == "Pairs"
