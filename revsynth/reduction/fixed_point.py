@@ -9,6 +9,7 @@ from revsynth.errors import UsageError
 from revsynth.options import CHOICES, Controls, Uncompute
 from revsynth.reduction.lookback import Look, look_back
 from revsynth.reduction.masks import Masks, masked, unmasked
+from revsynth.reduction.optimal_runs import Runs, replace_runs, whole_optimum
 from revsynth.reduction.rewriting import Rewriter, rewriter
 from revsynth.reduction.stretches import WIDE, in_stretches
 from revsynth.reduction.windows import Search, search_windows
@@ -26,6 +27,11 @@ SEARCHES: tuple[tuple[int, Search], ...] = (
 """How far cascades of up to so many gates are searched: about a second of work, then less a gate."""
 FAST = Search(width=3, reach=8, forms=1, step=1)
 """How far longer ones are."""
+RUNS: tuple[tuple[int, Runs], ...] = (
+    (1_000, Runs(reach=24, longest=16, choices=4)),
+    (6_000, Runs(reach=12, longest=12, choices=2)),
+)
+"""How far runs on three lines go in cascades of up to so many gates; longer ones are spared them."""
 NOTABLE = 1_000
 """Gates from which on a search says that it is at work."""
 
@@ -56,16 +62,22 @@ def reduce(
     rules = rewriter(controls, uncompute)
 
     def work(gates: list[Masks], total: int) -> tuple[list[Masks], bool]:
-        return _settle(gates, total, rules, progress)
+        return _settle(gates, total, rules, controls, progress)
 
     if cascade.lines >= WIDE:
         return in_stretches(cascade, work)
-    gates, changed = work(masked(cascade), len(cascade))
+    original = masked(cascade)
+    optimum = whole_optimum(original, cascade.lines, controls, uncompute)
+    if optimum is not None:
+        return cascade if optimum is original else unmasked(cascade.lines, optimum)
+    gates, changed = work(original, len(cascade))
     return unmasked(cascade.lines, gates) if changed else cascade
 
 
-def _settle(gates: list[Masks], total: int, rules: Rewriter, progress: Progress) -> tuple[list[Masks], bool]:
-    """Both passes in turn until the search gains nothing on what look-back left; and whether any did.
+def _settle(
+    gates: list[Masks], total: int, rules: Rewriter, controls: Controls, progress: Progress
+) -> tuple[list[Masks], bool]:
+    """The passes in turn until none gains on what the others left; and whether any did.
 
     `total` is the length of the whole cascade, which decides how far to search.
     """
@@ -84,5 +96,11 @@ def _settle(gates: list[Masks], total: int, rules: Rewriter, progress: Progress)
             progress(f"searching {len(gates)} gates for exchanges")
         before = len(gates)
         gates, new = search_windows(gates, new, search, rules)
+        if len(gates) < before or any(new):
+            continue
+        runs = next((found for most, found in RUNS if total + len(gates) - len(original) <= most), None)
+        if runs is None:
+            return gates, gates != original
+        gates, new = replace_runs(gates, [True] * len(gates), runs, controls, rules.uncompute)
         if len(gates) == before and not any(new):
             return gates, gates != original

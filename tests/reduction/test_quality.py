@@ -51,8 +51,8 @@ def test_all_functions_of_three_lines() -> None:
     t = float(np.mean([cascade_t(cascade, "unitary") for cascade in reduced]))
     assert 4.5755 <= gates <= 6.5
     assert t >= 13.76
-    assert round(gates, 4) <= 4.9072, f"recorded 4.9072 gates, now {gates:.4f}"
-    assert round(t, 4) <= 14.7358, f"recorded 14.7358 T, now {t:.4f}"
+    assert round(gates, 4) <= 4.5765, f"recorded 4.5765 gates, now {gates:.4f}"
+    assert round(t, 4) <= 13.9333, f"recorded 13.9333 T, now {t:.4f}"
 
 
 def test_positive_controls_on_every_35th_function_of_three_lines() -> None:
@@ -64,11 +64,11 @@ def test_positive_controls_on_every_35th_function_of_three_lines() -> None:
     assert not any(np.any(cascade.control & 1) for cascade in reduced)
     gates = float(np.mean([len(cascade) for cascade in reduced]))
     assert gates >= 5.8
-    assert round(gates, 4) <= 6.1780, f"recorded 6.1780 gates, now {gates:.4f}"
+    assert round(gates, 4) <= 5.8707, f"recorded 5.8707 gates, now {gates:.4f}"
 
 
 @pytest.mark.parametrize(
-    ("lines", "count", "recorded"), [(4, 50, (14.86, 39.68)), (5, 20, (43.2, 160.6)), (6, 8, (120.25, 556.0))]
+    ("lines", "count", "recorded"), [(4, 50, (14.66, 39.68)), (5, 20, (43.15, 160.6)), (6, 8, (120.0, 556.0))]
 )
 def test_random_permutations(lines: int, count: int, recorded: tuple[float, float]) -> None:
     """Seeds 0, 1, ... of numpy's default generator; both directions, minimal controls; T measured."""
