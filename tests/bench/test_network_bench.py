@@ -1,4 +1,4 @@
-"""How long large networks take: a table of 2**24 inputs, SHA-256 mapped, a hash predicate from file to proof."""
+"""How long large networks take: a table of 2**24 inputs, SHA-256 mapped, a hash predicate proved."""
 
 from __future__ import annotations
 
