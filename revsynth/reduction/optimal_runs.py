@@ -174,8 +174,8 @@ def _optimum(run: Masked, lines: int, controls: Controls, uncompute: Uncompute) 
     for first in orders:
         better = _from_table(run, lines, controls, first)
         found = weigh(better, uncompute)
-        if found < weight and found.gates <= weight.gates and found.t <= weight.t:
-            return better
+        if found.gates <= weight.gates and found.t <= weight.t:
+            return better if found < weight else None
     return None
 
 
