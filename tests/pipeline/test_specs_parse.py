@@ -39,6 +39,8 @@ def test_the_natural_form_parses(path: Path, gates: str, uncompute: str) -> None
 def test_every_other_form_parses(path: Path, gates: str, uncompute: str) -> None:
     spec = revsynth.read_spec(path)
     for oracle in ORACLES[spec.kind][1:]:
+        if oracle == "embedded" and spec.input_bits > 24:
+            continue  # lines that hold garbage are found from tables
         parses(spec, oracle, gates, uncompute)
 
 

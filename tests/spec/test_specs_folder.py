@@ -17,6 +17,8 @@ from revsynth.spec.understand import Understanding, understand
 
 FOLDER = Path(__file__).parents[2] / "specs"
 FILES = sorted(path.name for path in FOLDER.iterdir())
+WIDE = ("sill_passage.toml",)
+"""Too many input bits for a table."""
 
 
 def read(name: str) -> Spec:
@@ -28,7 +30,7 @@ def marked_values(understanding: Understanding) -> list[dict[str, object]]:
     return [dict(decode(understanding.spec.inputs, index)) for index in indices]
 
 
-@pytest.mark.parametrize("name", FILES)
+@pytest.mark.parametrize("name", [name for name in FILES if name not in WIDE])
 def test_each_is_understood_and_agrees_with_its_second_evaluation(name: str) -> None:
     understanding = understand(read(name))
     assert understanding.warnings == ()
@@ -65,7 +67,7 @@ def test_they_cover_every_section_and_every_alternative() -> None:
         "array False", "word True", "domain", "title", "constants", "labels",
     }  # fmt: skip
     assert len(FILES) >= 8
-    assert max(spec.input_bits for spec in specs) == 16
+    assert sorted(spec.input_bits for spec in specs)[-2:] == [16, 43]
 
 
 def set_keys(word: Output) -> list[str]:
@@ -147,6 +149,40 @@ def code_wheel(index: int) -> int:
     code = code ^ 255 if spring else code
     code = code // 16 | code % 16 * 16 if tide < 0 else code
     return index >> 8 << 8 | code
+
+
+def is_true_entry(day: int, hour: int, minute: int, tide: int, passage: int, draught: int, load: int) -> bool:
+    left = (day * 24 + hour) * 60 + minute
+    high_water = 428 + 745 * tide
+    return (
+        day <= 30 and hour <= 23 and minute <= 59
+        and high_water <= left <= high_water + 19
+        and hour * 60 + minute + passage <= 1200
+        and passage - 310 == 4 * load
+        and draught - 18 == load // 3 and draught < 28
+    )  # fmt: skip
+
+
+def test_sill_passage() -> None:
+    """The true entries are found from tide, delay and load; one changed bit makes most of them false."""
+    expectation = Expectation(understand(read("sill_passage.toml")))
+    widths = (5, 5, 6, 6, 10, 5, 6)
+    entries = []
+    for tide, delay, load in product(range(64), range(20), range(30)):
+        day, left = divmod(428 + 745 * tide + delay, 1440)
+        entry = (day, left // 60, left % 60, tide, 310 + 4 * load, 18 + load // 3, load)
+        if day <= 30 and left + entry[4] <= 1200:
+            entries.append(entry)
+    assert len(entries) == 20_520
+    indices = []
+    for entry in entries[::100]:
+        assert is_true_entry(*entry)
+        indices.append(sum(value << sum(widths[:at]) for at, value in enumerate(entry)))
+    for index in indices:
+        assert expectation(index) == (1,)
+        for other in (index ^ 1 << bit for bit in range(43)):
+            values = [other >> sum(widths[:at]) & (1 << width) - 1 for at, width in enumerate(widths)]
+            assert expectation(other) == (int(is_true_entry(*values)),)
 
 
 IN_PLACE: dict[str, Callable[[int], int]] = {
