@@ -1,4 +1,4 @@
-"""Runs of gates that touch at most three lines, replaced by the optimal ones of a complete table.
+"""Runs of gates that touch at most three or four lines, replaced by the optimal ones of a table.
 
 A run ends at a gate and takes up earlier ones on the same lines, however far apart they are: each gate
 between either moves out behind the run, or stays before it and lets pass what is taken up later (the moving
@@ -12,20 +12,29 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
+from revsynth.cascade.model import Cascade
+from revsynth.optimal.packed import pack
+from revsynth.optimal.short_circuits import short_circuits
 from revsynth.optimal.small_tables import MOST_LINES, First, small_table
 from revsynth.options import Controls, Uncompute
 from revsynth.reduction.masks import Masked, Masks, commute, masked, weigh
 from revsynth.reduction.reel import Reel
 
 SHORTEST = 3
-"""Gates that a run has at least: of two the rules know all."""
+"""Gates that a whole cascade has at least: of two the rules know all."""
 
 
 @dataclass(frozen=True)
 class Runs:
-    """How far runs go: gates looked at, gates in a run, choices of three lines for each last gate."""
+    """How far runs go.
 
+    lines: three, where every circuit is known, or four, where those of up to five gates are; reach: gates
+    looked at; shortest, longest: gates in a run; choices: of so many lines, for each last gate.
+    """
+
+    lines: int
     reach: int
+    shortest: int
     longest: int
     choices: int
 
@@ -75,7 +84,7 @@ def _cheaper(
         return None
     for lines in _line_choices(done, runs):
         start, before, run, behind = _run(done, lines, runs)
-        if len(run) < SHORTEST:
+        if len(run) < runs.shortest:
             continue
         better = _on_lines(run, lines, controls, uncompute)
         if better is not None:
@@ -84,9 +93,9 @@ def _cheaper(
 
 
 def _line_choices(done: list[Masks], runs: Runs) -> list[int]:
-    """Masks of at most three lines that the last gate and some gates before it are on, nearest ones first."""
+    """Masks of lines, few enough, that the last gate and gates before it are on, nearest ones first."""
     own = _lines(done[-1])
-    if own.bit_count() > MOST_LINES:
+    if own.bit_count() > runs.lines:
         return []
     found: list[int] = []
     open_ = own
@@ -95,10 +104,10 @@ def _line_choices(done: list[Masks], runs: Runs) -> list[int]:
         lines = _lines(gate)
         if not gate[0] or not lines & own:
             continue
-        if (open_ | lines).bit_count() <= MOST_LINES:
+        if (open_ | lines).bit_count() <= runs.lines:
             open_ |= lines
         joined = own | lines
-        if joined.bit_count() == MOST_LINES and joined not in found:
+        if joined.bit_count() == runs.lines and joined not in found:
             found.append(joined)
             if len(found) == runs.choices:
                 break
@@ -168,24 +177,32 @@ def _widened(mask: int, bits: Sequence[int]) -> int:
 
 @lru_cache(maxsize=1 << 15)
 def _optimum(run: Masked, lines: int, controls: Controls, uncompute: Uncompute) -> Masked | None:
-    """The cheapest sequence that does the same on up to three lines, None where the run is as cheap."""
+    """The cheapest sequence known that does the same, None where none is cheaper than the run."""
     weight = weigh(run, uncompute)
+    if lines > MOST_LINES:
+        table = short_circuits(controls, uncompute)
+        found = table.cheaper(pack(_images(run, lines)), *weight)
+        return None if found is None else tuple(masked(Cascade.from_gates(lines, found)))
     orders: tuple[First, First] = ("gates", "toffolis")
     for first in orders:
         better = _from_table(run, lines, controls, first)
-        found = weigh(better, uncompute)
-        if found.gates <= weight.gates and found.t <= weight.t:
-            return better if found < weight else None
+        after = weigh(better, uncompute)
+        if after.gates <= weight.gates and after.t <= weight.t:
+            return better if after < weight else None
     return None
 
 
 def _from_table(run: Masked, lines: int, controls: Controls, first: First) -> Masked:
+    table = small_table(lines, controls, first)
+    return tuple(masked(table.cascade(table.index(_images(run, lines)))))
+
+
+def _images(run: Masked, lines: int) -> list[int]:
     images = list(range(1 << lines))
     for gate in run:
         acts = _action(gate, lines)
         images = [acts[x] for x in images]
-    table = small_table(lines, controls, first)
-    return tuple(masked(table.cascade(table.index(images))))
+    return images
 
 
 @lru_cache(maxsize=1 << 10)

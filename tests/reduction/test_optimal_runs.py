@@ -16,21 +16,23 @@ from revsynth.reduction.optimal_runs import Runs, replace_runs, whole_optimum
 from tests.reduction.sameness import difference, not_worse, of
 from tests.strategies import cascades
 
-RUNS = Runs(reach=24, longest=16, choices=4)
+RUNS = Runs(lines=3, reach=24, shortest=3, longest=16, choices=4)
+SHORT_RUNS = Runs(lines=4, reach=16, shortest=4, longest=6, choices=4)
 settings = st.tuples(st.sampled_from(("mixed", "positive")), st.sampled_from(("unitary", "measured")))
 
 
-@given(cascades(max_lines=6, max_gates=24, phase=True), settings)
+@pytest.mark.parametrize("runs", [RUNS, SHORT_RUNS], ids=["three lines", "four lines"])
+@given(cascade=cascades(max_lines=6, max_gates=24, phase=True), setting=settings)
 def test_the_pass_keeps_the_function_and_the_promise(
-    cascade: Cascade, setting: tuple[Controls, Uncompute]
+    cascade: Cascade, setting: tuple[Controls, Uncompute], runs: Runs
 ) -> None:
     gates = masked(cascade)
-    after, changed = replace_runs(gates, [True] * len(gates), RUNS, *setting)
+    after, changed = replace_runs(gates, [True] * len(gates), runs, *setting)
     shorter = of(cascade.lines, after)
     assert difference(cascade, shorter) is None
     assert not_worse(cascade, shorter, setting[1])
     assert len(changed) == len(after)
-    again, marks = replace_runs(after, [True] * len(after), RUNS, *setting)
+    again, marks = replace_runs(after, [True] * len(after), runs, *setting)
     assert again == after
     assert not any(marks)
 
