@@ -108,6 +108,8 @@ _PLANS: dict[Effort, tuple[Round, ...]] = {
 }
 """Work is counted in gates (and some more a try) times words of 64 rows: 2**24 take half a second."""
 _MORE = 16
+MOST_MOVES: dict[Effort, int] = {"normal": 200_000, "high": 20_000_000}
+"""Tries of one block in one round, at most: short cascades are soon as good as they get."""
 FEWEST_MOVES = 2_000
 """Fewer tries than that are not worth it."""
 
@@ -124,7 +126,7 @@ def _one(task: Task, block: Block, work: int, heat: float, number: int) -> Block
     if place is None or not len(cascade) or any(value for _, value in place.preset):
         return block
     rows = 1 << task.function.inputs
-    moves = work // ((len(cascade) + _MORE) * max(1, rows >> 6))
+    moves = min(MOST_MOVES[task.effort], work // ((len(cascade) + _MORE) * max(1, rows >> 6)))
     if moves < FEWEST_MOVES:
         return block
     target = embed(task.function, cascade.lines, place.before, place.after)

@@ -9,9 +9,10 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+from revsynth.embed.multiplicity import bounded_multiplicity
 from revsynth.errors import BudgetError
 from revsynth.logic.network import Network
-from revsynth.options import Aim, Oracle
+from revsynth.options import Aim, Effort, Oracle
 from revsynth.synthesis.in_place import in_place_blocks
 from revsynth.synthesis.interface import Block, Progress, Task, silent
 from revsynth.synthesis.scratch.blocks import cnots
@@ -19,6 +20,8 @@ from revsynth.synthesis.scratch.curve import curve
 from revsynth.synthesis.scratch.from_table import network_function
 from revsynth.synthesis.scratch.planner import SMALL_ANDS, Planner
 from revsynth.synthesis.scratch.realise import Point, held, planned
+from revsynth.synthesis.there_and_back import MAX_LINES as MOST_LINES_BACK
+from revsynth.synthesis.there_and_back import there_and_back, without_idle_lines
 
 MOST_TABLE_INPUTS = 16
 """Tables of more inputs are not turned into networks here."""
@@ -44,8 +47,10 @@ class FromNetwork:
                 "values are (a * c + d) % N with a < N all over the domain, or sums modulo 2**bits, XORs and "
                 "exchanges"
             )
-        if task.oracle in ("inplace", "embedded"):
-            return f"a network leaves its inputs as they are, so nothing can be '{task.oracle}'"
+        if task.oracle == "inplace":
+            return _why_not_there_and_back(task)
+        if task.oracle == "embedded":
+            return "a network leaves its inputs as they are, so nothing can be 'embedded'"
         if task.oracle == "phase" and task.outputs != 1:
             return f"a phase oracle of a network needs one output bit, not {task.outputs}"
         if task.network is None and task.inputs > MOST_TABLE_INPUTS:
@@ -60,6 +65,8 @@ class FromNetwork:
 
         Raises BudgetError where no plan was found that fits `task.lines`.
         """
+        if task.oracle == "inplace" and task.program is None:
+            return there_and_back(task, self._beside, progress)
         if task.oracle == "inplace":
             return in_place_blocks(task, progress)
         positive = task.controls == "positive"
@@ -84,6 +91,25 @@ class FromNetwork:
                 f"{task.lines} allowed"
             )
         return _worth_it(found, task.aim)
+
+    def _beside(self, task: Task, progress: Progress) -> list[Block]:
+        """Blocks of the form `fresh` for half of a permutation, quickly: from its table's network alone.
+
+        The long way is taken where that needs too many lines, or where work is no matter.
+        """
+        if task.inputs <= TABLE_INPUTS and task.effort != "high":
+            from revsynth.logic.tables import table_network
+
+            found = table_network(task.function, effort=task.effort, seed=task.seed, progress=progress)
+            for _, network in found[:1]:
+                positive = task.controls == "positive"
+                blocks = [without_idle_lines(one.block) for one in held(network, task.oracle, positive)]
+                if task.aim in ("t", "qubits"):
+                    blocks.sort(key=lambda block: (block.cascade.lines, len(block.cascade)))
+                fit = [block for block in blocks if task.lines is None or block.cascade.lines <= task.lines]
+                if fit:
+                    return fit
+        return self.synthesise(task, progress)
 
     def _within(self, network: Network, task: Task, progress: Progress, misses: list[int]) -> list[Block]:
         """Blocks of plans for the lines allowed; for the aim `qubits` of the fewest lines.
@@ -148,8 +174,11 @@ def candidates(task: Task, progress: Progress = silent) -> list[Network]:
     if task.tabulated is not None and task.tabulated.inputs <= TABLE_INPUTS:
         from revsynth.logic.tables import table_network
 
-        tables = table_network(task.tabulated, effort=task.effort, seed=task.seed, progress=progress)
-        found.extend(_reduced(network, function.care, task, progress) for _, network in tables[:2])
+        # Up to normal effort without what has to be compiled: small work is done in well under a second.
+        effort: Effort = "high" if task.effort == "high" else "low"
+        quick = replace(task, effort=effort)
+        tables = table_network(task.tabulated, effort=effort, seed=task.seed, progress=progress)
+        found.extend(_reduced(network, function.care, quick, progress) for _, network in tables[:2])
     found.sort(key=lambda network: network.ands + network.xors / XORS_AN_AND)
     return [network for i, network in enumerate(found) if network not in found[:i]]
 
@@ -171,6 +200,19 @@ def _thresholds(network: Network, task: Task) -> tuple[int, ...]:
     """Ways to place sums: of large networks one, where lines do not matter and CNOTs make the difference."""
     few_cnots = network.gates > SEARCHED_GATES and task.lines is None and task.aim != "qubits"
     return (2,) if few_cnots else (2, 3)
+
+
+def _why_not_there_and_back(task: Task) -> str | None:
+    lines = task.inputs
+    if lines != task.outputs:
+        return f"{lines} input bits but {task.outputs} output bits: not reversible in place"
+    if lines > MOST_LINES_BACK:
+        return f"tables of more than {MOST_LINES_BACK} lines have networks of too many ANDs"
+    if task.lines is not None and 2 * lines > task.lines:
+        return f"images beside their inputs need {2 * lines} lines before any scratch, {task.lines} allowed"
+    if bounded_multiplicity(task.function)[0] > 1:
+        return "not reversible: some inputs must have the same image"
+    return None
 
 
 def _bare_lines(task: Task) -> int:

@@ -9,7 +9,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from revsynth.errors import UndecidedError
-from revsynth.options import BuildOptions, Controls, Oracle
+from revsynth.options import Aim, BuildOptions, Controls, Effort, Oracle
 from revsynth.shortening import shorten
 from revsynth.synthesis import optimal
 from revsynth.synthesis.interface import Method, Task
@@ -50,7 +50,9 @@ def tasks(draw: st.DrawFn, oracle: Oracle) -> Task:
         values[x] = None
     controls: Controls = draw(st.sampled_from(["mixed", "positive"]))
     function = from_table(inputs, outputs, values)
-    return Task(function, oracle, controls=controls, aim=draw(st.sampled_from(["t", "gates", "qubits"])))
+    effort: Effort = draw(st.sampled_from(["low", "low", "low", "normal"]))
+    aim: Aim = draw(st.sampled_from(["t", "gates", "qubits"]))
+    return Task(function, oracle, controls=controls, aim=aim, effort=effort)
 
 
 @pytest.mark.parametrize("method", METHODS, ids=lambda method: method.name)

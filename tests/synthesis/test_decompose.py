@@ -143,3 +143,9 @@ def test_what_it_cannot_do_is_said() -> None:
     assert "at most 12" in str(DECOMPOSE.unfit(Task(from_table(13, 13, np.arange(1 << 13)), "inplace")))
     with pytest.raises(ValueError, match="same image"):
         DECOMPOSE.synthesise(Task(from_table(2, 2, [0, 0, 1, 2]), "inplace"))
+
+
+def test_nothing_fixed_takes_no_gates() -> None:
+    free: list[int | None] = [None] * 8
+    (block, *_) = DECOMPOSE.synthesise(Task(from_table(3, 3, free), "inplace"))
+    assert len(block.cascade) == 0

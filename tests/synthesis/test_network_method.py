@@ -87,10 +87,12 @@ def task_of(network: Network, oracle: Oracle) -> Task:
     return Task(None, oracle, network=NetworkFunction(network))
 
 
-@pytest.mark.parametrize("oracle", ["inplace", "embedded"])
-def test_forms_that_change_the_inputs_are_refused(oracle: Oracle) -> None:
-    reason = NETWORK.unfit(task_of(adder(2), oracle))
-    assert reason == f"a network leaves its inputs as they are, so nothing can be '{oracle}'"
+def test_forms_that_change_the_inputs_are_refused() -> None:
+    reason = NETWORK.unfit(task_of(adder(2), "embedded"))
+    assert reason == "a network leaves its inputs as they are, so nothing can be 'embedded'"
+    reason = NETWORK.unfit(task_of(adder(2), "inplace"))
+    assert reason is not None
+    assert "in place" in reason
 
 
 def test_what_does_not_fit_is_said() -> None:

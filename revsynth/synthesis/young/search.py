@@ -122,7 +122,7 @@ def _children(
         return [Partial(between, rest, cost, (*parent.before, turn), parent.behind)]
     children = []
     for cost, flips in _cheap_flips(parent.images, line, base, costs, width, random):
-        colour = base.colour ^ np.where(base.part >= 0, flips[base.part], 0).astype(np.uint8)
+        colour = base.colour ^ np.append(flips, False)[base.part]
         between, before, behind = split(parent.images, line, colour)
         children.append(
             Partial(
