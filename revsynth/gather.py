@@ -30,7 +30,9 @@ SHORT = 400
 in 0, and what they join may cost more than the products held."""
 
 
-BEATEN = "not asked: a network is at hand, and took fewer T gates wherever both were tried (--effort high asks)"
+BEATEN = (
+    "not asked: a network is at hand, and took fewer T gates wherever both were tried (--effort high asks)"
+)
 
 
 class _TimeIsUpError(Exception):
