@@ -18,6 +18,8 @@ from revsynth.optimal.packed import CONTROLS, GATES, IDENTITY, TARGETS, Words, p
 COUNTS = (1, 4, 33, 425, 6_538, 101_983, 1_482_686, 19_466_575)
 """Classes of size 0, 1, ...: the paper, table of equivalence classes; found again by `found_classes`."""
 MOST_SIZE = len(COUNTS) - 1
+CHUNK = 1 << 14
+"""Classes put gates to between two words on progress: some tenths of a second."""
 
 Progress = Callable[[str], None]
 
@@ -87,9 +89,13 @@ def found_classes(size: int, progress: Progress, start: Classes | None = None) -
     for known, level in enumerate(levels):
         add_level(level, known, table)
     for new in range(len(levels), size + 1):
-        progress(f"optimal: finding the {COUNTS[new]} classes of {new} gates on 4 lines")
         found = np.empty(COUNTS[new], dtype=np.uint64)
-        count = int(next_level(levels[-1], TARGETS, CONTROLS, new, table, found))
+        count = 0
+        for begin in range(0, len(levels[-1]), CHUNK):
+            share = 100 * begin // len(levels[-1])
+            progress(f"optimal: finding the {COUNTS[new]:,} classes of {new} gates on 4 lines, {share} %")
+            part = levels[-1][begin : begin + CHUNK]
+            count += int(next_level(part, TARGETS, CONTROLS, new, table, found[count:]))
         if count != COUNTS[new]:
             raise AssertionError(f"{count} classes of {new} gates were found, {COUNTS[new]} are published")
         found.sort()
