@@ -11,6 +11,7 @@ from revsynth.errors import BudgetError, UndecidedError, UsageError
 from revsynth.options import BuildOptions, Effort
 from revsynth.shortening import shorten, without_idle_work
 from revsynth.spec.limits import MAX_INPUT_BITS
+from revsynth.synthesis import any_order
 from revsynth.synthesis.interface import Block, Method, Task
 from revsynth.synthesis.keeping import keep_products
 from revsynth.synthesis.methods import METHODS, WIDE
@@ -105,7 +106,7 @@ class Gathering:
     def _ask(self, method: Method, task: Task) -> None:
         self._progress(f"{method.name}: synthesising, effort {task.effort}")
         try:
-            found = method.synthesise(task, self._progress)
+            found = any_order.synthesise(method, task, self._progress)
         except BudgetError as error:
             self._add_failed(method, str(error))
             self._too_large = True

@@ -49,6 +49,7 @@ class BuildOptions:
     seed: int = 0
     time_limit: float | None = None
     unverified: bool = False
+    outputs_any_order: bool = False
 
     def __post_init__(self) -> None:
         for name, allowed in CHOICES.items():

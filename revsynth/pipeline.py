@@ -61,6 +61,8 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
     understanding = understand(spec)
     oracle = options.oracle or natural_oracle(spec)
     check_oracle(spec, oracle)
+    if options.outputs_any_order and oracle != "inplace":
+        raise UsageError(f"{spec.source}: --outputs-any-order is for oracle 'inplace', not '{oracle}'")
     _check_widths(understanding, oracle)
     understanding, network, program = structure_of(understanding, options)
     clock.lap("read")
@@ -76,6 +78,7 @@ def build(spec: Spec, options: BuildOptions, progress: Progress) -> Built:
         lines=options.qubits,
         network=network,
         program=program,
+        any_order=options.outputs_any_order,
     )
     layout = register_layout(understanding, oracle, options)
     gathering = Gathering(task, options, progress)
@@ -173,7 +176,7 @@ def register_layout(understanding: Understanding, oracle: Oracle, options: Build
 
 
 def _registers_for(block: Block, layout: Layout) -> list[tuple[str, int]]:
-    if block.placement is not None:
+    if layout.registers[0][0] == "line":
         return [("line", block.inputs)]
     registers = list(layout.registers)
     if block.keep:

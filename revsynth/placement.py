@@ -1,4 +1,6 @@
-"""Naming the lines of an `embedded` block: the JSON key `placement` and the comment lines of the file.
+"""Naming the lines of an `embedded` block, or of an in-place one with its outputs in any order.
+
+Both the JSON key `placement` and the comment lines of the file.
 
 Lines are listed least significant bit first, under the spec's own names.
 """
@@ -17,10 +19,12 @@ def describe_placement(block: Block, understanding: Understanding) -> dict[str, 
     if placement is None:
         return None
     lines = range(block.inputs)
+    spec = understanding.spec
+    outputs = spec.inputs if spec.kind == "permutation" else understanding.outputs
     return {
         "before": _by_word(understanding.spec.inputs, placement.before),
         "preset": {str(line): value for line, value in sorted(placement.preset)},
-        "after": _by_word(understanding.outputs, placement.after) or {"mark": list(placement.after)},
+        "after": _by_word(outputs, placement.after) or {"mark": list(placement.after)},
         "leftover": [line for line in lines if line not in placement.after],
     }
 

@@ -45,6 +45,11 @@ def _choice(name: str, text: str, show_default: bool = True) -> Callable[[F], F]
 @_choice("format", "Format of the file; 'plain' is OpenQASM 2 with one register, and a map in FILE.json.")
 @_choice("controls", "Whether cascades may use negative controls.")
 @click.option("--seed", type=int, metavar="N", help="Seed of random choices. Default: 0.")
+@click.option(
+    "--outputs-any-order",
+    is_flag=True,
+    help="Let an in-place block leave its output bits on other lines; 'placement' in the JSON says where.",
+)
 @click.option("--unverified", is_flag=True, help="Write even where verification could not finish.")
 @spec_options
 @click.option("--json", "as_json", is_flag=True, help="One JSON object on standard output.")

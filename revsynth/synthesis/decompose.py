@@ -16,7 +16,7 @@ from revsynth.cascade.model import Cascade, Gate
 from revsynth.cascade.price import cascade_t
 from revsynth.embed.in_place import Lines, embed, fewest_lines, placements
 from revsynth.embed.multiplicity import bounded_multiplicity
-from revsynth.embed.target import ReversibleTarget, complete
+from revsynth.embed.target import ReversibleTarget
 from revsynth.logic.annealing import anneal
 from revsynth.logic.cubes import Cube, ExclusiveSum
 from revsynth.logic.exclusive_sum import minimise, starting_sums
@@ -27,7 +27,7 @@ from revsynth.options import Effort
 from revsynth.synthesis.exchanges import exchanged
 from revsynth.synthesis.interface import Block, Placement, Progress, Task, silent
 from revsynth.synthesis.product_gates import conjugated, prices_for
-from revsynth.synthesis.young.search import Partial, Turn, Width, decompositions
+from revsynth.synthesis.young.search import Partial, Turn, Width, decompositions, partial_images
 
 NAME = "decompose"
 
@@ -130,18 +130,6 @@ def _cascades(task: Task, target: ReversibleTarget, progress: Progress) -> list[
 def _rank(cascade: Cascade, task: Task) -> tuple[int, int]:
     t = cascade_t(cascade, task.uncompute)
     return (t, len(cascade)) if task.aim != "gates" else (len(cascade), t)
-
-
-def partial_images(target: ReversibleTarget) -> NDArray[np.int64]:
-    """The image of every state that must have one, -1 elsewhere; half-fixed images are completed."""
-    full = (1 << target.lines) - 1
-    fixed = target.fixed != 0
-    if np.all(target.fixed[fixed] == full):
-        return np.where(fixed, target.image, -1)
-    table = complete(target)
-    if table is None:
-        raise ValueError("no choice of the free output bits gives every state an image of its own")
-    return np.where(fixed, table, -1)
 
 
 def cheapest(task: Task, images: NDArray[np.int64], lines: int, least_t: bool, progress: Progress) -> Cascade:

@@ -31,6 +31,7 @@ class Task:
     tabulated: the function as a table, None where it is too wide for one. network: the same function by its
     structure, None where only the table is at hand. program: the same, for a permutation that is given step
     by step, or whose arithmetic is known to work in place. One of the three is there.
+    any_order: the outputs of an `inplace` block may be on other lines, as its placement says.
     `lines` is the most lines the cascade may use (None: as many as it likes); lowering may need more.
     """
 
@@ -44,6 +45,7 @@ class Task:
     lines: int | None = None
     network: NetworkFunction | None = None
     program: Program | None = None
+    any_order: bool = False
 
     @property
     def function(self) -> Function:
@@ -69,7 +71,7 @@ class Task:
 
 @dataclass(frozen=True)
 class Placement:
-    """Which line of an `embedded` block holds what.
+    """Which line of an `embedded` block holds what (or of an `inplace` one, outputs in any order).
 
     before: input bit i of the function sits on line before[i]; preset: lines that must start in 0 or 1;
     after: output bit j of the function is on line after[j] at the end; the other lines hold garbage.

@@ -50,6 +50,11 @@ def _listed(placement: Mapping[str, Any], side: str, name: str, bits: int) -> li
     return [int(line) for line in lines]
 
 
+def is_line_comment(comment: str) -> bool:
+    """Whether a comment says what is on a line."""
+    return _COMMENT.fullmatch(comment.strip().lstrip("/").strip()) is not None
+
+
 def lines_from_comments(
     comments: Sequence[str], inputs: Elements, outputs: Elements, size: int
 ) -> Lines | str:

@@ -12,7 +12,12 @@ from revsynth.options import Oracle
 from revsynth.qasm.names import register_names
 from revsynth.spec.model import Word
 from revsynth.spec.understand import Understanding
-from revsynth.verification.line_placement import Lines, lines_from_comments, lines_from_object
+from revsynth.verification.line_placement import (
+    Lines,
+    is_line_comment,
+    lines_from_comments,
+    lines_from_object,
+)
 
 if TYPE_CHECKING:
     from revsynth.qasm import Program
@@ -67,7 +72,7 @@ def match(
         )
     if form == "embedded":
         return matcher.embedded(placement)
-    return matcher.by_words(form)
+    return matcher.by_words(form, placement)
 
 
 class _Matcher:
@@ -106,7 +111,7 @@ class _Matcher:
                 return candidate
         return None
 
-    def by_words(self, form: Oracle) -> Roles:
+    def by_words(self, form: Oracle, placement: Mapping[str, Any] | None = None) -> Roles:
         """Roles where registers bear the names of words."""
         inputs = self._qubits_of(self.inputs)
         outputs: list[Qubit] = []
@@ -124,7 +129,7 @@ class _Matcher:
                     f"oracle 'inplace' needs as many output bits as input bits, not "
                     f"{self.understanding.output_bits} and {len(inputs)}"
                 )
-            outputs = inputs
+            outputs = self._in_order(inputs, placement)
         kept = self._members("keep") if form == "compute" else ()
         taken |= {"work", "lent"} | ({"keep"} if kept else set())
         return Roles(
@@ -135,6 +140,24 @@ class _Matcher:
             lent=self._members("lent"),
             foreign=tuple(r.name for r in self.circuit.registers if r.name not in taken and r.size),
         )
+
+    def _in_order(self, inputs: list[Qubit], placement: Mapping[str, Any] | None) -> list[Qubit]:
+        """The qubits of the outputs of an in-place block: the inputs', or as placement or comments have it.
+
+        Lines are numbered as the input bits are. Comments that name no line leave the natural order.
+        """
+        after = self.outputs or self.inputs
+        if placement is not None:
+            lines = lines_from_object(placement, self.inputs, after, len(inputs))
+        elif any(is_line_comment(comment) for comment in self.comments):
+            lines = lines_from_comments(self.comments, self.inputs, after, len(inputs))
+        else:
+            return inputs
+        if not isinstance(lines, str) and lines.before != tuple(range(len(inputs))):
+            lines = "placement: the inputs of an in-place block are in their own registers"
+        if isinstance(lines, str):
+            raise self.error(lines)
+        return [inputs[line] for line in lines.after]
 
     def _members(self, name: str) -> tuple[Qubit, ...]:
         register = self.circuit.register(name)

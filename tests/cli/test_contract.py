@@ -294,7 +294,7 @@ def test_every_option_of_every_command_is_explained(capsys: Capture, name: str) 
 
 LATER = {
     "build": [
-        "--borrow 1", "--outputs-any-order", "--controlled", "--inverse", "--wrap f", "--angle pi/8",
+        "--borrow 1", "--controlled", "--inverse", "--wrap f", "--angle pi/8",
         "--free-inputs", "--gates cx+rz",
     ],
     "verify": [

@@ -14,6 +14,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from revsynth.embed.target import ReversibleTarget, complete
 from revsynth.logic.sum_costs import SumCosts, Words, to_words
 from revsynth.synthesis.young.colouring import Colouring, Images, Turned, colouring, split
 
@@ -58,6 +59,18 @@ class Width:
     children: int
     every: int
     starts: int
+
+
+def partial_images(target: ReversibleTarget) -> NDArray[np.int64]:
+    """The image of every state that must have one, -1 elsewhere; half-fixed images are completed."""
+    full = (1 << target.lines) - 1
+    fixed = target.fixed != 0
+    if np.all(target.fixed[fixed] == full):
+        return np.where(fixed, target.image, -1)
+    table = complete(target)
+    if table is None:
+        raise ValueError("no choice of the free output bits gives every state an image of its own")
+    return np.where(fixed, table, -1)
 
 
 def decompositions(
