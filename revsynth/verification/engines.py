@@ -58,7 +58,9 @@ class Part:
 class Engines:
     """The engines for one circuit. `name` says which one the last part went through."""
 
-    def __init__(self, circuit: Circuit) -> None:
+    def __init__(self, circuit: Circuit, *, most_rows: int | None = None) -> None:
+        """most_rows: a lower limit to the basis states of sparse simulation, where time matters."""
+        self.most_rows = most_rows
         self.steps: Steps = elementary(circuit)
         self.measurements = self.steps.measurements
         self._circuit = circuit
@@ -96,6 +98,11 @@ class Engines:
     @cached_property
     def _plan(self) -> Plan:
         return plan(self.steps, self._circuit.conditions)
+
+    @property
+    def is_sparse(self) -> bool:
+        """Whether the circuit is found to need sparse simulation."""
+        return self._use_sparse
 
     def fast(self, chunk: Chunk) -> Part | None:
         """The final states through a fast engine; None, and never again, where none can follow."""
@@ -217,11 +224,20 @@ class Engines:
             return self._simulated(chunk)
 
     def _simulated(self, chunk: Chunk) -> Part:
-        from revsynth.verification.sparse import run_sparse
-
         accuracy = "in exact integers" if self._exact else "to 1e-9"
         self.name = f"sparse simulation of basis states, amplitudes {accuracy}"
         try:
-            return Part(chunk, run_sparse(self._plan, chunk.start, chunk.lanes + 1, exact=self._exact))
+            return Part(chunk, self._run_sparse(chunk))
         except RevealsError as reveals:
             return Part(chunk, reveals=reveals)
+
+    def _run_sparse(self, chunk: Chunk) -> Finals:
+        from revsynth.verification.sparse import run_sparse
+
+        lanes = chunk.lanes + 1
+        if self.most_rows is None:
+            return run_sparse(self._plan, chunk.start, lanes, exact=self._exact)
+        runs = max(self.most_rows >> 7, 1)
+        return run_sparse(
+            self._plan, chunk.start, lanes, exact=self._exact, most_rows=self.most_rows, most_runs=runs
+        )

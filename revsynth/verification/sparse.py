@@ -51,7 +51,15 @@ class _Run:
     angle: float = 0.0
 
 
-def run_sparse(plan: Plan, start: Sequence[Column], lanes: int, *, exact: bool) -> Finals:
+def run_sparse(
+    plan: Plan,
+    start: Sequence[Column],
+    lanes: int,
+    *,
+    exact: bool,
+    most_rows: int = MOST_ROWS,
+    most_runs: int = MOST_RUNS,
+) -> Finals:
     """The final states of all records.
 
     start: one column a qubit over `lanes` lanes, the last one the reference input. Raises TooLargeError at
@@ -75,16 +83,16 @@ def run_sparse(plan: Plan, start: Sequence[Column], lanes: int, *, exact: bool) 
         runs = after
         if len(runs) > 1 and index in plan.live:
             runs = _merge(runs, plan.live[index], arithmetic)
-        _check_limits(runs)
+        _check_limits(runs, most_rows, most_runs)
     return Finals([_final(run, len(start), lanes, arithmetic) for run in runs], random)
 
 
-def _check_limits(runs: Sequence[_Run]) -> None:
-    if len(runs) > MOST_RUNS:
-        raise TooLargeError(f"more than {MOST_RUNS} records of measurement outcomes differ at one time")
+def _check_limits(runs: Sequence[_Run], most_rows: int, most_runs: int) -> None:
+    if len(runs) > most_runs:
+        raise TooLargeError(f"more than {most_runs} records of measurement outcomes differ at one time")
     rows = sum(len(run.lane) for run in runs)
-    if rows > MOST_ROWS:
-        raise TooLargeError(f"more than {MOST_ROWS} basis states at one time")
+    if rows > most_rows:
+        raise TooLargeError(f"more than {most_rows} basis states at one time")
 
 
 def _keys(start: Sequence[Column], lanes: int) -> NDArray[np.uint64]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import random
 from collections.abc import Iterator
 from dataclasses import dataclass
 
@@ -26,6 +27,16 @@ def mutants(circuit: Circuit) -> Iterator[Mutant]:
     for index, op in enumerate(circuit):
         for fault, change in _changes(op):
             yield Mutant(with_steps(circuit, [(index, change)]), index, op, fault)
+
+
+def some_mutants(circuit: Circuit, count: int, seed: int) -> Iterator[Mutant]:
+    """So many of them, in different operations, the same ones for the same seed."""
+    draw = random.Random(seed)
+    operations = list(circuit)
+    for index in sorted(draw.sample(range(len(operations)), min(count, len(operations)))):
+        op = operations[index]
+        fault, change = draw.choice(list(_changes(op)))
+        yield Mutant(with_steps(circuit, [(index, change)]), index, op, fault)
 
 
 def _changes(op: Op) -> Iterator[tuple[str, Op | None]]:

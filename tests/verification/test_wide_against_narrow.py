@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import replace
 
 import pytest
 
 import revsynth
+from revsynth.options import Oracle
 from revsynth.qasm import Program, read
 from revsynth.spec.expectation import Expectation
 from revsynth.spec.layout import encode
@@ -17,7 +19,7 @@ from revsynth.verification.evidence import Counterexample
 from revsynth.verification.matching import Roles, match
 from revsynth.verification.proof.telling import WideTeller
 from revsynth.verification.proof.wide import WideDecision, decide_wide
-from tests.verification.mutants import mutants
+from tests.verification.mutants import Mutant, mutants, some_mutants
 from tests.verification.oracles import EXAMPLES, Example
 
 
@@ -35,13 +37,13 @@ def wide(
     return decision, teller.tell(decision.failure)
 
 
-def check(spec: Spec, program: Program, oracle: str | None, *, every: int = 1, placement=None) -> list[int]:  # type: ignore[no-untyped-def]
+def check(spec: Spec, program: Program, oracle: Oracle | None, faults: Iterable[Mutant]) -> list[int]:
     """Both verdicts on the circuit and on its mutants; how many were right, wrong, and left undecided."""
     understanding = understand(spec)
-    roles = match(understanding, program, oracle, placement)  # type: ignore[arg-type]
-    circuits = [program.circuit, *(mutant.circuit for mutant in mutants(program.circuit))]
+    roles = match(understanding, program, oracle, None)
+    circuits = [program.circuit, *(mutant.circuit for mutant in faults)]
     counts = [0, 0, 0]
-    for circuit in circuits[::every]:
+    for circuit in circuits:
         exact = decide(circuit, roles, understanding.function, lambda _: None)
         assert exact.holds is not None
         decision, told = wide(understanding, replace(program, circuit=circuit), roles)
@@ -92,7 +94,7 @@ def _fewer_random_inputs(monkeypatch: pytest.MonkeyPatch) -> None:
 
 @pytest.mark.parametrize("example", EXAMPLES, ids=lambda example: example.name)
 def test_examples_by_hand_and_their_mutants(example: Example) -> None:
-    counts = check(example.spec, example.program(), example.oracle)
+    counts = check(example.spec, example.program(), example.oracle, mutants(example.circuit))
     if "table" in str(example.spec.body) and not isinstance(example.spec.body, Outputs):
         return
     assert counts[0] or counts[2]
@@ -138,11 +140,16 @@ CASES = [
 ]
 
 
-@pytest.mark.parametrize("number", range(len(CASES)))
+QUICK = range(0, len(CASES), 3)
+"""Every third: all forms, and all ways to build with some of them."""
+
+
+@pytest.mark.parametrize(
+    "number", [pytest.param(n, marks=() if n in QUICK else pytest.mark.slow) for n in range(len(CASES))]
+)
 def test_built_circuits_and_some_mutants(number: int) -> None:
     spec, oracle, gates, uncompute = CASES[number]
     built = revsynth.build(spec, oracle=oracle, gates=gates, uncompute=uncompute, seed=0)
     program = read(built.text("openqasm3"))
-    size = sum(1 for _ in mutants(program.circuit))
-    counts = check(spec, program, oracle, every=max(size // 12, 1) | 1)
+    counts = check(spec, program, oracle, some_mutants(program.circuit, 10, number))
     assert counts[0]

@@ -20,7 +20,10 @@ SATISFYING = 24
 MOST_OUTPUTS = 64
 NEIGHBOURS = 4096
 """Neighbours (one bit changed) of satisfying inputs."""
-CONFLICTS = 20_000
+CONFLICTS = 10_000
+"""Of the solver, for one input."""
+ALL_CONFLICTS = 40_000
+"""The same for all of them: rare predicates may be hard to satisfy, which is not the point here."""
 """Conflicts for each question, where that is a second or two; fewer where a conflict costs more."""
 NODE_CONFLICTS = 100_000_000
 """Conflicts times nodes for each question: a conflict visits more of a large encoding."""

@@ -22,6 +22,12 @@ MOST_LANES = 1 << 14
 MOST_STEPS = 1 << 26
 """Steps times inputs."""
 LANES_AT_A_TIME = 1 << 10
+FIRST_LANES = 8
+"""Inputs that are run first, to see which engine can follow."""
+SPARSE_LANES = 64
+"""Inputs in all where superpositions have to be followed state by state."""
+SPARSE_ROWS = 1 << 13
+"""Basis states that these may hold at one time."""
 
 
 class Runner:
@@ -31,7 +37,7 @@ class Runner:
         self._understanding = understanding
         self._circuit = circuit
         self._demand = ChosenDemand(roles, understanding, circuit.qubits, reference)
-        self._engines = Engines(circuit)
+        self._engines = Engines(circuit, most_rows=SPARSE_ROWS)
 
     def fault(self, numbers: Sequence[int]) -> Counterexample | None:
         """What is wrong at the first of these run numbers at which something is."""
@@ -58,9 +64,15 @@ class Runner:
         draw = random.Random(0)
         numbers = list(chosen[: most // 2])
         numbers += [draw.getrandbits(self._demand.bits) for _ in range(most - len(numbers))]
-        for begin in range(0, most, LANES_AT_A_TIME):
+        begin, size = 0, FIRST_LANES
+        while begin < most:
             progress(f"verifying: {begin} of {most} inputs run one by one")
-            found = self.fault(numbers[begin : begin + LANES_AT_A_TIME])
+            found = self.fault(numbers[begin : begin + size])
             if found is not None:
                 return begin, found
-        return most, None
+            begin += size
+            if self._engines.is_sparse:
+                most = min(most, SPARSE_LANES)
+            else:
+                size = LANES_AT_A_TIME
+        return min(begin, most), None

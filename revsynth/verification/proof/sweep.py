@@ -27,6 +27,9 @@ TRIES = 4
 """Earlier nodes with the same values that a node is compared with."""
 STEP_CONFLICTS = 400
 """Conflicts that a question about two nodes may take."""
+PATIENCE = 64
+"""After so many questions without an answer, they may take FEW_CONFLICTS."""
+FEW_CONFLICTS = 40
 ATTEMPTS = 3
 """Guesses from signatures that may be wrong."""
 
@@ -157,7 +160,8 @@ class Sweep:
             if candidate is None or candidate == made:
                 break
             tried.add(candidate)
-            answer = encoding.same(candidate, made, STEP_CONFLICTS)
+            limit = STEP_CONFLICTS if self.undecided < PATIENCE else FEW_CONFLICTS
+            answer = encoding.same(candidate, made, limit)
             if answer:
                 self.merged += 1
                 return candidate
