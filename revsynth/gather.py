@@ -63,7 +63,7 @@ class Gathering:
         try:
             for level in _levels(self.options):
                 for method in fit:
-                    if self._beaten(method, level):
+                    if self._beaten(method):
                         self._add_failed(method, BEATEN)
                         continue
                     self._ask(method, replace(self.task, effort=level))
@@ -87,7 +87,7 @@ class Gathering:
                     self.trials.append(Trial(method.name, failed=reason))
         return fit
 
-    def _beaten(self, method: Method, level: Effort) -> bool:
+    def _beaten(self, method: Method) -> bool:
         """Whether `auto` need not ask: a permutation of more lines never had fewer T than a network.
 
         Of 40 predicates and outputs none came out better by `transform`, which takes up to ten times as long
@@ -97,7 +97,7 @@ class Gathering:
         return (
             method is TRANSFORM
             and (options.method, options.aim) == ("auto", "t")
-            and level != "high"
+            and options.effort != "high"
             and self.task.oracle in ("phase", "bit", "fresh", "compute")
             and (options.qubits, options.t, options.depth) == (None, None, None)
             and any(block.method.startswith("network") for block in self.blocks)
