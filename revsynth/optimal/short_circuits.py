@@ -69,6 +69,10 @@ class ShortCircuits:
                 return circuit if _is_cheaper(MOST_GATES + more, cost, gates, own) else None
         return None
 
+    def shortest(self, word: int) -> list[Gate] | None:
+        """The cheapest of the shortest circuits, None where it takes more than five gates."""
+        return self.cheaper(word, MOST_MET + 1, np.iinfo(np.int32).max // _UNIT, 0)
+
     def _meeting(self, word: int, more: int) -> tuple[int, list[Gate]] | None:
         """word = outer after inner, with inner of three gates and outer of `more`: inner = outer^-1 word."""
         outer, inner = self.levels[more], self.levels[MOST_GATES]

@@ -14,7 +14,7 @@ from itertools import permutations, product
 import numpy as np
 from numpy.typing import NDArray
 
-from revsynth.cascade.model import Line
+from revsynth.cascade.model import Cascade, Line
 from revsynth.embed.in_place import fewest_lines, tables
 from revsynth.errors import BudgetError, UndecidedError
 from revsynth.logic.affine_classes import circuit
@@ -22,7 +22,9 @@ from revsynth.logic.fillings import fewest_ands, unfillable
 from revsynth.logic.function import Function
 from revsynth.optimal.answers import shortest_with
 from revsynth.optimal.packed import pack
+from revsynth.optimal.short_circuits import short_circuits
 from revsynth.optimal.small_tables import MOST_LINES, First, SmallTable, small_table
+from revsynth.options import Uncompute
 from revsynth.synthesis.interface import Block, Placement, Progress, Task, silent
 
 NAME = "optimal"
@@ -221,7 +223,14 @@ def _fillings(values: NDArray[np.int64], care: NDArray[np.int64]) -> list[int]:
 
 
 def _four_lines(words: tuple[int, ...], task: Task, progress: Progress) -> Block:
-    """The shortest block of any of the words; raises UndecidedError with the bound where it is too long."""
+    """The shortest block of any of the words; raises UndecidedError with the bound where it is too long.
+
+    Up to five gates circuits with negative controls are known too, the shortest where these may be used.
+    """
+    if task.controls == "mixed":
+        short = _short(words, task.uncompute)
+        if short is not None:
+            return Block(short, _said("gates"), 4)
     size = SIZE
     answer = shortest_with(size, words, progress)
     if answer.cascade is None and task.effort == "high":
@@ -235,6 +244,16 @@ def _four_lines(words: tuple[int, ...], task: Task, progress: Progress) -> Block
         )
     said = f"{NAME}, {len(answer.cascade)} gates proved minimal with positive controls"
     return Block(answer.cascade, said, 4)
+
+
+def _short(words: tuple[int, ...], uncompute: Uncompute) -> Cascade | None:
+    """The first of the shortest cascades with controls of both polarities, None for more than five gates."""
+    table = short_circuits("mixed", uncompute)
+    found = [circuit for circuit in map(table.shortest, words) if circuit is not None]
+    if not found:
+        return None
+    shortest = min(found, key=len)
+    return Cascade.from_gates(4, shortest)
 
 
 def _embedded(task: Task, first: First) -> Block:

@@ -74,6 +74,16 @@ def test_four_lines() -> None:
         assert block.method == f"optimal, {size} gates proved minimal with positive controls"
 
 
+def test_four_lines_with_negative_controls() -> None:
+    """A NOT with three negative controls is one gate, and six with positive ones: NOTs around it make seven."""
+    values = [x ^ 8 if x & 7 == 0 else x for x in range(16)]
+    (block,) = synthesised(Task(from_table(4, 4, values), "inplace"))
+    assert len(block.cascade) == 1
+    assert block.method == "optimal, proved minimal in gates"
+    (positive,) = synthesised(Task(from_table(4, 4, values), "inplace", controls="positive"))
+    assert len(positive.cascade) == 6
+
+
 def test_four_lines_with_free_images() -> None:
     """Three images of 5x mod 16 are free; the given one takes three gates, none takes more than that."""
     values: list[int | None] = [5 * x & 15 for x in range(16)]
