@@ -75,7 +75,7 @@ def test_four_lines() -> None:
 
 
 def test_four_lines_with_negative_controls() -> None:
-    """A NOT with three negative controls is one gate, and six with positive ones: NOTs around it make seven."""
+    """A NOT with three negative controls; positive ones take six gates, one less than NOTs around it."""
     values = [x ^ 8 if x & 7 == 0 else x for x in range(16)]
     (block,) = synthesised(Task(from_table(4, 4, values), "inplace"))
     assert len(block.cascade) == 1
