@@ -17,6 +17,8 @@ from revsynth.verification.lifting.linear_proofs import GuessError
 from revsynth.verification.lifting.parities import AND, FALSE, TRUE, Literal, Parities
 from revsynth.verification.proof.cone import Cone, Words
 from revsynth.verification.proof.encoding import Encoding
+from revsynth.verification.proof.every_input import find_one
+from revsynth.verification.proof.local_equality import LocalEquality
 
 WORDS = 16
 """Random words at the start; every batch of counterexamples adds one more."""
@@ -30,6 +32,8 @@ STEP_CONFLICTS = 400
 PATIENCE = 64
 """After so many questions without an answer, they may take FEW_CONFLICTS."""
 FEW_CONFLICTS = 40
+QUICK_CONFLICTS = 4_000
+"""Conflicts of a question about an output before all its inputs are run instead, where they can be."""
 ATTEMPTS = 3
 """Guesses from signatures that may be wrong."""
 
@@ -38,7 +42,8 @@ ATTEMPTS = 3
 class Answer:
     """holds: True proved, False refuted by `inputs` (a bit for each variable), None undecided.
 
-    method: what settled it: `structure`, `sweeping`, `solver`, or `simulation` where a test input refuted it.
+    method: what settled it: `structure`, `sweeping`, `solver`, `all inputs` where every value of the
+    variables it rests on was run, or `simulation` where a test input refuted it.
     """
 
     holds: bool | None
@@ -92,9 +97,14 @@ class Sweep:
         if image == FALSE:
             return Answer(True, method="sweeping")
         self._progress("proving: asking the solver about an output")
-        answer = self._encoding.ever([image], conflicts)
+        free = [self._image[variable >> 1] for variable in self._variables]
+        answer = self._encoding.ever([image], min(conflicts, QUICK_CONFLICTS))
+        if answer is None:
+            run = find_one(self._encoding.parities, free, image, self._progress)
+            if run is not None:
+                return Answer(True, method="all inputs") if run is False else Answer(False, run, "all inputs")
+            answer = self._encoding.ever([image], conflicts)
         if answer:
-            free = [self._image[variable >> 1] for variable in self._variables]
             return Answer(False, tuple(self._encoding.model(free)), "solver")
         if answer is None:
             return Answer(None, method="solver")
@@ -138,6 +148,7 @@ class Sweep:
         for variable in self._variables:
             image[variable >> 1] = new.free()
         keys = _Keys(self._cone, self._tests)
+        local = LocalEquality(new)
         keys.enter(0, FALSE)
         for variable in self._variables:
             keys.enter(variable >> 1, image[variable >> 1])
@@ -148,11 +159,13 @@ class Sweep:
             before = len(new)
             made = new.and_(a, b) if old.kind[node] == AND else new.xor(a, b)
             if made >> 1 >= before:
-                made = self._merged(node, made, keys, encoding)
+                made = self._merged(node, made, keys, encoding, local)
             image[node] = made
         new.proofs.finish()
 
-    def _merged(self, node: int, made: Literal, keys: _Keys, encoding: Encoding) -> Literal:
+    def _merged(
+        self, node: int, made: Literal, keys: _Keys, encoding: Encoding, local: LocalEquality
+    ) -> Literal:
         """An earlier literal that is proved equal to the new one, else the new one."""
         tried: set[Literal] = set()
         while len(tried) < TRIES:
@@ -160,6 +173,9 @@ class Sweep:
             if candidate is None or candidate == made:
                 break
             tried.add(candidate)
+            if local.proves(candidate, made):
+                self.merged += 1
+                return candidate
             limit = STEP_CONFLICTS if self.undecided < PATIENCE else FEW_CONFLICTS
             answer = encoding.same(candidate, made, limit)
             if answer:
