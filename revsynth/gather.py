@@ -26,7 +26,7 @@ _LADDER: dict[Effort, tuple[Effort, ...]] = {
 """Levels of effort in turn; without a time limit the cheap ones are skipped, see `_levels`."""
 
 
-SHORT = 400
+SHORT = 100
 """Networks of so many gates are reduced as well, beside the plan as it is: the rules see no lines known to be
 in 0, and what they join may cost more than the products held."""
 
