@@ -35,13 +35,17 @@ MAX_LINES = 12
 """Above, the single sums are too long to pay: other methods are shorter there."""
 
 _WIDTHS: dict[Effort, tuple[tuple[int, Width], ...]] = {
-    "low": ((12, Width(beam=1, children=1, every=3, starts=2)),),
+    "low": (
+        (8, Width(beam=1, children=1, every=3, starts=2)),
+        (12, Width(beam=0, children=1, every=2, starts=1)),
+    ),
     "normal": (
         (4, Width(beam=60, children=4, every=7, starts=4)),
         (5, Width(beam=24, children=4, every=6, starts=4)),
         (6, Width(beam=6, children=2, every=5, starts=2)),
         (7, Width(beam=2, children=1, every=4, starts=2)),
-        (12, Width(beam=1, children=1, every=3, starts=2)),
+        (9, Width(beam=1, children=1, every=4, starts=3)),
+        (12, Width(beam=0, children=1, every=2, starts=1)),
     ),
     "high": (
         (5, Width(beam=400, children=8, every=9, starts=8)),
@@ -93,7 +97,12 @@ class Decompose:
         if task.oracle == "inplace":
             places = tuple(range(task.function.inputs))
             target = embed(task.function, task.function.inputs, places, places)
-            return [Block(cascade, said, target.lines) for cascade, said in _cascades(task, target, progress)]
+            blocks = [
+                Block(cascade, said, target.lines) for cascade, said in _cascades(task, target, progress)
+            ]
+            if target.is_complete and task.effort != "high":
+                return blocks
+            return exchanged(task, blocks, progress)
         before, after = next(placements(task.function, fewest_lines(task.function), 1, task.seed))
         return _embedded(task, before, after, progress)
 

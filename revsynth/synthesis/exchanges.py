@@ -21,7 +21,7 @@ from revsynth.embed.target import ReversibleTarget
 from revsynth.logic.random_words import Random
 from revsynth.logic.truth_table import pack_values
 from revsynth.options import Effort
-from revsynth.synthesis.interface import Block, Progress, Task
+from revsynth.synthesis.interface import Block, Placement, Progress, Task
 
 _SAID = ", gates exchanged"
 SPARE = 6
@@ -80,7 +80,7 @@ def _columns(
 
 
 def exchanged(task: Task, blocks: Sequence[Block], progress: Progress) -> list[Block]:
-    """The best of blocks of the form `embedded` after exchanges, for the aim and by the other count.
+    """The best of `embedded` or `inplace` blocks after exchanges, for the aim and by the other count.
 
     All blocks are tried for a short while, the best ones for longer; the work is fixed by `task.effort`. At
     low effort, or where a try costs too much for any to be worth it, the best blocks come back as they are.
@@ -108,7 +108,7 @@ _PLANS: dict[Effort, tuple[Round, ...]] = {
 }
 """Work is counted in gates (and some more a try) times words of 64 rows: 2**24 take half a second."""
 _MORE = 16
-MOST_MOVES: dict[Effort, int] = {"normal": 200_000, "high": 20_000_000}
+MOST_MOVES: dict[Effort, int] = {"normal": 1_000_000, "high": 20_000_000}
 """Tries of one block in one round, at most: short cascades are soon as good as they get."""
 FEWEST_MOVES = 2_000
 """Fewer tries than that are not worth it."""
@@ -122,8 +122,9 @@ def _rounds(task: Task, ranked: list[Block], plan: tuple[Round, ...]) -> list[Bl
 
 
 def _one(task: Task, block: Block, work: int, heat: float, number: int) -> Block:
-    place, cascade = block.placement, block.cascade
-    if place is None or not len(cascade) or any(value for _, value in place.preset):
+    natural = tuple(range(block.inputs))
+    place, cascade = block.placement or Placement(natural, (), natural), block.cascade
+    if not len(cascade) or any(value for _, value in place.preset):
         return block
     rows = 1 << task.function.inputs
     moves = min(MOST_MOVES[task.effort], work // ((len(cascade) + _MORE) * max(1, rows >> 6)))

@@ -147,7 +147,10 @@ def _in_place(task: Task, progress: Progress) -> list[Block]:
                 blocks.append((found[0].inverse(), found[1]))
     rank = rank_for(task.aim, task.uncompute)
     blocks.sort(key=lambda one: rank(one[0]))
-    return [Block(cascade, f"{NAME}, {said}", target.lines) for cascade, said in blocks[:2]]
+    made = [Block(cascade, f"{NAME}, {said}", target.lines) for cascade, said in blocks]
+    if not made or (target.is_complete and task.effort != "high"):
+        return made[:2]
+    return exchanged(task, made, progress)
 
 
 def _completed(

@@ -15,11 +15,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from revsynth.embed.target import ReversibleTarget, complete
+from revsynth.logic.four_inputs import INPUTS as LEAF_INPUTS
 from revsynth.logic.sum_costs import SumCosts, Words, to_words
 from revsynth.synthesis.young.colouring import Colouring, Images, Turned, colouring, split
 
 MOST_STEPS = 40
 """Steps of one descent over colourings, at most."""
+WORK = 1 << 21
+"""Parts of functions that one descent estimates, at most: 3**(inputs - 4) a function."""
 
 
 class Turn(NamedTuple):
@@ -52,8 +55,11 @@ class Partial:
 
 @dataclass(frozen=True)
 class Width:
-    """How wide to search. beam: partial decompositions kept; children: colourings kept of each split; every:
-    up to so many parts all colourings are tried; starts: descents beyond that."""
+    """How wide to search.
+
+    beam: partial decompositions kept (0: two orders of the lines alone); children: colourings kept of each
+    split; every: up to so many parts all colourings are tried; starts: descents beyond that.
+    """
 
     beam: int
     children: int
@@ -91,8 +97,8 @@ def decompositions(
                 children += _children(one, line, costs, width, random)
         return _best(children, most)
 
-    beam = [start]
-    for level in range(lines):
+    beam = [start] if width.beam else []
+    for level in range(lines if width.beam else 0):
         progress(f"decompose: {level} of {lines} lines split off, {len(beam)} ways kept")
         beam = next_ones(beam, None, width.beam)
     for order in (range(lines), reversed(range(lines))):
@@ -164,14 +170,23 @@ class _Gates(NamedTuple):
 
     def cost(self, flips: NDArray[np.bool_], costs: SumCosts) -> NDArray[np.int32]:
         """What the gates cost for each row of `flips`, shape (rows, parts)."""
-        zero = np.uint16(0)
-        before = self.before ^ np.bitwise_xor.reduce(
-            np.where(flips[:, :, None], self.before_parts, zero), axis=1, initial=0
+        return costs(self._turned(self.before, self.before_parts, flips)) + costs(
+            self._turned(self.behind, self.behind_parts, flips)
         )
-        behind = self.behind ^ np.bitwise_xor.reduce(
-            np.where(flips[:, :, None], self.behind_parts, zero), axis=1, initial=0
-        )
+
+    def flipped(
+        self, flips: NDArray[np.bool_], parts: NDArray[np.int64], costs: SumCosts
+    ) -> NDArray[np.int32]:
+        """What they cost with `flips`, shape (all parts,), and each of `parts` alone flipped besides."""
+        before = self._turned(self.before, self.before_parts, flips[None]) ^ self.before_parts[parts]
+        behind = self._turned(self.behind, self.behind_parts, flips[None]) ^ self.behind_parts[parts]
         return costs(before) + costs(behind)
+
+    @staticmethod
+    def _turned(base: Words, parts: Words, flips: NDArray[np.bool_]) -> Words:
+        """The words with the parts of each row of `flips` changed, shape (rows, words)."""
+        rows = [np.bitwise_xor.reduce(parts[row], axis=0, initial=0) ^ base for row in flips]
+        return np.array(rows, dtype=np.uint16).reshape(len(flips), len(base))
 
 
 def _gates(images: Images, line: int, base: Colouring) -> _Gates:
@@ -206,7 +221,7 @@ def _cheap_flips(
             flips[start] = random.integers(0, 2, parts)
         cost = gates.cost(flips, costs)
         for start in range(width.starts):
-            flips[start], cost[start] = _descend(gates, flips[start], int(cost[start]), costs)
+            flips[start], cost[start] = _descend(gates, flips[start], int(cost[start]), costs, random)
     order = np.argsort(cost, kind="stable")[: width.children]
     return [(int(cost[index]), flips[index]) for index in order.tolist()]
 
@@ -220,23 +235,30 @@ def _still_behind(images: Images, line: int, base: Colouring) -> NDArray[np.bool
 
 
 def _descend(
-    gates: _Gates, flips: NDArray[np.bool_], cost: int, costs: SumCosts
+    gates: _Gates, flips: NDArray[np.bool_], cost: int, costs: SumCosts, random: np.random.Generator
 ) -> tuple[NDArray[np.bool_], int]:
-    """Flip parts as long as that saves: the best one, or the better half of all that save at once."""
+    """Flip parts as long as that saves: the best one, or the better half of all that save at once.
+
+    Where there are more parts than the work allows, each step looks at some of them.
+    """
     parts = len(flips)
-    change = np.eye(parts, dtype=bool)
+    work = WORK // 3 ** max(costs.inputs - LEAF_INPUTS, 0)
+    few = max(work // 8, 1)
     for _ in range(MOST_STEPS):
-        single = gates.cost(flips ^ change, costs)
+        tried = np.arange(parts) if parts <= few else np.sort(random.choice(parts, few, replace=False))
+        work -= len(tried)
+        single = gates.flipped(flips, tried, costs)
         order = np.argsort(single, kind="stable")
         saving = int(np.count_nonzero(single < cost))
         if not saving:
             break
-        best, best_flips = int(single[order[0]]), flips ^ change[order[0]]
         sizes = [size for size in (saving, saving // 2, saving // 4, 2) if size > 1]
-        if sizes:
-            several = np.stack([flips ^ change[order[:size]].any(axis=0) for size in sizes])
-            joint = gates.cost(several, costs)
-            if int(joint.min()) < best:
-                best, best_flips = int(joint.min()), several[int(joint.argmin())]
-        flips, cost = best_flips, best
+        several = np.repeat(flips[None], len(sizes) + 1, axis=0)
+        for row, size in enumerate([*sizes, 1]):
+            several[row, tried[order[:size]]] ^= True
+        joint = gates.cost(several, costs)
+        best = int(joint.argmin())
+        flips, cost = several[best], int(joint[best])
+        if work <= 0:
+            break
     return flips, cost
