@@ -103,11 +103,11 @@ def test_no_time_is_no_answer() -> None:
     from revsynth.verification.translation.numbers import Arithmetic
 
     parities = Parities()
-    a = [parities.free() for _ in range(9)]
-    b = [parities.free() for _ in range(9)]
+    a = [parities.free() for _ in range(24)]
+    b = [parities.free() for _ in range(24)]
     gates = PlainGates(parities)
     rows = Arithmetic(gates).multiply((*a, 0), (*b, 0))
     columns = Arithmetic(gates, by_columns=True).multiply((*b, 0), (*a, 0))
-    differ = parities.xor(rows[9], columns[9])
+    differ = parities.xor(rows[20], columns[20])
     with closing(Sweep(parities, [*a, *b], [differ])) as sweep:
         assert sweep.zero(differ, 1).holds is None
