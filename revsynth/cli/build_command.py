@@ -110,7 +110,7 @@ def _same_file(one: str, other: str) -> bool:
 
 
 def _summary(built: Build, output: str | None) -> str:
-    from revsynth.cli.tables import cost_lines
+    from revsynth.cli.tables import checked, cost_lines
 
     lines = [one_line(built.spec.title or built.spec.source)]
     function = built.counts
@@ -120,7 +120,7 @@ def _summary(built: Build, output: str | None) -> str:
     lines.append(f"  oracle     {built.oracle}, {built.options.gates}, by {how}")
     lines.extend(cost_lines(built.cost))
     evidence = built.evidence
-    lines.append(f"  evidence   {evidence.level}: {evidence.detail or f'{evidence.inputs_checked:,} inputs'}")
+    lines.append(f"  evidence   {evidence.level}: {evidence.detail or checked(evidence)}")
     if built.stopped_early:
         lines.append("  stopped    by the time limit: the best so far")
     if built.options.format == "plain":

@@ -4,6 +4,10 @@ from __future__ import annotations
 
 import re
 from collections.abc import Mapping
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from revsynth.verification.evidence import Evidence
 
 _ROWS = (
     ("qubits", (("qubits", "in all"), ("work", "scratch"))),
@@ -42,3 +46,9 @@ def cost_lines(cost: Mapping[str, int | None]) -> list[str]:
         if shown:
             lines.append(f"  {label:<10} {', '.join(shown)}")
     return lines
+
+
+def checked(evidence: Evidence) -> str:
+    """How many inputs stand behind a verdict; behind a proof they all do, some of them tried besides."""
+    count = f"{evidence.inputs_checked:,} inputs"
+    return f"every input, by a solver; {count} tried besides" if evidence.level == "proved" else count

@@ -85,6 +85,8 @@ def COMMAND(  # noqa: N802
 
 
 def _in_words(verdict: Verdict, file: str, form_named: bool) -> str:
+    from revsynth.cli.tables import checked
+
     evidence = verdict.evidence
     if verdict.holds:
         lines = [f"{file}: does what the spec says"]
@@ -109,7 +111,12 @@ def _in_words(verdict: Verdict, file: str, form_named: bool) -> str:
         level = "one input decides"
     elif level == "sampled":
         level = "sampled, not a proof"
-    lines.append(f"  evidence   {level}: {evidence.inputs_checked} inputs checked")
+    how = (
+        checked(evidence)
+        if verdict.holds and level == "proved"
+        else f"{evidence.inputs_checked} inputs checked"
+    )
+    lines.append(f"  evidence   {level}: {how}")
     lines.extend(f"             {link}" for link in evidence.links)
     if verdict.holds and verdict.global_phase:
         lines.append(
