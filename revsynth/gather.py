@@ -143,7 +143,7 @@ class Gathering:
         """A budget that is too small where more qubits would do, else options that do not suit the spec."""
         roomy = replace(self.task, lines=None)
         short = {m.name for m in METHODS if asked_for(m, self.options) and not unfit(m, roomy)}
-        if short and not self._too_large:
+        if short and (not self._too_large or self.task.lines is not None):
             misses = (f"{trial.method}: {trial.failed}" for trial in self.trials if trial.method in short)
             return BudgetError("nothing fits the budget: " + "; ".join(misses))
         able = {method.name for method in WIDE} if self.task.tabulated is None else set()

@@ -50,7 +50,8 @@ class FromNetwork:
         if task.oracle == "inplace":
             return _why_not_there_and_back(task)
         if task.oracle == "embedded":
-            return "a network leaves its inputs as they are, so nothing can be 'embedded'"
+            wide = "; 'embedded' goes up to 24 input bits, by table" if task.tabulated is None else ""
+            return f"a network leaves its inputs as they are, so nothing can be 'embedded'{wide}"
         if task.oracle == "phase" and task.outputs != 1:
             return f"a phase oracle of a network needs one output bit, not {task.outputs}"
         if task.network is None and task.inputs > MOST_TABLE_INPUTS:
