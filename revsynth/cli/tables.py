@@ -51,4 +51,4 @@ def cost_lines(cost: Mapping[str, int | None]) -> list[str]:
 def checked(evidence: Evidence) -> str:
     """How many inputs stand behind a verdict; behind a proof they all do, some of them tried besides."""
     count = f"{evidence.inputs_checked:,} inputs"
-    return f"every input, by a solver; {count} tried besides" if evidence.level == "proved" else count
+    return f"every input, by proof; {count} tried besides" if evidence.level == "proved" else count

@@ -57,13 +57,13 @@ def run_sparse(
     lanes: int,
     *,
     exact: bool,
-    most_rows: int = MOST_ROWS,
-    most_runs: int = MOST_RUNS,
+    most_rows: int | None = None,
+    most_runs: int | None = None,
 ) -> Finals:
     """The final states of all records.
 
-    start: one column a qubit over `lanes` lanes, the last one the reference input. Raises TooLargeError at
-    the limits and RevealsError where the chance of an outcome depends on the input.
+    start: one column a qubit over `lanes` lanes, the last one the reference input. most_rows, most_runs: limits
+    in place of MOST_ROWS and MOST_RUNS. Raises TooLargeError at the limits and RevealsError where the chance of an outcome depends on the input.
     """
     arithmetic: Arithmetic = Exact if exact else Floating
     first = _Run(np.arange(lanes, dtype=np.int64), _keys(start, lanes), arithmetic.ones(lanes), 0, 0)
@@ -83,7 +83,7 @@ def run_sparse(
         runs = after
         if len(runs) > 1 and index in plan.live:
             runs = _merge(runs, plan.live[index], arithmetic)
-        _check_limits(runs, most_rows, most_runs)
+        _check_limits(runs, most_rows or MOST_ROWS, most_runs or MOST_RUNS)
     return Finals([_final(run, len(start), lanes, arithmetic) for run in runs], random)
 
 

@@ -198,3 +198,12 @@ def test_an_empty_domain_is_an_error() -> None:
     spec = revsynth.predicate("a > 3", inputs={"a": 30}, domain="a + 1 == a")
     with pytest.raises(revsynth.RevsynthError, match="no input satisfies it"):
         verify_program(spec, read("OPENQASM 3.0;\nqubit[30] a;\n"))
+
+
+@pytest.mark.slow
+def test_a_product_modulo_a_number_is_run_at_every_input() -> None:
+    """That scratch ends clean rests on 7 times its inverse being 1: no solver sees that, all inputs show it."""
+    spec = revsynth.permutation(map={"a": "(a * 7) % 33554393"}, inputs={"a": 25}, domain="a < 33554393")
+    found = revsynth.build(spec, uncompute="measured")
+    assert found.evidence.level == "proved"
+    assert any("at every value of the inputs" in link for link in found.evidence.links)

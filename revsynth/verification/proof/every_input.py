@@ -30,13 +30,17 @@ def find_one(
     variables: Sequence[Literal],
     literal: Literal,
     progress: Callable[[str], None] = lambda _: None,
+    most_work: int | None = None,
 ) -> tuple[int, ...] | Only[False] | None:
     """Values (0 or 1) of the variables at which the literal is 1, False where there are none.
 
-    None where that would be too much work: then nothing is known.
+    None where that would be more than `most_work` gates times inputs (None: MOST_WORK): then nothing is
+    known.
     """
     gates, support = _below(parities, literal)
-    if len(support) > MOST_VARIABLES or len(gates) << max(len(support), BLOCK_BITS) > MOST_WORK:
+    if len(support) > MOST_VARIABLES or len(gates) << max(len(support), BLOCK_BITS) > (
+        MOST_WORK if most_work is None else most_work
+    ):
         return None
     from revsynth.verification.proof.kernels import compiled_search
 

@@ -25,7 +25,9 @@ from revsynth.verification.lifting.parities import TRUE, Literal, Parities
 from revsynth.verification.matching import Roles
 from revsynth.verification.outcome import TooLargeError
 from revsynth.verification.proof.choice import Choice, number
+from revsynth.verification.proof.cone import Cone
 from revsynth.verification.proof.encoding import Encoding
+from revsynth.verification.proof.every_input import MOST_WORK, find_one
 from revsynth.verification.proof.obligations import (
     Obligation,
     Obligations,
@@ -46,6 +48,8 @@ REFERENCE_CONFLICTS = 500_000
 """Conflicts for finding an input of the domain."""
 FIRST_CONFLICTS = 30_000
 """Conflicts for the claims that sweeping leaves, in the first attempt with each way to write the spec."""
+SOON = 1 << 36
+"""Gates times inputs up to which all inputs are run before anything else: half a second."""
 LAST_CONFLICTS = 600_000
 """The same in the last attempt, over all claims: some minutes."""
 
@@ -163,6 +167,10 @@ class _Decider:
         self._say_lifting()
         if self.untranslated:
             return self._decision(None, "sampled", f"{self.untranslated}; {self.samples.bound()}")
+        unclean = any(one.kind == "scratch" for one in owed.all)
+        run = self._by_all_inputs(owed, MOST_WORK if unclean else SOON)
+        if run is not None:
+            return run
         with ExitStack() as stack:
             first = stack.enter_context(closing(self._sweep(owed, chosen)))
             decision = self._settle(owed, first, FIRST_CONFLICTS)
@@ -170,7 +178,35 @@ class _Decider:
                 decision = self._by_rows(accounted, chosen) or decision
             if decision.holds is None:
                 decision = self._settle(owed, first, LAST_CONFLICTS)
+            if decision.holds is None:
+                decision = self._by_all_inputs(owed, MOST_WORK) or decision
         return decision
+
+    def _by_all_inputs(self, owed: Obligations, most_work: int) -> WideDecision | None:
+        """All claims at every value of the variables they rest on; None where that is too much work.
+
+        Where structure does not even show that scratch ends clean, as in products modulo a number, a solver
+        has little to go by, so this comes first.
+        """
+        parities, variables = self.lifted.parities, self.lifted.variables
+        if not owed.all:
+            return None
+        wrong = parities.all_of(one.literal ^ 1 for one in owed.all) ^ 1
+        parities.proofs.finish()
+        found = find_one(parities, variables, wrong, self.progress, most_work)
+        if found is None:
+            return None
+        if found is False:
+            self.links.append(
+                f"proof: the circuit and the spec's gates differ nowhere: {len(owed.all)} claims run, "
+                "64 inputs side by side, at every value of the inputs they rest on"
+            )
+            return self._decision(True, "proved", global_phase=owed.global_phase)
+        words = np.array(found, dtype=np.uint64)[:, None]
+        literals = [one.literal for one in owed.all]
+        values = Cone(parities, variables, literals).values(literals, words)
+        broken = next(one for one, row in zip(owed.all, values, strict=True) if int(row[0]) & 1)
+        return self._refuted(broken, found)
 
     def _by_rows(self, accounted: Account, chosen: list[int]) -> WideDecision | None:
         """The same with the spec written another way; None where that changes nothing."""

@@ -8,7 +8,6 @@ from dataclasses import dataclass
 
 from revsynth.spec.expression import Scope, parse
 from revsynth.spec.formula_reference import Node, read_again
-from revsynth.spec.limits import MAX_INPUT_BITS
 from revsynth.spec.model import Clauses, Cover, Outputs, Permutation, Predicate, Spec, Word
 from revsynth.spec.netlist import Netlist
 from revsynth.spec.reference import constant_part
@@ -28,6 +27,9 @@ from revsynth.verification.translation.lists import Items, Value
 from revsynth.verification.translation.numbers import Arithmetic, Number, constant
 from revsynth.verification.translation.steps import stepped_bits, word_values
 from revsynth.verification.translation.walk import Walk
+
+MODULAR_BITS = 28
+"""Input bits of products modulo a number that are still run at every input, in about a minute."""
 
 
 @dataclass(frozen=True)
@@ -128,7 +130,7 @@ class _Translator:
         if not isinstance(tree, ast.BinOp) or not isinstance(tree.op, ast.Mod):
             return
         modulus = constant_part(expression, tree.right, self.spec.constants)
-        if self.spec.input_bits <= MAX_INPUT_BITS or not isinstance(modulus, int):
+        if self.spec.input_bits <= MODULAR_BITS or not isinstance(modulus, int):
             return
         if modulus & (modulus - 1) and _multiplies(tree.left, set(self.words)):
             raise TooLargeToTranslateError(f"the new value of {name} is a product modulo {modulus}")
