@@ -62,8 +62,9 @@ def run_sparse(
 ) -> Finals:
     """The final states of all records.
 
-    start: one column a qubit over `lanes` lanes, the last one the reference input. most_rows, most_runs: limits
-    in place of MOST_ROWS and MOST_RUNS. Raises TooLargeError at the limits and RevealsError where the chance of an outcome depends on the input.
+    start: one column a qubit over `lanes` lanes, the last one the reference input. most_rows, most_runs:
+    limits in place of MOST_ROWS and MOST_RUNS. Raises TooLargeError at the limits and RevealsError where the
+    chance of an outcome depends on the input.
     """
     arithmetic: Arithmetic = Exact if exact else Floating
     first = _Run(np.arange(lanes, dtype=np.int64), _keys(start, lanes), arithmetic.ones(lanes), 0, 0)

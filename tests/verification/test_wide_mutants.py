@@ -202,7 +202,7 @@ def test_an_empty_domain_is_an_error() -> None:
 
 @pytest.mark.slow
 def test_a_product_modulo_a_number_is_run_at_every_input() -> None:
-    """That scratch ends clean rests on 7 times its inverse being 1: no solver sees that, all inputs show it."""
+    """Scratch ends clean because 7 times its inverse is 1: no solver sees that, all inputs show it."""
     spec = revsynth.permutation(map={"a": "(a * 7) % 33554393"}, inputs={"a": 25}, domain="a < 33554393")
     found = revsynth.build(spec, uncompute="measured")
     assert found.evidence.level == "proved"
