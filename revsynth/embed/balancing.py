@@ -15,7 +15,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from revsynth.logic.truth_table import Column, pack, unpack
+from revsynth.logic.truth_table import Column, unpack
 
 Values = NDArray[np.int8]
 Counts = NDArray[np.int32]
@@ -165,8 +165,3 @@ def _helpful_pairs(zero: Values, one: Values) -> NDArray[np.bool_]:
         rest = np.maximum(need - np.count_nonzero(best, axis=1), 0)
         answer |= with_free & (np.cumsum(with_free, axis=1) <= rest[:, None])
     return answer
-
-
-def packed(states: NDArray[np.bool_]) -> Column:
-    """A column of a condition given by state."""
-    return pack(states)
