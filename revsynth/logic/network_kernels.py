@@ -42,7 +42,10 @@ def run_blocks(  # pragma: no cover
     block: Words,
     result: Words,
 ) -> None:
-    """inputs: (inputs, words); block: (nodes, b), row 0 zero; result: (outputs, words), written."""
+    """inputs: (inputs, words); block: (nodes, b), row 0 zero; result: (outputs, words), written.
+
+    The last block is run whole; what stands beyond the inputs in it is not used.
+    """
     one = np.uint32(1)
     zero = np.uint64(0)
     width = block.shape[1]
@@ -52,19 +55,7 @@ def run_blocks(  # pragma: no cover
         for i in range(inputs.shape[0]):
             for w in range(size):
                 block[1 + i, w] = inputs[i, begin + w]
-        first = 1 + inputs.shape[0]
-        for gate in range(len(is_xor)):
-            a = block[left[gate] >> one]
-            b = block[right[gate] >> one]
-            out = block[first + gate]
-            if is_xor[gate]:
-                for w in range(size):
-                    out[w] = a[w] ^ b[w]
-            else:
-                flip_a = zero - np.uint64(left[gate] & one)
-                flip_b = zero - np.uint64(right[gate] & one)
-                for w in range(size):
-                    out[w] = (a[w] ^ flip_a) & (b[w] ^ flip_b)
+        run_nodes(is_xor, left, right, block)
         for i in range(len(outputs)):
             flip = zero - np.uint64(outputs[i] & one)
             row = block[outputs[i] >> one]

@@ -50,7 +50,7 @@ def test_any_line_is_parsed_once(monkeypatch: pytest.MonkeyPatch) -> None:
 @pytest.mark.parametrize(
     ("text", "kinds"),
     [
-        ("x a[0]; x a[1];\nx a[0]; x a[1];\n", "XXXX"),
+        ("x a[0]; x a[1];\nx a[0]; x a[1];\n", ["X"] * 4),
         ("if (m[0]) { x a[0]; }\nelse { z a[0]; }\n", "XZ"),
         ("if (m[0]) { x a[0]; } // c\n// d\n/* e */ else z a[0];\n", "XZ"),
         ("/*\nx a[0];\n*/\nz a[0];\n", "Z"),
@@ -59,7 +59,7 @@ def test_any_line_is_parsed_once(monkeypatch: pytest.MonkeyPatch) -> None:
         ("rz(1 // x) a[0];\n) a[0];\n", ["RZ"]),
         ("\n\n  \t\nx a[0];\n\n", "X"),
         ("x a[0];", "X"),
-        ("x a[0]; qubit b; x b;\nx a[0];\n", "XXX"),
+        ("x a[0]; qubit b; x b;\nx a[0];\n", ["X"] * 3),
         ("rzz(1) a[0], a[1];\ngate rzz(t_) q, r { h q; }\nrzz(1) a[0], a[1];\n", ["X", "RZ", "X", "H"]),
         (
             "const float t_ = 1;\nrz(t_) a[0];\ngate f(t_) q { rz(t_) q; }\nf(2) a[0];\nrz(t_) a[0];\n",
